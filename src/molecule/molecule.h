@@ -1,0 +1,110 @@
+/* molecule.h: atoms, residues and the covalent terms between them, whatever they came from.
+ *
+ * A tml_molecule is plain arrays; build.c fills it from an outline, everything later only reads it. Strings belong to the
+ * problem's string pool. Indices are atoms of this molecule unless said otherwise. Lengths in Å, angles in radians.
+ */
+#ifndef TML_MOLECULE_H
+#define TML_MOLECULE_H
+
+#include "base/status.h"
+#include "molecule/outline.h"
+
+typedef struct tml_atom {
+    const char *name;  /* unique within its residue */
+    int32_t residue;   /* index into residues */
+    uint8_t element;   /* atomic number; 0 for a bead */
+    int8_t charge;     /* formal charge */
+} tml_atom;
+
+typedef struct tml_residue {
+    const char *chain, *number, *name; /* as the input wrote them; all "" for the bare atoms of a sheet */
+    int32_t sequence;                  /* the number's integer part; 0 where it has none */
+    char insertion;                    /* insertion code, or ' ' */
+    int32_t chain_index;               /* 0-based, in order of first appearance */
+    int32_t position;                  /* 0-based within its chain */
+    int32_t first_atom, atom_count;    /* a residue's atoms are consecutive */
+    bool amino_acid;                   /* one of the built-in residues: has N, CA, C in a protein chain */
+} tml_residue;
+
+/* A covalent bond. tolerance is the half-width, Å, that bounds allow. */
+typedef struct tml_bond { int32_t a, b; double length, tolerance; } tml_bond;
+
+/* The angle a-b-c (b in the middle). tolerance is the half-width, radians, that bounds allow. */
+typedef struct tml_angle { int32_t a, b, c; double angle, tolerance; } tml_angle;
+
+/* What is known of rotation about b-c. */
+typedef enum tml_torsion_kind {
+    TML_TORSION_FREE,      /* nothing: the 1-4 distance lies between its cis and trans values */
+    TML_TORSION_FIXED,     /* at `angle`, within `tolerance`: rings, planar groups, double bonds */
+    TML_TORSION_PEPTIDE,   /* the same, for a peptide bond; `angle` is 0 (cis) or pi (trans) */
+    TML_TORSION_STAGGERED  /* three minima at angle + k·120°: a preference, not a bound */
+} tml_torsion_kind;
+
+/* One per bond b-c and pair of outer atoms (a, d) that are three bonds apart, except inside 3-rings. */
+typedef struct tml_torsion {
+    int32_t a, b, c, d;
+    tml_torsion_kind kind;
+    double angle, tolerance; /* radians */
+} tml_torsion;
+
+/* A tetrahedral centre. `arms[3]` is -1 for a centre of three arms. The signed volume
+ * (arms[0]-centre)·((arms[1]-centre)×(arms[2]-centre)) has the sign `sign`. For centres with no handedness of their own (a
+ * methyl group, NH3+) the sign only fixes the order of equivalent hydrogens; `fixed` is then false. */
+typedef struct tml_centre {
+    int32_t centre, arms[4];
+    int8_t sign;
+    bool fixed; /* chirality or prochiral naming depends on it */
+} tml_centre;
+
+/* Atoms in one plane. With ideal coordinates (`has_xy`) the distances within the group are known exactly. */
+typedef struct tml_plane {
+    int32_t first, count; /* into plane_atoms and, times two, plane_xy */
+    double within;        /* largest distance from the best plane, Å */
+    bool has_xy;
+} tml_plane;
+
+/* A peptide bond C-N between two amino acids: atoms of omega. */
+typedef struct tml_peptide { int32_t ca1, c, o, n, ca2; int32_t residue1, residue2; bool cis, declared; } tml_peptide;
+
+typedef struct tml_chain { const char *code; int32_t first_residue, residue_count; tml_ends ends; } tml_chain;
+
+typedef struct tml_molecule {
+    tml_atom *atoms;       int32_t atom_count;
+    tml_residue *residues; int32_t residue_count;
+    tml_chain *chains;     int32_t chain_count;
+    tml_bond *bonds;       int32_t bond_count;
+    tml_angle *angles;     int32_t angle_count;
+    tml_torsion *torsions; int32_t torsion_count;
+    tml_centre *centres;   int32_t centre_count;
+    tml_plane *planes;     int32_t plane_count;
+    int32_t *plane_atoms;  double *plane_xy; int32_t plane_atom_count;
+    tml_peptide *peptides; int32_t peptide_count;
+    int32_t *neighbour_first, *neighbours; /* bonded atoms of atom i: neighbours[neighbour_first[i] … neighbour_first[i+1]-1] */
+} tml_molecule;
+
+/* Make the molecule that an outline describes.
+ *
+ * files   names of the inputs, for messages (index by tml_place.file)
+ * out     filled; tml_molecule_clear frees it, after a failure too
+ *
+ * Returns TML_OK, TML_BAD_INPUT (unknown residue, atom, variant; duplicate atoms; a link that chemistry forbids),
+ * TML_TOO_LARGE or TML_NO_MEMORY.
+ */
+tml_status tml_molecule_build(const tml_outline *outline, const char *const *files, tml_strings *pool, tml_molecule *out,
+                              tml_error *error);
+
+void tml_molecule_clear(tml_molecule *molecule);
+
+/* Residue by chain code and sequence code, -1 if there is none. */
+int32_t tml_molecule_find_residue(const tml_molecule *molecule, const char *chain, const char *number);
+
+/* Atom by its exact name within a residue, -1 if there is none. */
+int32_t tml_molecule_find_atom(const tml_molecule *molecule, int32_t residue, const char *name);
+
+/* Set a peptide bond to cis or trans: its torsions, 1-4 distances and planes follow. */
+void tml_molecule_set_peptide(tml_molecule *molecule, int32_t peptide, bool cis);
+
+/* "A:5:HB2", or the bare name where there is no chain; writes at most `size` bytes, always ended. */
+void tml_molecule_address(const tml_molecule *molecule, int32_t atom, char *text, size_t size);
+
+#endif

@@ -1,0 +1,39 @@
+/* rows.h: restraints as the inputs write them, before names are matched with atoms.
+ *
+ * Readers fill tml_rows; restraint/map.c turns them into restraints of a molecule. Strings belong to the string pool. Atom
+ * names may hold NEF wildcards (`%` any digits, `*` anything) and `x`/`y` for a stereo pair not yet told apart.
+ */
+#ifndef TML_ROWS_H
+#define TML_ROWS_H
+
+#include "molecule/outline.h"
+
+/* One row of a distance restraint. Rows with the same list and id are alternatives (OR); rows that share, within an id, a
+ * combination other than "" hold together (AND). Several addresses on one side are alternatives that multiply out. */
+typedef struct tml_distance_row {
+    const char *list, *id, *combination;
+    int32_t first_a, count_a, first_b, count_b; /* into tml_rows.addresses */
+    double lower, upper;                        /* Å; NAN where the input leaves a limit open */
+    double weight;
+    bool average;                               /* divide the sum of r^-6 by the number of pairs */
+    tml_place place;
+} tml_distance_row;
+
+/* One row of a dihedral restraint, degrees as written: the interval runs upwards from lower to upper, modulo 360. */
+typedef struct tml_dihedral_row {
+    const char *list, *id, *combination;
+    tml_address atoms[4];
+    double lower, upper;
+    double weight;
+    tml_place place;
+} tml_dihedral_row;
+
+typedef struct tml_rows {
+    tml_distance_row *distances; size_t distance_count, distance_capacity;
+    tml_dihedral_row *dihedrals; size_t dihedral_count, dihedral_capacity;
+    tml_address *addresses;      size_t address_count, address_capacity;
+} tml_rows;
+
+void tml_rows_clear(tml_rows *rows);
+
+#endif
