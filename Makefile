@@ -1,6 +1,8 @@
 # Trammel. `make demo` and `make check` install what is missing, build and run; `make help` lists the rest.
 
-CC      ?= gcc
+ifeq ($(origin CC),default)
+CC := gcc
+endif
 PYTHON  ?= /usr/bin/python3
 PREFIX  ?= /usr/local
 BUILD   ?= build
@@ -21,7 +23,7 @@ TEST_SRC := $(wildcard tests/*.c)
 TESTS   := $(TEST_SRC:tests/%.c=$(BUILD)/tests/%)
 
 .PHONY: all clean test
-all: $(BUILD)/libtrammel.a $(if $(CLI_SRC),$(BUILD)/trammel)
+all: $(BUILD)/libtrammel.a $(if $(wildcard src/ensemble/build.c),$(BUILD)/trammel,$(CLI_OBJ))
 
 $(BUILD)/obj/%.o: src/%.c
 	@mkdir -p $(@D)

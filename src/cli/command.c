@@ -1,0 +1,284 @@
+/* command.c: what the commands share.
+ *
+ *   messages     help, usage, errors, remarks
+ *   options      numbers from the command line
+ *   paths        inputs and outputs, before any work
+ *   watching     progress, signals, the end of a run
+ */
+#include "cli/command.h"
+
+#include <ctype.h>
+#include <errno.h>
+#include <limits.h>
+#include <math.h>
+#include <signal.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <sys/stat.h>
+#include <unistd.h>
+
+#include "base/clock.h"
+
+/* ---- messages ---- */
+
+int tml_cli_help(const tml_command *command) {
+    fputs(command->help, stdout);
+    return tml_cli_finish(TML_EXIT_DONE);
+}
+
+int tml_cli_usage(const tml_command *command, const char *format, ...) {
+    va_list arguments;
+    va_start(arguments, format);
+    fprintf(stderr, "trammel %s: ", command->name);
+    vfprintf(stderr, format, arguments);
+    fprintf(stderr, "\nTry 'trammel %s --help'.\n", command->name);
+    va_end(arguments);
+    return TML_EXIT_USAGE;
+}
+
+int tml_cli_bad_option(const tml_command *command, int got, char **argv, const struct option *options) {
+    const struct option *known = options;
+    while (known->name != NULL && known->val != optopt) known++;
+    if (known->name != NULL && got == ':') return tml_cli_usage(command, "--%s needs a value.", known->name);
+    if (known->name != NULL) return tml_cli_usage(command, "--%s takes no value.", known->name);
+    if (optopt != 0) return tml_cli_usage(command, "-%c is no option here.", optopt);
+    const char *word = argv[optind - 1];
+    int length = (int)strcspn(word, "="), matches = 0;
+    for (known = options; known->name != NULL; known++) matches += strncmp(known->name, word + 2, (size_t)length - 2) == 0;
+    if (matches > 1) return tml_cli_usage(command, "%.*s could be more than one option.", length, word);
+    return tml_cli_usage(command, "%.*s is no option here.", length, word);
+}
+
+void tml_cli_remark(const char *format, ...) {
+    va_list arguments;
+    tml_cli_progress_end();
+    va_start(arguments, format);
+    fputs("trammel: ", stderr);
+    vfprintf(stderr, format, arguments);
+    fputc('\n', stderr);
+    va_end(arguments);
+}
+
+static int interrupted_by(void);
+
+static int exit_status_of(tml_status status) {
+    switch (status) {
+    case TML_OK: return TML_EXIT_DONE;
+    case TML_CONTRADICTED:
+    case TML_SHORT: return TML_EXIT_FINDING;
+    case TML_BAD_INPUT: return TML_EXIT_USAGE;
+    case TML_TOO_LARGE:
+    case TML_NO_MEMORY:
+    case TML_IO:
+    case TML_INTERRUPTED: break;
+    }
+    return TML_EXIT_MACHINE;
+}
+
+int tml_cli_failed(const tml_error *error) {
+    int signal_number = interrupted_by();
+    if (signal_number != 0) return 128 + signal_number;
+    const char *message = error->message[0] != '\0' ? error->message : "something failed, and no reason was given";
+    if (error->file[0] == '\0') {
+        tml_cli_remark("%s", message);
+    } else if (error->line <= 0) {
+        tml_cli_remark("%s: %s", error->file, message);
+    } else if (error->column <= 0) {
+        tml_cli_remark("%s:%ld: %s", error->file, error->line, message);
+    } else {
+        tml_cli_remark("%s:%ld:%ld: %s", error->file, error->line, error->column, message);
+    }
+    return exit_status_of(error->status);
+}
+
+/* ---- options ---- */
+
+/* strtol and strtod skip leading blanks; a value with blanks is more often a slip than a wish. */
+static bool starts_like_number(const char *text) {
+    return *text != '\0' && !isspace((unsigned char)*text);
+}
+
+bool tml_cli_integer(const tml_command *command, const char *option, const char *text, long long low, long long high,
+                     long long *value) {
+    char *end = NULL;
+    errno = 0;
+    long long read = starts_like_number(text) ? strtoll(text, &end, 10) : 0;
+    if (end == NULL || end == text || *end != '\0') {
+        tml_cli_usage(command, "%s takes a whole number, not '%s'.", option, text);
+        return false;
+    }
+    if (errno == ERANGE || read < low || read > high) {
+        tml_cli_usage(command, "%s takes a number from %lld to %lld, not %s.", option, low, high, text);
+        return false;
+    }
+    *value = read;
+    return true;
+}
+
+bool tml_cli_seed(const tml_command *command, const char *option, const char *text, uint64_t *value) {
+    char *end = NULL;
+    errno = 0;
+    unsigned long long read = isdigit((unsigned char)*text) ? strtoull(text, &end, 10) : 0;
+    if (end == NULL || *end != '\0' || errno == ERANGE) {
+        tml_cli_usage(command, "%s takes a whole number from 0 to %llu, not '%s'.", option, ULLONG_MAX, text);
+        return false;
+    }
+    *value = read;
+    return true;
+}
+
+bool tml_cli_real(const tml_command *command, const char *option, const char *text, double low, double high, double *value) {
+    char *end = NULL;
+    double read = starts_like_number(text) ? strtod(text, &end) : 0.0;
+    if (end == NULL || end == text || *end != '\0' || isnan(read)) {
+        tml_cli_usage(command, "%s takes a number, not '%s'.", option, text);
+        return false;
+    }
+    if (!(read >= low && read <= high)) {
+        tml_cli_usage(command, "%s takes a number from %g to %g, not %s.", option, low, high, text);
+        return false;
+    }
+    *value = read;
+    return true;
+}
+
+/* ---- paths ---- */
+
+bool tml_cli_inputs_good(const tml_command *command, char *const *inputs, int count) {
+    if (count == 0) {
+        tml_cli_usage(command, "No input is named.");
+        return false;
+    }
+    int standard = 0;
+    for (int i = 0; i < count; i++) standard += strcmp(inputs[i], "-") == 0;
+    if (standard <= 1) return true;
+    tml_cli_usage(command, "Standard input, '-', can be read only once.");
+    return false;
+}
+
+/* The folder of `path` with its last '/', or "." where there is none. NULL without memory. */
+static char *folder_of(const char *path) {
+    const char *slash = strrchr(path, '/');
+    return slash == NULL ? strdup(".") : strndup(path, (size_t)(slash - path) + 1);
+}
+
+static int refuse_output(const char *path, const char *reason, int exit_status) {
+    tml_cli_remark("%s: %s", path, reason);
+    return exit_status;
+}
+
+static int judge_output(const tml_command *command, const char *path, char *const *inputs, int count) {
+    struct stat out, in;
+    if (*path == '\0') return tml_cli_usage(command, "The name of an output file is empty.");
+    bool exists = stat(path, &out) == 0;
+    if (exists && S_ISDIR(out.st_mode)) return refuse_output(path, "this is a folder; name a file in it", TML_EXIT_USAGE);
+    for (int i = 0; exists && i < count; i++)
+        if (strcmp(inputs[i], "-") != 0 && stat(inputs[i], &in) == 0 && in.st_dev == out.st_dev && in.st_ino == out.st_ino)
+            return refuse_output(path, "this is one of the inputs; write to another file", TML_EXIT_USAGE);
+    if (exists && !S_ISREG(out.st_mode)) {
+        if (access(path, W_OK) == 0) return TML_EXIT_DONE;
+        return refuse_output(path, strerror(errno), TML_EXIT_MACHINE);
+    }
+    char *folder = folder_of(path);
+    if (folder == NULL) return refuse_output(path, "out of memory", TML_EXIT_MACHINE);
+    bool writable = access(folder, W_OK | X_OK) == 0;
+    int reason = errno;
+    free(folder);
+    if (!writable) return refuse_output(path, strerror(reason), TML_EXIT_MACHINE);
+    return TML_EXIT_DONE;
+}
+
+bool tml_cli_output_good(const tml_command *command, const char *path, char *const *inputs, int count, int *exit_status) {
+    if (path == NULL || strcmp(path, "-") == 0) return true;
+    int judged = judge_output(command, path, inputs, count);
+    if (judged == TML_EXIT_DONE) return true;
+    *exit_status = judged;
+    return false;
+}
+
+int tml_cli_read(char *const *inputs, int count, bool strict, tml_problem **out) {
+    tml_error error = {0};
+    tml_problem *problem = NULL;
+    *out = NULL;
+    if (tml_problem_read((const char *const *)inputs, (size_t)count, &problem, &error) != TML_OK) {
+        tml_problem_free(problem);
+        return tml_cli_failed(&error);
+    }
+    if (strict && problem->restraints.unmapped_count > 0) {
+        const tml_unmapped *first = &problem->restraints.unmapped[0];
+        const char *file = first->place.file >= 0 ? problem->files[first->place.file] : "";
+        tml_fail_at(&error, TML_BAD_INPUT, file, first->place.line, first->place.column, "%s", first->reason);
+        tml_problem_free(problem);
+        return tml_cli_failed(&error);
+    }
+    *out = problem;
+    return TML_EXIT_DONE;
+}
+
+/* ---- watching ---- */
+
+static volatile int stop_signal; /* 0, or the signal that asked us to stop */
+
+static int interrupted_by(void) {
+    return stop_signal;
+}
+
+static void on_signal(int number) {
+    stop_signal = number;
+}
+
+/* A signal that was ignored when we were started, as under nohup, stays ignored. The second one kills at once. */
+static void catch_signal(int number) {
+    struct sigaction now;
+    if (sigaction(number, NULL, &now) != 0 || now.sa_handler == SIG_IGN) return;
+    struct sigaction ours = {.sa_handler = on_signal, .sa_flags = (int)SA_RESETHAND};
+    sigemptyset(&ours.sa_mask);
+    sigaction(number, &ours, NULL);
+}
+
+static bool progress_is_line; /* on a terminal the line is overwritten, elsewhere lines follow each other */
+static bool progress_shown;
+static double progress_last;
+
+static void show_progress(void *context, const char *stage, long done, long total) {
+    const double seconds_between = progress_is_line ? 0.1 : 1.0;
+    double now = tml_seconds();
+    (void)context;
+    if (done != total && now - progress_last < seconds_between) return;
+    progress_last = now;
+    if (progress_is_line) {
+        fprintf(stderr, "\r%s: %ld of %ld\033[K", stage, done, total);
+        progress_shown = true;
+    } else {
+        fprintf(stderr, "%s: %ld of %ld\n", stage, done, total);
+    }
+}
+
+tml_watch tml_cli_watch(bool progress) {
+    struct sigaction ignore = {.sa_handler = SIG_IGN};
+    sigemptyset(&ignore.sa_mask);
+    sigaction(SIGPIPE, &ignore, NULL); /* a closed pipe is an error of writing, told like any other */
+    catch_signal(SIGINT);
+    catch_signal(SIGTERM);
+    progress_is_line = isatty(STDERR_FILENO);
+    return (tml_watch){.progress = progress || progress_is_line ? show_progress : NULL, .stop = &stop_signal};
+}
+
+void tml_cli_progress_end(void) {
+    if (progress_shown) fputs("\r\033[K", stderr);
+    progress_shown = false;
+}
+
+int tml_cli_finish(int exit_status) {
+    tml_cli_progress_end();
+    int signal_number = interrupted_by();
+    if (signal_number != 0) {
+        tml_cli_remark("Stopped by signal %d.", signal_number);
+        return 128 + signal_number;
+    }
+    if (fflush(stdout) == 0 && !ferror(stdout)) return exit_status;
+    tml_cli_remark("standard output: %s", errno != 0 ? strerror(errno) : "writing failed");
+    return TML_EXIT_MACHINE;
+}

@@ -1,0 +1,72 @@
+/* command.h: what the commands share: their table entry, exit statuses, option values, messages, progress and signals.
+ *
+ * Only this room prints messages and decides exit statuses. Results go to files or standard output, everything else to
+ * standard error.
+ */
+#ifndef TML_COMMAND_H
+#define TML_COMMAND_H
+
+#include <getopt.h>
+
+#include "input/problem.h"
+
+/* One command. Its file, named after it, holds the only definition; main.c has the table. */
+typedef struct tml_command {
+    const char *name;
+    const char *purpose; /* one line, for the list of commands */
+    const char *help;    /* the whole text of --help, ended by a newline */
+    int (*run)(const struct tml_command *self, int argc, char **argv); /* argv[0] is the command's name; gives the exit status */
+} tml_command;
+
+extern const tml_command tml_command_build, tml_command_check, tml_command_bounds;
+
+enum { TML_EXIT_DONE = 0, TML_EXIT_FINDING = 1, TML_EXIT_USAGE = 2, TML_EXIT_MACHINE = 3 };
+
+/* Long options that have no letter start here in the commands' getopt tables; --help is common to all. */
+enum { TML_OPTION_HELP = 1000, TML_OPTION_OWN };
+
+enum { TML_CLI_THREADS_MOST = 1024 };
+
+/* --help of a command: prints it; the exit status. */
+int tml_cli_help(const tml_command *command);
+
+/* A usage error: "trammel COMMAND: message", then where help is found; always TML_EXIT_USAGE. */
+int tml_cli_usage(const tml_command *command, const char *format, ...) __attribute__((format(printf, 2, 3)));
+
+/* After getopt_long returned '?' or ':': says which option is unknown or ambiguous or has a value too few or too many;
+ * TML_EXIT_USAGE. The string of letters starts with ':', so that getopt itself stays silent. */
+int tml_cli_bad_option(const tml_command *command, int got, char **argv, const struct option *options);
+
+/* Option values: the whole text must be a number within the limits; otherwise a message is printed and false returned. */
+bool tml_cli_integer(const tml_command *command, const char *option, const char *text, long long low, long long high,
+                     long long *value);
+bool tml_cli_seed(const tml_command *command, const char *option, const char *text, uint64_t *value);
+bool tml_cli_real(const tml_command *command, const char *option, const char *text, double low, double high, double *value);
+
+/* Print an error as "trammel: file:line:column: message"; the exit status that belongs to it: 2 for bad input, 3 for memory
+ * and I/O, 128 + signal after an interruption. A TML_TOO_LARGE is 3; what a format cannot hold is for the caller to turn
+ * into 2. */
+int tml_cli_failed(const tml_error *error);
+
+/* A remark on standard error: "trammel: …". */
+void tml_cli_remark(const char *format, ...) __attribute__((format(printf, 1, 2)));
+
+/* Inputs as the command line gives them: at least one, standard input at most once. false after a message. */
+bool tml_cli_inputs_good(const tml_command *command, char *const *inputs, int count);
+
+/* An output path, before any work: no directory, in a folder that can be written, none of the inputs. *exit_status is set
+ * and a message printed where it is not. "-" and NULL are always good. */
+bool tml_cli_output_good(const tml_command *command, const char *path, char *const *inputs, int count, int *exit_status);
+
+/* Read inputs into one problem; with `strict`, a restraint that names unknown atoms is an error. The exit status, after a
+ * message if that is not TML_EXIT_DONE; *out is then NULL. */
+int tml_cli_read(char *const *inputs, int count, bool strict, tml_problem **out);
+
+/* Watch the work: progress on standard error if it is a terminal or if `progress` is set; stops at SIGINT and SIGTERM. */
+tml_watch tml_cli_watch(bool progress);
+void tml_cli_progress_end(void); /* clears the progress line before other messages */
+
+/* The last thing of a command: flushes standard output (3 when that fails) and turns an interruption into 128 + signal. */
+int tml_cli_finish(int exit_status);
+
+#endif
