@@ -36,9 +36,10 @@ typedef struct tml_error {
     char message[1024];
 } tml_error;
 
-typedef struct tml_problem tml_problem;   /* molecule and restraints: what the inputs say */
-typedef struct tml_bounds tml_bounds;     /* lower and upper limits of all pairs */
-typedef struct tml_ensemble tml_ensemble; /* models and what was measured on them */
+typedef struct tml_problem tml_problem;               /* molecule and restraints: what the inputs say */
+typedef struct tml_bounds tml_bounds;                 /* lower and upper limits of all pairs */
+typedef struct tml_contradictions tml_contradictions; /* which limits fight, with proofs */
+typedef struct tml_ensemble tml_ensemble;             /* models and what was measured on them */
 
 /* Progress: stage is a short word, done of total; called from one thread at a time. */
 typedef void tml_progress_fn(void *context, const char *stage, long done, long total);
@@ -51,6 +52,151 @@ typedef struct tml_watch {
 } tml_watch;
 
 const char *tml_version(void);
+
+/* ---- problems ---- */
+
+/* Where in the inputs something stands; file is "" and line 0 where unknown. Strings live as long as the problem. */
+typedef struct tml_origin {
+    const char *file;
+    long line, column;
+} tml_origin;
+
+typedef struct tml_counts {
+    int32_t atoms, residues, chains;
+    int32_t distance_restraints, dihedral_restraints; /* of those whose atoms are all there */
+    int32_t unmapped;                                 /* restraints that name atoms which the molecule lacks */
+    int32_t notes;                                    /* remarks on the inputs that are no errors */
+} tml_counts;
+
+/* Read inputs (sheet, NEF; told by content; "-" for standard input, gzip understood) into one problem.
+ *
+ * out   the caller frees it with tml_problem_free
+ * Returns TML_OK, TML_BAD_INPUT, TML_TOO_LARGE, TML_NO_MEMORY or TML_IO.
+ */
+tml_status tml_problem_read(const char *const *paths, size_t path_count, tml_problem **out, tml_error *error);
+void tml_problem_free(tml_problem *problem);
+
+void tml_problem_count(const tml_problem *problem, tml_counts *counts);
+const char *tml_problem_title(const tml_problem *problem); /* "" for none */
+
+/* An atom as messages write it: "A:5:HB2", or the bare name where there is no chain; at most `size` bytes, always ended. */
+void tml_problem_atom(const tml_problem *problem, int32_t atom, char *text, size_t size);
+
+/* Note or unmapped restraint number `index`, 0-based: its text, and where it stands unless origin is NULL; NULL past the end. */
+const char *tml_problem_note(const tml_problem *problem, int32_t index, tml_origin *origin);
+const char *tml_problem_unmapped(const tml_problem *problem, int32_t index, tml_origin *origin);
+
+/* ---- limits ---- */
+
+/* The limits of all pairs, smoothed. Where limits contradict each other, the blamed ones are loosened as far as the proofs
+ * need.
+ *
+ * threads   0 for all
+ * out       the caller frees it with tml_bounds_free
+ * found     receives the contradictions; from tml_contradictions_new
+ * Returns TML_OK, TML_CONTRADICTED, TML_TOO_LARGE, TML_NO_MEMORY or TML_INTERRUPTED; out is filled in the first two cases.
+ */
+tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out,
+                              tml_contradictions *found, tml_error *error);
+void tml_bounds_free(tml_bounds *bounds);
+
+/* The limits of one pair of atoms, Å; *upper is INFINITY where there is none. false where an index is out of range. */
+bool tml_bounds_pair(const tml_bounds *bounds, int32_t atom_1, int32_t atom_2, double *lower, double *upper);
+
+/* ---- contradictions ---- */
+
+tml_contradictions *tml_contradictions_new(void); /* empty; NULL without memory */
+void tml_contradictions_free(tml_contradictions *found);
+int32_t tml_contradictions_count(const tml_contradictions *found);
+
+typedef struct tml_conflict {
+    double excess;      /* by how much the chain is too short, Å */
+    bool conditional;   /* leans on an assumption of the program, not only on the inputs and on chemistry */
+    int32_t step_count; /* 0 is the lower limit that fails; the upper limits follow, each from where the last one ended */
+} tml_conflict;
+
+typedef struct tml_conflict_step {
+    int32_t atom_1, atom_2;
+    bool is_upper;
+    double value;          /* Å */
+    const char *kind;      /* restraint, bond, angle, torsion, plane, chirality, radius or dihedral */
+    const char *list, *id; /* of the user's restraint; "" where it is none */
+    tml_origin origin;
+} tml_conflict_step;
+
+/* Contradiction number `index` and step number `step` of it, 0-based; false past the end. */
+bool tml_contradictions_get(const tml_contradictions *found, int32_t index, tml_conflict *conflict);
+bool tml_contradictions_step(const tml_contradictions *found, const tml_problem *problem, int32_t index, int32_t step,
+                             tml_conflict_step *out);
+
+/* ---- ensembles ---- */
+
+typedef struct tml_build_options {
+    int models;         /* models wanted, default 20 */
+    int trials;         /* at most this many tried; 0 for 5 * models */
+    int threads;        /* 0 for all */
+    uint64_t seed;      /* default 1 */
+    bool select_lowest; /* the best by error among at least 1.5 * models trials; otherwise the first that pass */
+    bool strict;        /* stop at the first finding: a contradiction or an unmapped restraint */
+    int dimensions;     /* of the embedding: 3 (default) or 4 */
+    int metrize_roots;  /* atoms metrized; 0 for all */
+    double effort;      /* scales the annealing; 1 is usual */
+} tml_build_options;
+
+void tml_build_defaults(tml_build_options *options);
+
+/* Build an ensemble.
+ *
+ * problem  peptide bonds to proline that the restraints need cis are found and set in it, with a note each; it must outlive
+ *          the ensemble
+ * found    receives the contradictions of the limits; from tml_contradictions_new
+ * out      filled unless the call failed; also with TML_SHORT and TML_CONTRADICTED; freed with tml_ensemble_free
+ *
+ * Returns TML_OK, TML_SHORT (fewer trials passed than wanted), TML_CONTRADICTED (built all the same, but for `strict`),
+ * TML_BAD_INPUT (an empty problem), TML_TOO_LARGE, TML_NO_MEMORY or TML_INTERRUPTED.
+ */
+tml_status tml_build(tml_problem *problem, const tml_build_options *options, const tml_watch *watch, tml_ensemble **out,
+                     tml_contradictions *found, tml_error *error);
+void tml_ensemble_free(tml_ensemble *ensemble);
+
+/* What one model is like. Distances in Å, angles in degrees. */
+typedef struct tml_measures {
+    int32_t distance_over_01, distance_over_02, distance_over_05; /* restraints violated by more than 0.1, 0.2, 0.5 Å */
+    double distance_max, distance_rms;
+    int32_t dihedral_over_5, dihedral_over_10;
+    double dihedral_max;
+    int32_t wrong_handed;   /* centres with `fixed` handedness that came out the wrong way */
+    int32_t cis_undeclared; /* cis peptides (|omega| < 30°) that are neither declared nor before proline */
+    int32_t omega_off;      /* peptides beyond 30° of planar */
+    double bond_rms, bond_max, angle_rms;
+    double plane_max;       /* largest r.m.s. distance of a planar group from its best plane, Å */
+    int32_t overlaps;       /* pairs more than three bonds apart, closer than their radii by 0.6 Å (1.0 for polar pairs) */
+    double backbone_usual;  /* share of residues in the usual regions of phi and psi; NAN where there are none */
+} tml_measures;
+
+/* A model of an ensemble; `index` is 0-based, best first. */
+typedef struct tml_model_facts {
+    int32_t trial;         /* from 1 */
+    double error;          /* the refinement's error function */
+    bool passed, mirrored; /* mirrored: from the reflected image of the embedding */
+} tml_model_facts;
+
+int32_t tml_ensemble_count(const tml_ensemble *ensemble);  /* models */
+int32_t tml_ensemble_trials(const tml_ensemble *ensemble); /* trials made */
+int32_t tml_ensemble_passed(const tml_ensemble *ensemble); /* trials that passed */
+
+/* NULL or false past the end. Coordinates are three doubles an atom, in Å, in atom order. */
+bool tml_ensemble_model(const tml_ensemble *ensemble, int32_t index, tml_model_facts *facts);
+const double *tml_ensemble_coordinates(const tml_ensemble *ensemble, int32_t index);
+const tml_measures *tml_ensemble_measures(const tml_ensemble *ensemble, int32_t index);
+
+/* Write all models to a file, its format told by its suffix: .pdb or .cif, .gz after it compresses. The file appears whole or
+ * not at all.
+ *
+ * found   contradictions to be mentioned in the file; may be NULL
+ * Returns TML_OK, TML_BAD_INPUT (another suffix), TML_TOO_LARGE (the format cannot hold the molecule), TML_NO_MEMORY or TML_IO.
+ */
+tml_status tml_ensemble_write(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error);
 
 #ifdef __cplusplus
 }

@@ -3,6 +3,7 @@
  * A tml_bounds owns one n*n float array with rows of `stride` floats: element (i,j) with i<j is the upper limit in Å
  * (INFINITY for none), with i>j the lower; the diagonal is 0. Uppers are rounded up and lowers down wherever a value is
  * stored. Filling it is fill.c's work, tightening it smooth.c's; this file only stores and reads.
+ * All steps in a row, tml_bounds_prepare, are public: trammel.h.
  */
 #ifndef TML_BOUNDS_H
 #define TML_BOUNDS_H
@@ -16,7 +17,6 @@ struct tml_bounds {
 };
 
 tml_status tml_bounds_new(int32_t n, tml_bounds **out, tml_error *error);
-void tml_bounds_free(tml_bounds *bounds);
 
 static inline float *tml_bounds_cell(const tml_bounds *bounds, int32_t row, int32_t column) {
     return &bounds->limit[(size_t)row * bounds->stride + (size_t)column];
@@ -37,6 +37,7 @@ typedef enum tml_reason {
     TML_REASON_RESTRAINT, TML_REASON_BOND, TML_REASON_ANGLE, TML_REASON_TORSION, TML_REASON_PLANE, TML_REASON_CHIRALITY,
     TML_REASON_RADIUS, TML_REASON_DIHEDRAL
 } tml_reason;
+const char *tml_reason_name(tml_reason reason); /* one word, as reports write it: restraint, bond, angle … */
 
 /* One given limit with its source, in double: what proofs are made of. Only given limits are listed, radii are not:
  * a pair without a given lower limit has the radius floor of fill.h. */
@@ -55,7 +56,7 @@ typedef struct tml_givens { tml_given *items; size_t count, capacity; } tml_give
  * atom_1, each starting where the last ended. */
 typedef struct tml_step { int32_t atom_1, atom_2; tml_given given; } tml_step;
 typedef struct tml_contradiction { tml_step *steps; size_t step_count; double excess; bool conditional; } tml_contradiction;
-typedef struct tml_contradictions { tml_contradiction *items; size_t count, capacity; } tml_contradictions;
+struct tml_contradictions { tml_contradiction *items; size_t count, capacity; };
 void tml_contradictions_clear(tml_contradictions *found);
 
 /* Fill the limits of a problem: covalent, radii, restraints (by the rule for sums over groups).
@@ -85,10 +86,5 @@ tml_status tml_bounds_smooth(tml_bounds *bounds, int threads, const tml_watch *w
  * no restraint of the user's with one another. `tolerance` is the excess, Å, from which it counts (0.001). */
 tml_status tml_contradictions_find(const tml_problem *problem, const tml_givens *givens, const tml_bounds *unsmoothed,
                                    double tolerance, tml_contradictions *found, tml_error *error);
-
-/* Fill and smooth; where limits contradict each other, loosen the blamed ones in the matrix only, as far as the proofs need,
- * until it closes. found may end up empty. */
-tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out,
-                              tml_contradictions *found, tml_error *error);
 
 #endif

@@ -1,26 +1,12 @@
 /* ensemble.h: models and what was measured on them.
  *
- * A tml_ensemble owns its coordinates and measures; the problem is borrowed and must outlive it.
+ * A tml_ensemble owns its coordinates and measures; the problem is borrowed and must outlive it. tml_measures and
+ * tml_ensemble_free are in trammel.h.
  */
 #ifndef TML_ENSEMBLE_H
 #define TML_ENSEMBLE_H
 
 #include "input/problem.h"
-
-/* What one model is like. Distances in Å, angles in degrees. */
-typedef struct tml_measures {
-    int32_t distance_over_01, distance_over_02, distance_over_05; /* restraints violated by more than 0.1, 0.2, 0.5 Å */
-    double distance_max, distance_rms;
-    int32_t dihedral_over_5, dihedral_over_10;
-    double dihedral_max;
-    int32_t wrong_handed;   /* centres with `fixed` handedness that came out the wrong way */
-    int32_t cis_undeclared; /* cis peptides (|omega| < 30°) that are neither declared nor before proline */
-    int32_t omega_off;      /* peptides beyond 30° of planar */
-    double bond_rms, bond_max, angle_rms;
-    double plane_max;       /* largest r.m.s. distance of a planar group from its best plane, Å */
-    int32_t overlaps;       /* pairs more than three bonds apart, closer than their radii by 0.6 Å (1.0 for polar pairs) */
-    double backbone_usual;  /* share of residues in the usual regions of phi and psi; NAN where there are none */
-} tml_measures;
 
 typedef struct tml_model {
     double *xyz;          /* atom_count * 3, Å; owned */
@@ -57,7 +43,5 @@ bool tml_measures_pass(const tml_measures *measures);
 
 /* Superpose all models on their well-defined part and fill spread and well_defined. */
 tml_status tml_ensemble_superpose(tml_ensemble *ensemble, tml_error *error);
-
-void tml_ensemble_free(tml_ensemble *ensemble);
 
 #endif
