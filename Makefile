@@ -95,7 +95,7 @@ $(BUILD)/bench/%: tests/bench/%.c $(LIB)
 	@mkdir -p $(@D)
 	$(CC) $(CPPFLAGS) $(CFLAGS) -MMD -MP $< $(LIB) $(LDFLAGS) $(LDLIBS) -o $@
 
-WRAPPED := malloc calloc realloc aligned_alloc strdup strndup
+WRAPPED := malloc calloc realloc aligned_alloc strdup strndup free
 $(BUILD)/inject/%: tests/inject/%.c $(LIB)
 	@mkdir -p $(@D)
 	$(CC) $(CPPFLAGS) $(CFLAGS) -MMD -MP $< $(LIB) $(LDFLAGS) $(WRAPPED:%=-Wl,--wrap=%) $(LDLIBS) -o $@

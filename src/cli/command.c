@@ -23,18 +23,25 @@
 
 /* ---- messages ---- */
 
+/* Names and words of the inputs may hold anything; a terminal shall not act on it. */
+static void print_plainly(const char *text, FILE *out) {
+    for (const unsigned char *at = (const unsigned char *)text; *at != '\0'; at++) fputc(*at < ' ' || *at == 127 ? '?' : *at, out);
+}
+
 int tml_cli_help(const tml_command *command) {
     fputs(command->help, stdout);
     return tml_cli_finish(TML_EXIT_DONE);
 }
 
 int tml_cli_usage(const tml_command *command, const char *format, ...) {
+    char text[2048];
     va_list arguments;
     va_start(arguments, format);
-    fprintf(stderr, "trammel %s: ", command->name);
-    vfprintf(stderr, format, arguments);
-    fprintf(stderr, "\nTry 'trammel %s --help'.\n", command->name);
+    vsnprintf(text, sizeof text, format, arguments);
     va_end(arguments);
+    fprintf(stderr, "trammel %s: ", command->name);
+    print_plainly(text, stderr);
+    fprintf(stderr, "\nTry 'trammel %s --help'.\n", command->name);
     return TML_EXIT_USAGE;
 }
 
@@ -52,13 +59,15 @@ int tml_cli_bad_option(const tml_command *command, int got, char **argv, const s
 }
 
 void tml_cli_remark(const char *format, ...) {
+    char text[2048];
     va_list arguments;
-    tml_cli_progress_end();
     va_start(arguments, format);
-    fputs("trammel: ", stderr);
-    vfprintf(stderr, format, arguments);
-    fputc('\n', stderr);
+    vsnprintf(text, sizeof text, format, arguments);
     va_end(arguments);
+    tml_cli_progress_end();
+    fputs("trammel: ", stderr);
+    print_plainly(text, stderr);
+    fputc('\n', stderr);
 }
 
 static int interrupted_by(void);

@@ -1,0 +1,197 @@
+/* Every allocation may fail. The whole way, from files to files, is walked again and again, and each time another allocation
+ * of the library gives NULL: nothing may crash, nothing may leak, and the status must be TML_NO_MEMORY.
+ *
+ * The linker sends the library's calls of malloc and its kin here (--wrap); jansson's are sent here by its own hook. With SOAK
+ * set each allocation fails in turn, otherwise the first ones and a sample of the others.
+ */
+#include <jansson.h>
+#include <stdint.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "bounds/bounds.h"
+#include "ensemble/build.h"
+#include "output/output.h"
+
+/* ---- allocations, counted and kept in a set of pointers ---- */
+
+void *__real_malloc(size_t size);
+void *__real_calloc(size_t count, size_t size);
+void *__real_realloc(void *old, size_t size);
+void *__real_aligned_alloc(size_t alignment, size_t size);
+void *__wrap_malloc(size_t size);
+void *__wrap_calloc(size_t count, size_t size);
+void *__wrap_realloc(void *old, size_t size);
+void *__wrap_aligned_alloc(size_t alignment, size_t size);
+char *__wrap_strdup(const char *text);
+char *__wrap_strndup(const char *text, size_t length);
+void __real_free(void *pointer);
+void __wrap_free(void *pointer);
+
+enum { SLOTS = 1 << 20 };
+static void *const GONE = (void *)1;
+static void *live[SLOTS];
+static long allocations, fail_at, live_count;
+
+static size_t find(const void *pointer) {
+    size_t at = ((uintptr_t)pointer >> 4) * 0x9e3779b97f4a7c15u >> 44;
+    while (live[at] != NULL && live[at] != pointer) at = (at + 1) % SLOTS;
+    return at;
+}
+
+static void *kept(void *pointer) {
+    if (pointer == NULL) return NULL;
+    live[find(pointer)] = pointer;
+    live_count++;
+    return pointer;
+}
+
+static void forget(const void *pointer) {
+    size_t at = find(pointer);
+    if (pointer == NULL || live[at] == NULL) return; /* NULL, or memory that the C library gave */
+    live[at] = GONE;
+    live_count--;
+}
+
+static bool fails(void) {
+    return ++allocations == fail_at;
+}
+
+void *__wrap_malloc(size_t size) {
+    return fails() ? NULL : kept(__real_malloc(size));
+}
+
+void *__wrap_calloc(size_t count, size_t size) {
+    return fails() ? NULL : kept(__real_calloc(count, size));
+}
+
+void *__wrap_aligned_alloc(size_t alignment, size_t size) {
+    return fails() ? NULL : kept(__real_aligned_alloc(alignment, size));
+}
+
+void *__wrap_realloc(void *old, size_t size) {
+    if (fails()) return NULL;
+    forget(old);
+    return kept(__real_realloc(old, size));
+}
+
+char *__wrap_strndup(const char *text, size_t length) {
+    length = strnlen(text, length);
+    char *copy = __wrap_malloc(length + 1);
+    if (copy != NULL) memcpy(copy, text, length), copy[length] = '\0';
+    return copy;
+}
+
+char *__wrap_strdup(const char *text) {
+    return __wrap_strndup(text, strlen(text));
+}
+
+void __wrap_free(void *pointer) {
+    forget(pointer);
+    __real_free(pointer);
+}
+
+/* ---- the ways ---- */
+
+static char folder[] = "/tmp/trammel-inject-XXXXXX";
+
+static const char *in_folder(const char *name) {
+    static char path[256];
+    snprintf(path, sizeof path, "%s/%s", folder, name);
+    return path;
+}
+
+static tml_status check_way(const char *const *paths, size_t count) {
+    tml_error error = {0};
+    tml_problem *problem = NULL;
+    tml_bounds *bounds = NULL;
+    tml_contradictions found = {0};
+    FILE *nowhere = fopen("/dev/null", "w");
+    tml_status status = tml_problem_read(paths, count, &problem, &error);
+    if (status == TML_OK) status = tml_bounds_prepare(problem, 1, NULL, &bounds, &found, &error);
+    if (status == TML_CONTRADICTED) status = TML_OK;
+    if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, &error);
+    if (status == TML_OK) status = tml_write_check_json(problem, &found, in_folder("check.json"), &error);
+    if (status == TML_OK) status = tml_write_bounds(problem, bounds, in_folder("bounds.gz"), &error);
+    fclose(nowhere);
+    tml_contradictions_clear(&found);
+    tml_bounds_free(bounds);
+    tml_problem_free(problem);
+    return status;
+}
+
+static tml_status build_way(const char *const *paths, size_t count) {
+    tml_error error = {0};
+    tml_problem *problem = NULL;
+    tml_ensemble *ensemble = NULL;
+    tml_contradictions found = {0};
+    tml_build_options options;
+    tml_build_defaults(&options);
+    options.models = 2;
+    options.trials = 3;
+    options.threads = 1;
+    options.effort = 0.05;
+    FILE *nowhere = fopen("/dev/null", "w");
+    tml_status status = tml_problem_read(paths, count, &problem, &error);
+    if (status == TML_OK) status = tml_build(problem, &options, NULL, &ensemble, &found, &error);
+    if (status == TML_SHORT || status == TML_CONTRADICTED) status = TML_OK;
+    if (status == TML_OK) status = tml_write_models(ensemble, &found, in_folder("m.pdb"), TML_FORMAT_PDB, false, &error);
+    if (status == TML_OK) status = tml_write_models(ensemble, &found, in_folder("m.cif.gz"), TML_FORMAT_CIF, true, &error);
+    if (status == TML_OK) status = tml_write_build_json(ensemble, &found, in_folder("build.json"), &error);
+    if (status == TML_OK) status = tml_print_build(nowhere, ensemble, &found, &error);
+    fclose(nowhere);
+    tml_ensemble_free(ensemble);
+    tml_contradictions_clear(&found);
+    tml_problem_free(problem);
+    return status;
+}
+
+/* ---- walking them ---- */
+
+typedef tml_status way(const char *const *paths, size_t count);
+static int passed, failed;
+
+static tml_status walk(way *go, const char *path, long fail) {
+    memset(live, 0, sizeof live);
+    allocations = 0;
+    live_count = 0;
+    fail_at = fail;
+    return go(&path, 1);
+}
+
+static void expect(bool good, const char *what, const char *path, long at, tml_status status) {
+    good ? passed++ : failed++;
+    if (!good) printf("%s: allocation %ld of %s; status %d, %ld not freed\n", what, at, path, (int)status, live_count);
+    fflush(stdout);
+}
+
+static void fail_each(way *go, const char *path, long sample) {
+    tml_status status = walk(go, path, 0);
+    long total = allocations;
+    expect(status == TML_OK && live_count == 0 && total > 0, "without failure", path, total, status);
+    if (status != TML_OK) return;
+    long step = getenv("SOAK") != NULL || total <= sample ? 1 : total / sample;
+    for (long at = 1; at <= total; at += at < sample / 4 ? 1 : step) {
+        printf("%s %ld of %ld\r", path, at, total); /* the last one told is the one that crashed */
+        fflush(stdout);
+        status = walk(go, path, at);
+        expect(status == TML_NO_MEMORY && live_count == 0, "failed", path, at, status);
+    }
+    printf("\n%s: %ld allocations\n", path, total);
+}
+
+int main(void) {
+    if (mkdtemp(folder) == NULL) return 77;
+    json_set_alloc_funcs(__wrap_malloc, __wrap_free);
+    fail_each(check_way, "tests/cli/peptide.sheet", 400);
+    fail_each(check_way, "tests/cli/contradicted.sheet", 400);
+    fail_each(build_way, "tests/cli/five-ring.sheet", 200);
+    fail_each(build_way, "tests/cli/peptide.sheet", 60);
+    const char *const names[] = {"check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json"};
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) unlink(in_folder(names[i]));
+    if (rmdir(folder) != 0) expect(false, "partial files are left", folder, 0, TML_OK);
+    printf("%d passed, %d failed\n", passed, failed);
+    return failed != 0;
+}
