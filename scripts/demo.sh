@@ -1,0 +1,20 @@
+#!/bin/sh
+# Three small jobs on invented data: an ensemble of a hairpin, a slip in its restraints, a ring of beads.
+set -eu
+program=${BUILD:-build}/trammel
+out=$(mktemp -d)
+trap 'rm -rf "$out"' EXIT
+
+show() {
+    printf '\n$ trammel %s\n' "$*"
+    status=0
+    "$program" "$@" || status=$?
+    [ "$status" -le 1 ] || exit "$status"
+    [ "$status" -eq 0 ] || echo "(exit status $status: a finding)"
+}
+
+show check restraints/hairpin.sheet
+show build restraints/hairpin.sheet -n 5 -o "$out/hairpin.pdb" --summary "$out/hairpin.json"
+show check restraints/hairpin.sheet restraints/hairpin-slip.sheet
+show build restraints/crosslinks.sheet -n 5 -o "$out/crosslinks.cif"
+printf '\nThe demo wrote to a scratch folder that is gone now; give -o a name of your own to keep models.\n'
