@@ -8,7 +8,7 @@ Conventions, so that a new test is found without touching this file:
     tests/oracle/test_*       Python scripts and C or C++ programs that compare with something outside the project
     tests/cli/test_*.py       the program from outside
     tests/inject/test_*.c     programs linked so that allocations can be made to fail
-    tests/fuzz/*.c            libFuzzer targets; first inputs in tests/fuzz/corpus/NAME/
+    tests/fuzz/*.c            libFuzzer targets; first inputs in tests/fuzz/corpus/NAME/, restraints/, tests/cli/
 Scripts and programs get TRAMMEL_BUILD, the folder of the build. They exit with 0 (passed), 77 (skipped) or anything else
 (failed); one that holds several checks prints 'N passed, N failed, N skipped' as its last line.
 """
@@ -181,7 +181,7 @@ def stage_sanitize():
 def fuzz_one(program):
     name = os.path.basename(program)
     with tempfile.TemporaryDirectory() as scratch:
-        corpus = [path for path in [f'tests/fuzz/corpus/{name}'] if os.path.isdir(path)]
+        corpus = [path for path in (f'tests/fuzz/corpus/{name}', 'restraints', 'tests/cli') if os.path.isdir(path)]
         return run([program, f'-max_total_time={FUZZ_SECONDS}', '-timeout=20', '-rss_limit_mb=3000', '-max_len=20000',
                     f'-artifact_prefix={scratch}/', '-print_final_stats=1', scratch, *corpus],
                    {**SANITIZED, 'TRAMMEL_BUILD': BUILD}, FUZZ_SECONDS + 300)
