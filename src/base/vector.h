@@ -4,6 +4,8 @@
 
 #include <math.h>
 
+#define TML_PI 3.14159265358979323846
+
 static inline void tml_sub(double out[3], const double a[3], const double b[3]) {
     for (int k = 0; k < 3; k++) out[k] = a[k] - b[k];
 }

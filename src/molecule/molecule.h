@@ -7,6 +7,7 @@
 #define TML_MOLECULE_H
 
 #include "base/status.h"
+#include "molecule/index.h"
 #include "molecule/outline.h"
 
 typedef struct tml_atom {
@@ -64,7 +65,12 @@ typedef struct tml_plane {
 } tml_plane;
 
 /* A peptide bond C-N between two amino acids: atoms of omega. */
-typedef struct tml_peptide { int32_t ca1, c, o, n, ca2; int32_t residue1, residue2; bool cis, declared; } tml_peptide;
+typedef struct tml_peptide {
+    int32_t ca1, c, o, n, ca2; /* o is -1 where a variant took it away */
+    int32_t residue1, residue2;
+    int32_t bond, plane;       /* C-N; plane is -1 where atoms are missing */
+    bool cis, declared;        /* declared: the input says that it is cis */
+} tml_peptide;
 
 typedef struct tml_chain { const char *code; int32_t first_residue, residue_count; tml_ends ends; } tml_chain;
 
@@ -80,6 +86,10 @@ typedef struct tml_molecule {
     int32_t *plane_atoms;  double *plane_xy; int32_t plane_atom_count;
     tml_peptide *peptides; int32_t peptide_count;
     int32_t *neighbour_first, *neighbours; /* bonded atoms of atom i: neighbours[neighbour_first[i] … neighbour_first[i+1]-1] */
+    int32_t *neighbour_bonds;              /* the bond that leads to each of them */
+    int32_t *angle_first;                  /* angles around atom i: angle_first[i] … angle_first[i+1]-1 */
+    int32_t *torsion_first;                /* torsions about bond i (its a and b are the torsions' b and c), likewise */
+    tml_index *chain_index, *residue_index, *atom_index; /* for tml_molecule_find_… only */
 } tml_molecule;
 
 /* Make the molecule that an outline describes.
@@ -97,6 +107,13 @@ void tml_molecule_clear(tml_molecule *molecule);
 
 /* Residue by chain code and sequence code, -1 if there is none. */
 int32_t tml_molecule_find_residue(const tml_molecule *molecule, const char *chain, const char *number);
+
+/* Residue by its names, or -1 with the reason in words that an error message can end with: "A:40: chain A has no residue 40;
+ * it has 1 to 39". At most `size` bytes, always ended. */
+int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why, size_t size);
+
+/* Why a residue has no atom of that name, and the nearest that it has: "A:5:HB1: no such atom in SER; it has HB2, HB3". */
+void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const char *name, char *text, size_t size);
 
 /* Atom by its exact name within a residue, -1 if there is none. */
 int32_t tml_molecule_find_atom(const tml_molecule *molecule, int32_t residue, const char *name);

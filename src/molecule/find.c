@@ -1,0 +1,83 @@
+#include "molecule/molecule.h"
+
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "molecule/nearest.h"
+
+void tml_molecule_clear(tml_molecule *molecule) {
+    free(molecule->atoms);
+    free(molecule->residues);
+    free(molecule->chains);
+    free(molecule->bonds);
+    free(molecule->angles);
+    free(molecule->torsions);
+    free(molecule->centres);
+    free(molecule->planes);
+    free(molecule->plane_atoms);
+    free(molecule->plane_xy);
+    free(molecule->peptides);
+    free(molecule->neighbour_first);
+    free(molecule->neighbours);
+    free(molecule->neighbour_bonds);
+    free(molecule->angle_first);
+    free(molecule->torsion_first);
+    tml_index_free(molecule->chain_index);
+    tml_index_free(molecule->residue_index);
+    tml_index_free(molecule->atom_index);
+    *molecule = (tml_molecule){0};
+}
+
+int32_t tml_molecule_find_residue(const tml_molecule *molecule, const char *chain, const char *number) {
+    int32_t index = tml_index_find(molecule->chain_index, -1, chain);
+    return index < 0 ? -1 : tml_index_find(molecule->residue_index, index, number);
+}
+
+int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why, size_t size) {
+    int32_t found = tml_molecule_find_residue(molecule, chain, number);
+    if (size == 0) return found;
+    why[0] = '\0';
+    if (found >= 0) return found;
+    int32_t index = tml_index_find(molecule->chain_index, -1, chain);
+    if (*chain == '\0') {
+        snprintf(why, size, "there are no atoms without a residue");
+    } else if (index < 0) {
+        tml_nearest nearest;
+        tml_nearest_start(&nearest, chain);
+        for (int32_t c = 0; c < molecule->chain_count; c++)
+            if (*molecule->chains[c].code != '\0') tml_nearest_offer(&nearest, molecule->chains[c].code);
+        snprintf(why, size, "%.32s:%.32s: no such chain; nearest: ", chain, number);
+        tml_nearest_append(&nearest, why, size);
+    } else {
+        const tml_chain *within = &molecule->chains[index];
+        snprintf(why, size, "%.32s:%.32s: no such residue; chain %.32s has %.32s to %.32s", chain, number, chain,
+                 molecule->residues[within->first_residue].number,
+                 molecule->residues[within->first_residue + within->residue_count - 1].number);
+    }
+    return -1;
+}
+
+int32_t tml_molecule_find_atom(const tml_molecule *molecule, int32_t residue, const char *name) {
+    return tml_index_find(molecule->atom_index, residue, name);
+}
+
+void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const char *name, char *text, size_t size) {
+    if (size == 0) return;
+    const tml_residue *in = &molecule->residues[residue];
+    tml_nearest nearest;
+    tml_nearest_start(&nearest, name);
+    for (int32_t i = 0; i < in->atom_count; i++) tml_nearest_offer(&nearest, molecule->atoms[in->first_atom + i].name);
+    const char *colon = *in->chain != '\0' || *in->number != '\0' ? ":" : "";
+    snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom%s%.32s; it has ", in->chain, colon, in->number, colon, name,
+             *in->name == '\0' ? "" : " in ", in->name);
+    if (*in->name == '\0') snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom; nearest: ", in->chain, colon, in->number, colon, name);
+    tml_nearest_append(&nearest, text, size);
+}
+
+void tml_molecule_address(const tml_molecule *molecule, int32_t atom, char *text, size_t size) {
+    if (size == 0) return;
+    const tml_residue *in = &molecule->residues[molecule->atoms[atom].residue];
+    if (*in->chain == '\0' && *in->number == '\0') snprintf(text, size, "%s", molecule->atoms[atom].name);
+    else snprintf(text, size, "%s:%s:%s", in->chain, in->number, molecule->atoms[atom].name);
+}

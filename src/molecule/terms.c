@@ -1,0 +1,288 @@
+#include "base/vector.h"
+#include "molecule/making.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+/* Contents: the steps - planes and peptides - angles - centres - what the input adds */
+
+static tml_status make_planes(tml_making *making);
+static tml_status make_angles(tml_making *making);
+static tml_status make_centres(tml_making *making);
+static tml_status add_user_centres(tml_making *making);
+static tml_status add_user_planes(tml_making *making);
+
+tml_status tml_make_terms(tml_making *making) {
+    tml_molecule *molecule = making->molecule;
+    making->planar = tml_alloc((size_t)molecule->atom_count, sizeof *making->planar);
+    if (making->planar == NULL) return tml_no_memory(making->error);
+    tml_status status = make_planes(making);
+    if (status == TML_OK) status = make_angles(making);
+    if (status == TML_OK) status = make_centres(making);
+    if (status == TML_OK) status = add_user_centres(making);
+    if (status == TML_OK) status = tml_make_torsions(making);
+    for (int32_t p = 0; p < molecule->plane_count && status == TML_OK; p++) tml_plane_fill(molecule, p);
+    if (status == TML_OK) status = add_user_planes(making);
+    return status;
+}
+
+static int32_t degree_of(const tml_molecule *molecule, int32_t atom) {
+    return molecule->neighbour_first[atom + 1] - molecule->neighbour_first[atom];
+}
+
+static bool is_bare(const tml_making *making, int32_t atom) {
+    return making->residues[making->molecule->atoms[atom].residue].form == NULL;
+}
+
+static bool bonded(const tml_molecule *molecule, int32_t a, int32_t b) {
+    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
+        if (molecule->neighbours[k] == b) return true;
+    return false;
+}
+
+/* ---- planes and peptides ---- */
+
+static tml_status add_plane(tml_making *making, int32_t r, const char *names, int32_t first_of_residue);
+static tml_status add_peptide(tml_making *making, int32_t r);
+
+static tml_status make_planes(tml_making *making) {
+    for (int32_t r = 0; r < making->residue_count; r++) {
+        const tml_draft_residue *residue = &making->residues[r];
+        if (residue->form == NULL) continue;
+        tml_status status = residue->previous < 0 ? TML_OK : add_peptide(making, r);
+        int32_t first = making->molecule->plane_count;
+        for (const char *const *names = residue->form->planes; *names != NULL && status == TML_OK; names++)
+            status = add_plane(making, r, *names, first);
+        for (const char *const *names = tml_backbone.planes; *names != NULL && status == TML_OK; names++)
+            status = add_plane(making, r, *names, first);
+        if (status != TML_OK) return status;
+    }
+    return TML_OK;
+}
+
+static tml_status add_peptide(tml_making *making, int32_t r) {
+    tml_molecule *molecule = making->molecule;
+    const tml_draft_residue *before = &making->residues[making->residues[r].previous];
+    if (!tml_grow(&molecule->peptides, &making->peptide_room, (size_t)molecule->peptide_count + 1, sizeof *molecule->peptides))
+        return tml_no_memory(making->error);
+    tml_peptide *peptide = &molecule->peptides[molecule->peptide_count++];
+    *peptide = (tml_peptide){.ca1 = tml_lookup_atom(making, r, "-CA", 3), .c = tml_lookup_atom(making, r, "-C", 2),
+                             .o = tml_lookup_atom(making, r, "-O", 2), .n = tml_lookup_atom(making, r, "N", 1),
+                             .ca2 = tml_lookup_atom(making, r, "CA", 2), .residue1 = making->residues[r].previous, .residue2 = r,
+                             .plane = -1, .cis = before->cis, .declared = before->cis};
+    for (int32_t k = molecule->neighbour_first[peptide->c]; k < molecule->neighbour_first[peptide->c + 1]; k++)
+        if (molecule->neighbours[k] == peptide->n) peptide->bond = molecule->neighbour_bonds[k];
+    return TML_OK;
+}
+
+/* Are all atoms of the newest plane in an earlier one of the same residue? */
+static bool is_within_earlier(const tml_molecule *molecule, const tml_plane *plane, int32_t first_of_residue) {
+    for (int32_t p = first_of_residue; p < molecule->plane_count; p++) {
+        const tml_plane *other = &molecule->planes[p];
+        int32_t held = 0;
+        for (int32_t i = 0; i < plane->count; i++)
+            for (int32_t j = 0; j < other->count; j++)
+                held += molecule->plane_atoms[plane->first + i] == molecule->plane_atoms[other->first + j];
+        if (held == plane->count) return true;
+    }
+    return false;
+}
+
+/* A plane of those of the named atoms that are there, if they are at least four. */
+static tml_status add_plane(tml_making *making, int32_t r, const char *names, int32_t first_of_residue) {
+    enum { SMALLEST = 4 };
+    static const double WITHIN = 0.02; /* Å */
+    tml_molecule *molecule = making->molecule;
+    tml_plane plane = {.first = molecule->plane_atom_count, .within = WITHIN};
+    bool of_peptide = *names == '-';
+    for (const char *at = names; *at != '\0'; at += strspn(at, " ")) {
+        size_t length = strcspn(at, " ");
+        int32_t atom = tml_lookup_atom(making, r, at, length);
+        at += length;
+        if (atom < 0) continue;
+        if (!tml_grow(&molecule->plane_atoms, &making->plane_atom_room, (size_t)(plane.first + plane.count) + 1,
+                      sizeof *molecule->plane_atoms))
+            return tml_no_memory(making->error);
+        molecule->plane_atoms[plane.first + plane.count++] = atom;
+    }
+    if (plane.count < SMALLEST || (of_peptide && making->residues[r].previous < 0) ||
+        is_within_earlier(molecule, &plane, first_of_residue))
+        return TML_OK;
+    double *xy = realloc(molecule->plane_xy, 2 * making->plane_atom_room * sizeof *xy);
+    if (xy == NULL) return tml_no_memory(making->error);
+    molecule->plane_xy = xy;
+    if (!tml_grow(&molecule->planes, &making->plane_room, (size_t)molecule->plane_count + 1, sizeof *molecule->planes))
+        return tml_no_memory(making->error);
+    if (of_peptide) molecule->peptides[molecule->peptide_count - 1].plane = molecule->plane_count;
+    molecule->planes[molecule->plane_count++] = plane;
+    molecule->plane_atom_count += plane.count;
+    const int32_t *atoms = &molecule->plane_atoms[plane.first];
+    for (int32_t i = 0; i < plane.count; i++) {
+        int32_t within = 0;
+        for (int32_t j = 0; j < plane.count; j++) within += bonded(molecule, atoms[i], atoms[j]);
+        if (within >= 2 && degree_of(molecule, atoms[i]) <= 3) making->planar[atoms[i]] = true;
+    }
+    return TML_OK;
+}
+
+/* ---- angles ---- */
+
+/* Half-widths for bounds. Deposited NMR structures and the spread that Engh & Huber give (1.0 to 2.9°, one sigma) lie within. */
+static const double ANGLE_TOLERANCE = 4 * TML_PI / 180, ANGLE_H_TOLERANCE = 5 * TML_PI / 180;
+
+static tml_status add_angles(tml_making *making, int32_t centre);
+
+static tml_status make_angles(tml_making *making) {
+    tml_molecule *molecule = making->molecule;
+    molecule->angle_first = tml_alloc((size_t)molecule->atom_count + 1, sizeof *molecule->angle_first);
+    if (molecule->angle_first == NULL) return tml_no_memory(making->error);
+    for (int32_t i = 0; i < molecule->atom_count; i++) {
+        molecule->angle_first[i] = molecule->angle_count;
+        int32_t degree = degree_of(molecule, i);
+        tml_status status = is_bare(making, i) || degree < 2 || degree > TML_ARMS_MAX ? TML_OK : add_angles(making, i);
+        if (status != TML_OK) return status;
+    }
+    molecule->angle_first[molecule->atom_count] = molecule->angle_count;
+    return TML_OK;
+}
+
+static tml_status add_angles(tml_making *making, int32_t centre) {
+    tml_molecule *molecule = making->molecule;
+    const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[centre]];
+    int count = degree_of(molecule, centre);
+    double angle[TML_ARMS_MAX][TML_ARMS_MAX] = {{0}};
+    for (int i = 0; i < count; i++)
+        for (int j = i + 1; j < count; j++) angle[i][j] = angle[j][i] = tml_lookup_angle(making, arm[i], centre, arm[j]);
+    bool open_end = count == 2 && (molecule->atoms[centre].element == 6 || molecule->atoms[centre].element == 7);
+    tml_arms_complete(angle, count, making->planar[centre] || open_end);
+    size_t need = (size_t)molecule->angle_count + (size_t)(count * (count - 1) / 2);
+    if (!tml_grow(&molecule->angles, &making->angle_room, need, sizeof *molecule->angles)) return tml_no_memory(making->error);
+    for (int i = 0; i < count; i++)
+        for (int j = i + 1; j < count; j++) {
+            bool with_h = molecule->atoms[arm[i]].element == 1 || molecule->atoms[arm[j]].element == 1;
+            molecule->angles[molecule->angle_count++] =
+                (tml_angle){arm[i], centre, arm[j], angle[i][j], with_h ? ANGLE_H_TOLERANCE : ANGLE_TOLERANCE};
+        }
+    return TML_OK;
+}
+
+/* ---- centres ---- */
+
+static bool from_row(const tml_making *making, const tml_centre_row *rows, int32_t atom, tml_centre *centre);
+static void rest_of_arms(const tml_molecule *molecule, tml_centre *centre);
+
+static tml_status make_centres(tml_making *making) {
+    tml_molecule *molecule = making->molecule;
+    for (int32_t i = 0; i < molecule->atom_count; i++) {
+        int32_t degree = degree_of(molecule, i), r = molecule->atoms[i].residue;
+        if (is_bare(making, i) || making->planar[i] || degree < 3 || degree > TML_ARMS_MAX) continue;
+        if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1, sizeof *molecule->centres))
+            return tml_no_memory(making->error);
+        const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[i]];
+        tml_centre *centre = &molecule->centres[molecule->centre_count++];
+        if (from_row(making, making->residues[r].form->centres, i, centre) || from_row(making, tml_backbone.centres, i, centre)) continue;
+        *centre = (tml_centre){.centre = i, .arms = {arm[0], arm[1], arm[2], degree == 4 ? arm[3] : -1}, .sign = 1};
+    }
+    return TML_OK;
+}
+
+/* The first row for this atom; false where there is none or an arm of it is missing. A sign of 0 is no handedness. */
+static bool from_row(const tml_making *making, const tml_centre_row *rows, int32_t atom, tml_centre *centre) {
+    const tml_molecule *molecule = making->molecule;
+    int32_t r = molecule->atoms[atom].residue;
+    for (; rows->c != NULL; rows++) {
+        if (strcmp(rows->c, molecule->atoms[atom].name) != 0) continue;
+        const char *names[3] = {rows->a1, rows->a2, rows->a3};
+        *centre = (tml_centre){.centre = atom, .arms = {-1, -1, -1, -1}, .sign = rows->sign == 0 ? 1 : rows->sign,
+                               .fixed = rows->sign != 0};
+        for (int k = 0; k < 3; k++) {
+            centre->arms[k] = tml_lookup_atom(making, r, names[k], strlen(names[k]));
+            if (centre->arms[k] < 0) return false;
+        }
+        rest_of_arms(molecule, centre);
+        return true;
+    }
+    return false;
+}
+
+static void rest_of_arms(const tml_molecule *molecule, tml_centre *centre) {
+    int32_t others = 0;
+    for (int32_t k = molecule->neighbour_first[centre->centre]; k < molecule->neighbour_first[centre->centre + 1]; k++) {
+        int32_t arm = molecule->neighbours[k];
+        if (arm == centre->arms[0] || arm == centre->arms[1] || arm == centre->arms[2]) continue;
+        centre->arms[3] = arm;
+        others++;
+    }
+    if (others != 1) centre->arms[3] = -1;
+}
+
+/* ---- what the input adds ---- */
+
+static tml_status find_made(tml_making *making, const tml_address *address, int32_t *made) {
+    int32_t draft;
+    tml_status status = tml_find_draft_atom(making, address, &draft);
+    if (status == TML_OK) *made = making->atoms[draft].made;
+    return status;
+}
+
+/* A stated handedness takes the place of the table's. */
+static tml_status add_user_centres(tml_making *making) {
+    tml_molecule *molecule = making->molecule;
+    const tml_outline *outline = making->outline;
+    if (outline->chiral_count == 0) return TML_OK;
+    int32_t *centre_of = tml_alloc((size_t)molecule->atom_count, sizeof *centre_of); /* one more than the index; 0 for none */
+    if (centre_of == NULL) return tml_no_memory(making->error);
+    for (int32_t i = 0; i < molecule->centre_count; i++) centre_of[molecule->centres[i].centre] = i + 1;
+    tml_status status = TML_OK;
+    for (size_t i = 0; i < outline->chiral_count && status == TML_OK; i++) {
+        const tml_outline_chiral *given = &outline->chirals[i];
+        tml_centre centre = {.arms = {-1, -1, -1, -1}, .sign = given->sign < 0 ? -1 : 1, .fixed = true};
+        status = find_made(making, &given->centre, &centre.centre);
+        for (int k = 0; k < 3 && status == TML_OK; k++) status = find_made(making, &given->arm[k], &centre.arms[k]);
+        if (status != TML_OK) break;
+        for (int k = 0; k < 3 && status == TML_OK; k++)
+            if (centre.arms[k] == centre.centre || centre.arms[k] == centre.arms[(k + 1) % 3])
+                status = tml_making_fail(making, given->place, "a centre and its three arms must be four different atoms");
+        if (status != TML_OK) break;
+        rest_of_arms(molecule, &centre);
+        if (centre_of[centre.centre] == 0) {
+            if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1, sizeof *molecule->centres)) {
+                status = tml_no_memory(making->error);
+                break;
+            }
+            centre_of[centre.centre] = ++molecule->centre_count;
+        }
+        molecule->centres[centre_of[centre.centre] - 1] = centre;
+    }
+    free(centre_of);
+    return status;
+}
+
+static tml_status add_user_planes(tml_making *making) {
+    tml_molecule *molecule = making->molecule;
+    const tml_outline *outline = making->outline;
+    for (size_t i = 0; i < outline->plane_count; i++) {
+        const tml_outline_plane *given = &outline->planes[i];
+        tml_plane plane = {.first = molecule->plane_atom_count, .within = given->within};
+        if (given->atom_count > (size_t)(INT32_MAX / 4 - molecule->plane_atom_count))
+            return tml_fail(making->error, TML_TOO_LARGE, "too many atoms in planes");
+        size_t need = (size_t)molecule->plane_atom_count + given->atom_count;
+        if (!tml_grow(&molecule->plane_atoms, &making->plane_atom_room, need, sizeof *molecule->plane_atoms) ||
+            !tml_grow(&molecule->planes, &making->plane_room, (size_t)molecule->plane_count + 1, sizeof *molecule->planes))
+            return tml_no_memory(making->error);
+        for (size_t k = 0; k < given->atom_count; k++) {
+            tml_status status = find_made(making, &given->atoms[k], &molecule->plane_atoms[plane.first + plane.count]);
+            if (status != TML_OK) return status;
+            plane.count++;
+        }
+        molecule->plane_atom_count += plane.count;
+        molecule->planes[molecule->plane_count++] = plane;
+    }
+    double *xy = realloc(molecule->plane_xy, (2 * making->plane_atom_room + 1) * sizeof *xy);
+    if (xy == NULL) return tml_no_memory(making->error);
+    for (int32_t i = 0; i < molecule->plane_count; i++)
+        if (!molecule->planes[i].has_xy) memset(&xy[2 * molecule->planes[i].first], 0, 2 * (size_t)molecule->planes[i].count * sizeof *xy);
+    molecule->plane_xy = xy;
+    return TML_OK;
+}
