@@ -22,7 +22,7 @@ def random_set(generator):
     """Bead count and limits (a, b, lower, upper) that are consistent or not, as chance has it; all pairs may lack a limit."""
     beads = generator.randint(2, 25)
     points = [[generator.uniform(0, 20) for _ in range(3)] for _ in range(beads)]
-    noise = generator.choice([0.0, 0.0, 0.05, 0.3])
+    noise = generator.choice([0.0, 0.03, 0.1, 0.4])
     limits = []
     for a in range(beads):
         for b in range(a + 1, beads):
