@@ -27,14 +27,17 @@ static int known_angles(double angle[TML_ARMS_MAX][TML_ARMS_MAX], int count) {
 }
 
 /* Fill in the angles (radians; NAN where not known) between the `count` arms of an atom, so that all can be realised together.
- * A planar atom's angles come to 360°: what is missing is shared equally, and so is a published set's rounding. In a tetrahedral
- * one, two arms beside a known angle enclose 109.47° and lie in the plane that halves it, and a fourth arm makes equal angles
- * with the other three. */
+ * A planar atom's angles come to 360°: what is missing is shared equally, and so is a published set's rounding. In a
+ * tetrahedral one, two arms beside a known angle enclose 109.47° and lie in the plane that halves it, and a fourth arm makes
+ * equal angles with the other three. */
 void tml_arms_complete(double angle[TML_ARMS_MAX][TML_ARMS_MAX], int count, bool planar) {
     int known = known_angles(angle, count);
-    if (count == 3 && planar) complete_planar(angle);
-    else if (count == 4 && known == 1) complete_from_one(angle);
-    else if (count == 4 && known == 3) complete_from_three(angle);
+    if (count == 3 && planar)
+        complete_planar(angle);
+    else if (count == 4 && known == 1)
+        complete_from_one(angle);
+    else if (count == 4 && known == 3)
+        complete_from_three(angle);
     double usual = planar ? TRIGONAL : TETRAHEDRAL;
     for (int i = 0; i < count; i++)
         for (int j = i + 1; j < count; j++)
@@ -49,8 +52,10 @@ static void complete_planar(double angle[TML_ARMS_MAX][TML_ARMS_MAX]) {
         if (!isnan(angle[pair[k][0]][pair[k][1]])) sum += angle[pair[k][0]][pair[k][1]];
     for (int k = 0; k < 3; k++) {
         double value = angle[pair[k][0]][pair[k][1]];
-        if (known == 3) value += (2 * TML_PI - sum) / 3;
-        else if (isnan(value)) value = (2 * TML_PI - sum) / (3 - known);
+        if (known == 3)
+            value += (2 * TML_PI - sum) / 3;
+        else if (isnan(value))
+            value = (2 * TML_PI - sum) / (3 - known);
         set(angle, pair[k][0], pair[k][1], value);
     }
 }

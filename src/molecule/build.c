@@ -1,8 +1,8 @@
+#include "molecule/making.h"
+
 #include <ctype.h>
 #include <stdlib.h>
 #include <string.h>
-
-#include "molecule/making.h"
 
 /* Contents: the steps - atoms and residues - bonds and neighbours */
 
@@ -14,14 +14,15 @@ tml_status tml_molecule_build(const tml_outline *outline, const char *const *fil
                               tml_error *error) {
     *out = (tml_molecule){0};
     tml_making making = {.outline = outline, .files = files, .pool = pool, .molecule = out, .error = error};
-    tml_status status = tml_draft_residues(&making);
-    if (status == TML_OK) status = tml_draft_atoms(&making);
+    tml_status status = tml_lay_out_residues(&making);
+    if (status == TML_OK) status = tml_lay_out_atoms(&making);
     if (status == TML_OK) status = tml_apply_ends_and_variants(&making);
-    if (status == TML_OK) status = tml_draft_bonds(&making);
+    if (status == TML_OK) status = tml_lay_out_bonds(&making);
     if (status == TML_OK) status = make_atoms(&making);
     if (status == TML_OK) status = make_bonds(&making);
     if (status == TML_OK) status = list_neighbours(&making);
     if (status == TML_OK) status = tml_make_terms(&making);
+    tml_index_free(making.atom_index);
     free(making.residues);
     free(making.atoms);
     free(making.bonds);
@@ -40,32 +41,36 @@ static void read_number(tml_residue *residue) {
     residue->insertion = end != residue->number && isalpha((unsigned char)*end) && end[1] == '\0' ? *end : ' ';
 }
 
-/* What is present of the draft; the atoms' index is made anew with the molecule's numbers. */
+/* What is present of the layout. */
 static tml_status make_atoms(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     size_t count = 0;
     for (int32_t i = 0; i < making->atom_count; i++) count += making->atoms[i].present;
     molecule->atoms = tml_alloc(count, sizeof *molecule->atoms);
     molecule->residues = tml_alloc((size_t)making->residue_count, sizeof *molecule->residues);
-    tml_index_free(molecule->atom_index);
     molecule->atom_index = tml_index_new();
-    if (molecule->atoms == NULL || molecule->residues == NULL || molecule->atom_index == NULL) return tml_no_memory(making->error);
+    if (molecule->atoms == NULL || molecule->residues == NULL || molecule->atom_index == NULL)
+        return tml_no_memory(making->error);
     for (int32_t r = 0; r < making->residue_count; r++) {
-        const tml_draft_residue *draft = &making->residues[r];
+        const tml_layout_residue *from = &making->residues[r];
         tml_residue *residue = &molecule->residues[molecule->residue_count++];
-        *residue = (tml_residue){.chain = draft->chain, .number = draft->number, .name = draft->name,
-                                 .chain_index = draft->chain_index, .first_atom = molecule->atom_count,
-                                 .position = r - molecule->chains[draft->chain_index].first_residue,
-                                 .amino_acid = draft->form != NULL};
+        *residue = (tml_residue){.chain = from->chain,
+                                 .number = from->number,
+                                 .name = from->name,
+                                 .chain_index = from->chain_index,
+                                 .first_atom = molecule->atom_count,
+                                 .position = r - molecule->chains[from->chain_index].first_residue,
+                                 .amino_acid = from->form != NULL};
         read_number(residue);
-        for (int32_t i = draft->first_atom; i < draft->first_atom + draft->atom_count; i++) {
-            tml_draft_atom *atom = &making->atoms[i];
+        for (int32_t i = from->first_atom; i < from->first_atom + from->atom_count; i++) {
+            tml_layout_atom *atom = &making->atoms[i];
             if (!atom->present) continue;
             atom->made = molecule->atom_count++;
             const char *name = tml_strings_add(making->pool, atom->name);
             if (name == NULL || !tml_index_add(molecule->atom_index, r, name, atom->made)) return tml_no_memory(making->error);
             int8_t charge = atom->bare ? 0 : tml_lookup_charge(making, r, atom->name);
-            molecule->atoms[atom->made] = (tml_atom){.name = name, .residue = r, .element = (uint8_t)atom->element, .charge = charge};
+            molecule->atoms[atom->made] =
+                (tml_atom){.name = name, .residue = r, .element = (uint8_t)atom->element, .charge = charge};
         }
         residue->atom_count = molecule->atom_count - residue->first_atom;
     }
@@ -82,7 +87,7 @@ static tml_status make_bonds(tml_making *making) {
     making->bond_kinds = tml_alloc(making->bond_count, sizeof *making->bond_kinds);
     if (molecule->bonds == NULL || making->bond_kinds == NULL) return tml_no_memory(making->error);
     for (size_t i = 0; i < making->bond_count; i++) {
-        const tml_draft_bond *bond = &making->bonds[i];
+        const tml_layout_bond *bond = &making->bonds[i];
         int32_t a = making->atoms[bond->a].made, b = making->atoms[bond->b].made;
         if (a < 0 || b < 0) continue; /* a link took its hydrogen away */
         if (bond->kind == TML_BOND_LINK && molecule->atoms[a].charge < 0) molecule->atoms[a].charge = 0;
@@ -103,8 +108,8 @@ static tml_status list_neighbours(tml_making *making) {
     molecule->neighbour_bonds = tml_alloc(2 * bonds, sizeof *molecule->neighbour_bonds);
     int32_t *filled = tml_alloc(atoms, sizeof *filled), *seen = tml_alloc(atoms, sizeof *seen);
     tml_status status = TML_OK;
-    if (molecule->neighbour_first == NULL || molecule->neighbours == NULL || molecule->neighbour_bonds == NULL || filled == NULL ||
-        seen == NULL) {
+    if (molecule->neighbour_first == NULL || molecule->neighbours == NULL || molecule->neighbour_bonds == NULL ||
+        filled == NULL || seen == NULL) {
         status = tml_no_memory(making->error);
         goto done;
     }
@@ -124,7 +129,8 @@ static tml_status list_neighbours(tml_making *making) {
     }
     for (size_t i = 0; i < atoms && status == TML_OK; i++)
         for (int32_t k = first[i]; k < first[i + 1] && status == TML_OK; k++) {
-            if (seen[molecule->neighbours[k]] == (int32_t)i + 1) status = refuse_double_link(making, (int32_t)i, molecule->neighbours[k]);
+            if (seen[molecule->neighbours[k]] == (int32_t)i + 1)
+                status = refuse_double_link(making, (int32_t)i, molecule->neighbours[k]);
             seen[molecule->neighbours[k]] = (int32_t)i + 1;
         }
 done:
@@ -139,7 +145,8 @@ static tml_status refuse_double_link(tml_making *making, int32_t a, int32_t b) {
     for (size_t i = 0; i < making->outline->link_count; i++) {
         const tml_outline_link *link = &making->outline->links[i];
         int32_t ends[2];
-        if (tml_find_draft_atom(making, &link->a, &ends[0]) != TML_OK || tml_find_draft_atom(making, &link->b, &ends[1]) != TML_OK)
+        if (tml_find_layout_atom(making, &link->a, &ends[0]) != TML_OK ||
+            tml_find_layout_atom(making, &link->b, &ends[1]) != TML_OK)
             continue;
         if ((ends[0] == a && ends[1] == b) || (ends[0] == b && ends[1] == a)) place = link->place;
     }

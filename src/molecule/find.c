@@ -34,7 +34,8 @@ int32_t tml_molecule_find_residue(const tml_molecule *molecule, const char *chai
     return index < 0 ? -1 : tml_index_find(molecule->residue_index, index, number);
 }
 
-int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why, size_t size) {
+int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why,
+                                    size_t size) {
     int32_t found = tml_molecule_find_residue(molecule, chain, number);
     if (size == 0) return found;
     why[0] = '\0';
@@ -71,13 +72,16 @@ void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const c
     const char *colon = *in->chain != '\0' || *in->number != '\0' ? ":" : "";
     snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom%s%.32s; it has ", in->chain, colon, in->number, colon, name,
              *in->name == '\0' ? "" : " in ", in->name);
-    if (*in->name == '\0') snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom; nearest: ", in->chain, colon, in->number, colon, name);
+    if (*in->name == '\0')
+        snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom; nearest: ", in->chain, colon, in->number, colon, name);
     tml_nearest_append(&nearest, text, size);
 }
 
 void tml_molecule_address(const tml_molecule *molecule, int32_t atom, char *text, size_t size) {
     if (size == 0) return;
     const tml_residue *in = &molecule->residues[molecule->atoms[atom].residue];
-    if (*in->chain == '\0' && *in->number == '\0') snprintf(text, size, "%s", molecule->atoms[atom].name);
-    else snprintf(text, size, "%s:%s:%s", in->chain, in->number, molecule->atoms[atom].name);
+    if (*in->chain == '\0' && *in->number == '\0')
+        snprintf(text, size, "%s", molecule->atoms[atom].name);
+    else
+        snprintf(text, size, "%s:%s:%s", in->chain, in->number, molecule->atoms[atom].name);
 }

@@ -5,7 +5,10 @@
 
 #include "base/memory.h"
 
-typedef struct entry { const char *name; int32_t owner, value; } entry;
+typedef struct entry {
+    const char *name;
+    int32_t owner, value;
+} entry;
 
 struct tml_index {
     entry *slots; /* open hashing; name NULL where free */
@@ -41,11 +44,13 @@ static uint64_t hash(int32_t owner, const char *name) {
 
 static size_t slot_for(const entry *slots, size_t slot_count, int32_t owner, const char *name) {
     size_t at = hash(owner, name) & (slot_count - 1);
-    while (slots[at].name != NULL && (slots[at].owner != owner || strcmp(slots[at].name, name) != 0)) at = (at + 1) & (slot_count - 1);
+    while (slots[at].name != NULL && (slots[at].owner != owner || strcmp(slots[at].name, name) != 0))
+        at = (at + 1) & (slot_count - 1);
     return at;
 }
 
 int32_t tml_index_find(const tml_index *index, int32_t owner, const char *name) {
+    if (index == NULL) return -1;
     const entry *found = &index->slots[slot_for(index->slots, index->slot_count, owner, name)];
     return found->name == NULL ? -1 : found->value;
 }

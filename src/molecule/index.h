@@ -13,7 +13,7 @@ typedef struct tml_index tml_index;
 tml_index *tml_index_new(void); /* NULL without memory */
 void tml_index_free(tml_index *index);
 
-/* Value of (owner, name); -1 if there is none. */
+/* Value of (owner, name); -1 if there is none, or no index. */
 int32_t tml_index_find(const tml_index *index, int32_t owner, const char *name);
 
 /* Add (owner, name), which must not be there yet; false without memory. */

@@ -1,11 +1,9 @@
 #include "molecule/making.h"
 
 #include <math.h>
-#include <stdio.h>
 #include <string.h>
 
 #include "molecule/elements.h"
-#include "molecule/nearest.h"
 
 /* Contents: bonds of templates - peptide bonds - `link` statements - room for a bond */
 
@@ -14,7 +12,7 @@ static tml_status add_inner_bonds(tml_making *making, int32_t r);
 static tml_status add_peptide_bond(tml_making *making, int32_t r);
 static tml_status add_link(tml_making *making, const tml_outline_link *link);
 
-tml_status tml_draft_bonds(tml_making *making) {
+tml_status tml_lay_out_bonds(tml_making *making) {
     making->degree = tml_alloc((size_t)making->atom_count, sizeof *making->degree);
     if (making->degree == NULL) return tml_no_memory(making->error);
     tml_status status = TML_OK;
@@ -22,14 +20,15 @@ tml_status tml_draft_bonds(tml_making *making) {
         if (making->residues[r].form != NULL) status = add_inner_bonds(making, r);
     for (int32_t r = 0; r < making->residue_count && status == TML_OK; r++)
         if (making->residues[r].previous >= 0) status = add_peptide_bond(making, r);
-    for (size_t i = 0; i < making->outline->link_count && status == TML_OK; i++) status = add_link(making, &making->outline->links[i]);
+    for (size_t i = 0; i < making->outline->link_count && status == TML_OK; i++)
+        status = add_link(making, &making->outline->links[i]);
     return status;
 }
 
 static tml_status add_bond(tml_making *making, int32_t a, int32_t b, double length, tml_bond_kind kind) {
     if (!tml_grow(&making->bonds, &making->bond_capacity, making->bond_count + 1, sizeof *making->bonds))
         return tml_no_memory(making->error);
-    making->bonds[making->bond_count++] = (tml_draft_bond){a, b, length, kind};
+    making->bonds[making->bond_count++] = (tml_layout_bond){a, b, length, kind};
     making->degree[a]++;
     making->degree[b]++;
     return TML_OK;
@@ -37,8 +36,8 @@ static tml_status add_bond(tml_making *making, int32_t a, int32_t b, double leng
 
 /* ---- bonds of templates ---- */
 
-static int32_t draft_atom(const tml_making *making, int32_t r, const char *name) {
-    return tml_index_find(making->molecule->atom_index, r, name);
+static int32_t atom_named(const tml_making *making, int32_t r, const char *name) {
+    return tml_index_find(making->atom_index, r, name);
 }
 
 /* Is a row of the bonds a ring closure, named for the first time? */
@@ -59,21 +58,22 @@ static tml_status add_inner(tml_making *making, int32_t a, int32_t b) {
 }
 
 static tml_status add_inner_bonds(tml_making *making, int32_t r) {
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     tml_status status = TML_OK;
     for (int32_t i = 0; i < residue->atom_count && status == TML_OK; i++) {
         const char *parent = residue->form->atoms[i].parent;
-        if (*parent != '\0') status = add_inner(making, draft_atom(making, r, parent), residue->first_atom + i);
+        if (*parent != '\0') status = add_inner(making, atom_named(making, r, parent), residue->first_atom + i);
     }
     for (const tml_bond_row *row = residue->form->bonds; row->a != NULL && status == TML_OK; row++)
-        if (closes_ring(residue->form, row)) status = add_inner(making, draft_atom(making, r, row->a), draft_atom(making, r, row->b));
+        if (closes_ring(residue->form, row))
+            status = add_inner(making, atom_named(making, r, row->a), atom_named(making, r, row->b));
     return status;
 }
 
 /* ---- peptide bonds ---- */
 
 static tml_status add_peptide_bond(tml_making *making, int32_t r) {
-    int32_t c = draft_atom(making, making->residues[r].previous, "C"), n = draft_atom(making, r, "N");
+    int32_t c = atom_named(making, making->residues[r].previous, "C"), n = atom_named(making, r, "N");
     if (!making->atoms[c].present || !making->atoms[n].present)
         return tml_making_fail(making, making->residues[r].place, "%s:%s: the variant takes away an atom of the peptide bond",
                                making->residues[r].chain, making->residues[r].number);
@@ -83,14 +83,17 @@ static tml_status add_peptide_bond(tml_making *making, int32_t r) {
 /* ---- `link` statements ---- */
 
 static tml_status make_room(tml_making *making, int32_t atom, tml_place place);
+static bool is_amide(const tml_making *making, int32_t carbon, int32_t nitrogen);
+
+static const double AMIDE = 1.329; /* Å, as the peptide bond's */
 
 static tml_status add_link(tml_making *making, const tml_outline_link *link) {
     int32_t a, b;
-    tml_status status = tml_find_draft_atom(making, &link->a, &a);
-    if (status == TML_OK) status = tml_find_draft_atom(making, &link->b, &b);
+    tml_status status = tml_find_layout_atom(making, &link->a, &a);
+    if (status == TML_OK) status = tml_find_layout_atom(making, &link->b, &b);
     if (status != TML_OK) return status;
     if (a == b) return tml_making_fail(making, link->place, "a link from an atom to itself");
-    const tml_draft_atom *ends[2] = {&making->atoms[a], &making->atoms[b]};
+    const tml_layout_atom *ends[2] = {&making->atoms[a], &making->atoms[b]};
     double radius[2];
     for (int k = 0; k < 2; k++) {
         radius[k] = tml_element_covalent_radius(ends[k]->element);
@@ -104,41 +107,8 @@ static tml_status add_link(tml_making *making, const tml_outline_link *link) {
     if (status == TML_OK) status = make_room(making, b, link->place);
     if (status != TML_OK) return status;
     double length = tml_lookup_bond(making, a, b, TML_BOND_LINK);
-    return add_bond(making, a, b, isnan(length) ? radius[0] + radius[1] : length, TML_BOND_LINK);
-}
-
-tml_status tml_find_draft_atom(tml_making *making, const tml_address *address, int32_t *found) {
-    const tml_molecule *molecule = making->molecule;
-    int32_t chain = tml_index_find(molecule->chain_index, -1, address->chain);
-    int32_t r = chain < 0 ? -1 : tml_index_find(molecule->residue_index, chain, address->number);
-    const char *colon = *address->chain != '\0' || *address->number != '\0' ? ":" : "";
-    if (r < 0) {
-        char text[256] = "";
-        tml_nearest nearest;
-        tml_nearest_start(&nearest, chain < 0 ? address->chain : address->number);
-        if (chain < 0)
-            for (int32_t c = 0; c < molecule->chain_count; c++) tml_nearest_offer(&nearest, molecule->chains[c].code);
-        else
-            for (int32_t k = 0; k < molecule->chains[chain].residue_count; k++)
-                tml_nearest_offer(&nearest, making->residues[molecule->chains[chain].first_residue + k].number);
-        tml_nearest_append(&nearest, text, sizeof text);
-        return tml_making_fail(making, address->place, "%s%s%s%s%s: no such %s; nearest: %s", address->chain, colon, address->number,
-                               colon, address->atom, chain < 0 ? "chain" : "residue", *text == '\0' ? "none" : text);
-    }
-    const tml_draft_residue *residue = &making->residues[r];
-    if (address->residue != NULL && *address->residue != '\0' && strcmp(address->residue, residue->name) != 0)
-        return tml_making_fail(making, address->place, "%s:%s is %s, not %s", address->chain, address->number, residue->name,
-                               address->residue);
-    *found = tml_index_find(molecule->atom_index, r, address->atom);
-    if (*found >= 0 && making->atoms[*found].present) return TML_OK;
-    char text[256] = "";
-    tml_nearest nearest;
-    tml_nearest_start(&nearest, address->atom);
-    for (int32_t i = residue->first_atom; i < residue->first_atom + residue->atom_count; i++)
-        if (making->atoms[i].present) tml_nearest_offer(&nearest, making->atoms[i].name);
-    tml_nearest_append(&nearest, text, sizeof text);
-    return tml_making_fail(making, address->place, "%s%s%s%s%s: no such atom%s%s; it has %s", address->chain, colon, address->number,
-                           colon, address->atom, *residue->name == '\0' ? "" : " in ", residue->name, text);
+    if (isnan(length)) length = is_amide(making, a, b) || is_amide(making, b, a) ? AMIDE : radius[0] + radius[1];
+    return add_bond(making, a, b, length, TML_BOND_LINK);
 }
 
 /* ---- room for a bond ---- */
@@ -147,13 +117,23 @@ static int usual_neighbours(const tml_template *form, const char *name);
 
 /* How many bonds an atom of a template takes without charge; a carbon as many as it has in its residue. */
 static int most_bonds(const tml_making *making, int32_t atom) {
-    const tml_draft_atom *draft = &making->atoms[atom];
-    switch (tml_element_symbol(draft->element)[0]) {
-        case 'H': return 1;
-        case 'N': return 3;
-        case 'C': return usual_neighbours(making->residues[draft->residue].form, draft->name);
-        default: return 2; /* O, S */
+    const tml_layout_atom *at = &making->atoms[atom];
+    switch (tml_element_symbol(at->element)[0]) {
+    case 'H':
+        return 1;
+    case 'N':
+        return 3;
+    case 'C':
+        return usual_neighbours(making->residues[at->residue].form, at->name);
+    default:
+        return 2; /* O, S */
     }
+}
+
+/* A nitrogen linked to a trigonal carbon, as in an isopeptide bond. */
+static bool is_amide(const tml_making *making, int32_t carbon, int32_t nitrogen) {
+    const tml_layout_atom *c = &making->atoms[carbon], *n = &making->atoms[nitrogen];
+    return !c->bare && !n->bare && c->element == 6 && n->element == 7 && most_bonds(making, carbon) == 3;
 }
 
 static int usual_neighbours(const tml_template *form, const char *name) {
@@ -167,17 +147,17 @@ static int usual_neighbours(const tml_template *form, const char *name) {
 
 /* A bond takes the place of hydrogens where there are too many; the last-named goes first. */
 static tml_status make_room(tml_making *making, int32_t atom, tml_place place) {
-    const tml_draft_atom *draft = &making->atoms[atom];
-    if (draft->bare) return TML_OK;
-    const tml_draft_residue *residue = &making->residues[draft->residue];
+    const tml_layout_atom *at = &making->atoms[atom];
+    if (at->bare) return TML_OK;
+    const tml_layout_residue *residue = &making->residues[at->residue];
     int most = most_bonds(making, atom);
     for (int32_t i = residue->atom_count - 1; i >= 0 && making->degree[atom] + 1 > most; i--) {
-        tml_draft_atom *hydrogen = &making->atoms[residue->first_atom + i];
-        if (hydrogen->element != 1 || !hydrogen->present || strcmp(residue->form->atoms[i].parent, draft->name) != 0) continue;
+        tml_layout_atom *hydrogen = &making->atoms[residue->first_atom + i];
+        if (hydrogen->element != 1 || !hydrogen->present || strcmp(residue->form->atoms[i].parent, at->name) != 0) continue;
         hydrogen->present = false;
         making->degree[atom]--;
     }
     if (making->degree[atom] + 1 <= most) return TML_OK;
-    return tml_making_fail(making, place, "%s:%s:%s has all its %d bonds already; a variant can take an atom away first", residue->chain,
-                           residue->number, draft->name, most);
+    return tml_making_fail(making, place, "%s:%s:%s has all its %d bonds already; a variant can take an atom away first",
+                           residue->chain, residue->number, at->name, most);
 }

@@ -1,9 +1,10 @@
-#include "base/vector.h"
 #include "molecule/making.h"
 
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
+
+#include "base/vector.h"
 
 /* Contents: conditions - bonds - angles - charges and atoms */
 
@@ -12,9 +13,10 @@ enum { NAME_ROOM = 48 };
 /* ---- conditions ---- */
 
 static bool is_present(const tml_making *making, int32_t r, const char *name, size_t length) {
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     for (int32_t i = residue->first_atom; i < residue->first_atom + residue->atom_count; i++)
-        if (strncmp(making->atoms[i].name, name, length) == 0 && making->atoms[i].name[length] == '\0') return making->atoms[i].present;
+        if (strncmp(making->atoms[i].name, name, length) == 0 && making->atoms[i].name[length] == '\0')
+            return making->atoms[i].present;
     return false;
 }
 
@@ -43,13 +45,14 @@ static double bond_of(const tml_making *making, int32_t r, const char *a, const 
     double length = bond_in(making, r, form->bonds, a, b);
     if (isnan(length)) length = bond_in(making, r, tml_backbone.bonds, a, b);
     for (const tml_atom_row *row = form->atoms; isnan(length) && row->name != NULL; row++)
-        if ((strcmp(row->name, a) == 0 && strcmp(row->parent, b) == 0) || (strcmp(row->name, b) == 0 && strcmp(row->parent, a) == 0))
+        if ((strcmp(row->name, a) == 0 && strcmp(row->parent, b) == 0) ||
+            (strcmp(row->name, b) == 0 && strcmp(row->parent, a) == 0))
             length = row->length;
     return length;
 }
 
 double tml_lookup_bond(const tml_making *making, int32_t a, int32_t b, tml_bond_kind kind) {
-    const tml_draft_atom *first = &making->atoms[a], *second = &making->atoms[b];
+    const tml_layout_atom *first = &making->atoms[a], *second = &making->atoms[b];
     char name[NAME_ROOM];
     if (first->bare || second->bare) return NAN;
     if (kind == TML_BOND_INNER) return bond_of(making, first->residue, first->name, second->name);
@@ -59,7 +62,8 @@ double tml_lookup_bond(const tml_making *making, int32_t a, int32_t b, tml_bond_
 
 /* ---- angles ---- */
 
-static double angle_in(const tml_making *making, int32_t r, const tml_angle_row *rows, const char *a, const char *b, const char *c) {
+static double angle_in(const tml_making *making, int32_t r, const tml_angle_row *rows, const char *a, const char *b,
+                       const char *c) {
     for (; rows->a != NULL; rows++)
         if (strcmp(rows->b, b) == 0 &&
             ((strcmp(rows->a, a) == 0 && strcmp(rows->c, c) == 0) || (strcmp(rows->a, c) == 0 && strcmp(rows->c, a) == 0)) &&
@@ -137,7 +141,7 @@ int32_t tml_lookup_atom(const tml_making *making, int32_t r, const char *name, s
         length--;
     }
     if (r < 0) return -1;
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     for (int32_t i = residue->first_atom; i < residue->first_atom + residue->atom_count; i++)
         if (strncmp(making->atoms[i].name, name, length) == 0 && making->atoms[i].name[length] == '\0')
             return making->atoms[i].present ? making->atoms[i].made : -1;

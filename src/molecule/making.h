@@ -1,6 +1,6 @@
 /* making.h: the workbench on which a molecule is made from an outline. For src/molecule only.
  *
- * draft.c lays out residues and atoms, variant.c and link.c change them, build.c turns what is present into a tml_molecule,
+ * layout.c lays out residues and atoms, variant.c and link.c change them, build.c turns what is present into a tml_molecule,
  * terms.c and plane.c add what the tables say of its geometry.
  */
 #ifndef TML_MAKING_H
@@ -11,7 +11,7 @@
 
 typedef enum tml_bond_kind { TML_BOND_INNER, TML_BOND_PEPTIDE, TML_BOND_LINK } tml_bond_kind;
 
-typedef struct tml_draft_atom {
+typedef struct tml_layout_atom {
     const char *name;
     int element;
     int32_t residue;
@@ -19,11 +19,11 @@ typedef struct tml_draft_atom {
     bool present;
     bool bare;    /* of no template: nothing is known of its chemistry */
     tml_place place;
-} tml_draft_atom;
+} tml_layout_atom;
 
-typedef struct tml_draft_bond { int32_t a, b; double length; tml_bond_kind kind; } tml_draft_bond;
+typedef struct tml_layout_bond { int32_t a, b; double length; tml_bond_kind kind; } tml_layout_bond;
 
-typedef struct tml_draft_residue {
+typedef struct tml_layout_residue {
     const char *chain, *number, *name, *variant;
     const tml_template *form;  /* NULL for bare atoms */
     tml_linking linking;
@@ -32,7 +32,7 @@ typedef struct tml_draft_residue {
     int32_t chain_index;
     int32_t first_atom, atom_count;
     tml_place place;
-} tml_draft_residue;
+} tml_layout_residue;
 
 typedef struct tml_making {
     const tml_outline *outline;
@@ -40,33 +40,35 @@ typedef struct tml_making {
     tml_strings *pool;
     tml_molecule *molecule;
     tml_error *error;
-    tml_draft_residue *residues; int32_t residue_count;
-    tml_draft_atom *atoms;       int32_t atom_count;
-    tml_draft_bond *bonds;       size_t bond_count, bond_capacity;
-    int32_t *degree;             /* bonds of each draft atom, to atoms that are present */
+    tml_layout_residue *residues; int32_t residue_count;
+    tml_layout_atom *atoms;       int32_t atom_count;
+    tml_index *atom_index;        /* of layout atoms, present or not */
+    tml_layout_bond *bonds;       size_t bond_count, bond_capacity;
+    int32_t *degree;             /* bonds of each layout atom, to atoms that are present */
     tml_bond_kind *bond_kinds;   /* of the molecule's bonds */
-    int32_t *draft_of;           /* draft atom of each of the molecule's atoms */
     bool *planar;                /* of each of the molecule's atoms: its neighbours lie in one plane with it */
-    size_t bond_room, angle_room, torsion_room, centre_room, plane_room, plane_atom_room, peptide_room; /* capacities */
+    int32_t table_centres;       /* centres that the tables give, in the order of atoms; the input's own stand after them */
+    size_t angle_room, torsion_room, centre_room, plane_room, plane_atom_room, plane_xy_room,
+        peptide_room; /* capacities */
 } tml_making;
 
 /* An error of the input at a place; returns TML_BAD_INPUT. */
 tml_status tml_making_fail(tml_making *making, tml_place place, const char *format, ...) __attribute__((format(printf, 3, 4)));
 
-/* draft.c */
-tml_status tml_draft_residues(tml_making *making);
-tml_status tml_draft_atoms(tml_making *making);
-tml_status tml_find_draft_atom(tml_making *making, const tml_address *address, int32_t *found);
+/* layout.c */
+tml_status tml_lay_out_residues(tml_making *making);
+tml_status tml_lay_out_atoms(tml_making *making);
+tml_status tml_find_layout_atom(tml_making *making, const tml_address *address, int32_t *found);
 
 /* variant.c: chain ends and variants: which of the templates' atoms are present */
 tml_status tml_apply_ends_and_variants(tml_making *making);
 
 /* link.c: peptide bonds and `link` statements; inner bonds of templates */
-tml_status tml_draft_bonds(tml_making *making);
+tml_status tml_lay_out_bonds(tml_making *making);
 
 /* lookup.c: rows of the tables, for atoms of the molecule */
 bool tml_condition_holds(const tml_making *making, int32_t residue, const char *condition);
-double tml_lookup_bond(const tml_making *making, int32_t a, int32_t b, tml_bond_kind kind);  /* draft atoms; NAN for none */
+double tml_lookup_bond(const tml_making *making, int32_t a, int32_t b, tml_bond_kind kind);  /* layout atoms; NAN for none */
 double tml_lookup_angle(const tml_making *making, int32_t a, int32_t b, int32_t c);          /* radians; NAN for none */
 int8_t tml_lookup_charge(const tml_making *making, int32_t residue, const char *name);
 int32_t tml_lookup_atom(const tml_making *making, int32_t residue, const char *name, size_t length); /* made atom or -1 */
@@ -77,6 +79,8 @@ tml_status tml_make_terms(tml_making *making);
 
 /* torsions.c */
 tml_status tml_make_torsions(tml_making *making);
+
+enum { TML_PLANE_MAX = 24 }; /* atoms of a plane in the tables */
 
 /* plane.c: ideal coordinates of a plane from its bonds, angles and torsions; has_xy follows */
 void tml_plane_fill(tml_molecule *molecule, int32_t plane);

@@ -41,7 +41,7 @@ typedef enum tml_torsion_kind {
     TML_TORSION_STAGGERED  /* three minima at angle + k·120°: a preference, not a bound */
 } tml_torsion_kind;
 
-/* One per bond b-c and pair of outer atoms (a, d) that are three bonds apart, except inside 3-rings. */
+/* One per bond b-c and pair of outer atoms (a, d), but where a and d are the same or bonded (rings of three and four). */
 typedef struct tml_torsion {
     int32_t a, b, c, d;
     tml_torsion_kind kind;
@@ -110,7 +110,8 @@ int32_t tml_molecule_find_residue(const tml_molecule *molecule, const char *chai
 
 /* Residue by its names, or -1 with the reason in words that an error message can end with: "A:40: chain A has no residue 40;
  * it has 1 to 39". At most `size` bytes, always ended. */
-int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why, size_t size);
+int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *chain, const char *number, char *why,
+                                    size_t size);
 
 /* Why a residue has no atom of that name, and the nearest that it has: "A:5:HB1: no such atom in SER; it has HB2, HB3". */
 void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const char *name, char *text, size_t size);

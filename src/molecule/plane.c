@@ -1,12 +1,13 @@
+#include "molecule/making.h"
+
 #include <math.h>
 #include <string.h>
 
 #include "base/vector.h"
-#include "molecule/making.h"
 
 /* Contents: a plane's coordinates - placing atom by atom - relaxing by least squares */
 
-enum { MOST = 24, MOST_PAIRS = MOST * 4 };
+enum { MOST = TML_PLANE_MAX, MOST_PAIRS = MOST * 4 };
 
 /* One plane by its local indices. */
 typedef struct sketch {
@@ -18,7 +19,10 @@ typedef struct sketch {
 } sketch;
 
 /* Distances that the plane should have. */
-typedef struct wish { int i, j; double distance, weight; } wish;
+typedef struct wish {
+    int i, j;
+    double distance, weight;
+} wish;
 
 static bool place_atoms(sketch *plane);
 static void relax(sketch *plane);
@@ -67,7 +71,8 @@ static double angle_at(const sketch *plane, int i, int j, int k) {
 
 static bool place_around(sketch *plane, int centre, int from);
 
-/* From an atom outwards: when an atom's turn comes, its own neighbours are placed, the one that it was reached from already is. */
+/* From an atom outwards: when an atom's turn comes, its own neighbours are placed, the one that it was reached from already is.
+ */
 static bool place_atoms(sketch *plane) {
     int queue[MOST], from[MOST], head = 0, tail = 0;
     queue[0] = 0;
@@ -109,7 +114,8 @@ static bool place_around(sketch *plane, int centre, int from) {
     for (int j = 0; j < plane->count; j++)
         if (j != from && plane->placed[j] && !isnan(bond_length(plane, centre, j))) taken = side_of(plane, from, centre, j);
     bool can_tell = false;
-    for (int i = 0; i < plane->count; i++) can_tell = can_tell || (i != centre && plane->placed[i] && !isnan(bond_length(plane, from, i)));
+    for (int i = 0; i < plane->count; i++)
+        can_tell = can_tell || (i != centre && plane->placed[i] && !isnan(bond_length(plane, from, i)));
     for (int j = 0; j < plane->count; j++) {
         double length = bond_length(plane, centre, j), angle = angle_at(plane, from, centre, j);
         if (plane->placed[j] || isnan(length)) continue;

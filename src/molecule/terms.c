@@ -1,13 +1,14 @@
-#include "base/vector.h"
 #include "molecule/making.h"
 
-#include <math.h>
 #include <stdlib.h>
 #include <string.h>
+
+#include "base/vector.h"
 
 /* Contents: the steps - planes and peptides - angles - centres - what the input adds */
 
 static tml_status make_planes(tml_making *making);
+static void mark_trigonal(tml_making *making);
 static tml_status make_angles(tml_making *making);
 static tml_status make_centres(tml_making *making);
 static tml_status add_user_centres(tml_making *making);
@@ -18,6 +19,7 @@ tml_status tml_make_terms(tml_making *making) {
     making->planar = tml_alloc((size_t)molecule->atom_count, sizeof *making->planar);
     if (making->planar == NULL) return tml_no_memory(making->error);
     tml_status status = make_planes(making);
+    if (status == TML_OK) mark_trigonal(making);
     if (status == TML_OK) status = make_angles(making);
     if (status == TML_OK) status = make_centres(making);
     if (status == TML_OK) status = add_user_centres(making);
@@ -48,7 +50,7 @@ static tml_status add_peptide(tml_making *making, int32_t r);
 
 static tml_status make_planes(tml_making *making) {
     for (int32_t r = 0; r < making->residue_count; r++) {
-        const tml_draft_residue *residue = &making->residues[r];
+        const tml_layout_residue *residue = &making->residues[r];
         if (residue->form == NULL) continue;
         tml_status status = residue->previous < 0 ? TML_OK : add_peptide(making, r);
         int32_t first = making->molecule->plane_count;
@@ -63,30 +65,44 @@ static tml_status make_planes(tml_making *making) {
 
 static tml_status add_peptide(tml_making *making, int32_t r) {
     tml_molecule *molecule = making->molecule;
-    const tml_draft_residue *before = &making->residues[making->residues[r].previous];
+    const tml_layout_residue *before = &making->residues[making->residues[r].previous];
     if (!tml_grow(&molecule->peptides, &making->peptide_room, (size_t)molecule->peptide_count + 1, sizeof *molecule->peptides))
         return tml_no_memory(making->error);
     tml_peptide *peptide = &molecule->peptides[molecule->peptide_count++];
-    *peptide = (tml_peptide){.ca1 = tml_lookup_atom(making, r, "-CA", 3), .c = tml_lookup_atom(making, r, "-C", 2),
-                             .o = tml_lookup_atom(making, r, "-O", 2), .n = tml_lookup_atom(making, r, "N", 1),
-                             .ca2 = tml_lookup_atom(making, r, "CA", 2), .residue1 = making->residues[r].previous, .residue2 = r,
-                             .plane = -1, .cis = before->cis, .declared = before->cis};
+    *peptide = (tml_peptide){.ca1 = tml_lookup_atom(making, r, "-CA", 3),
+                             .c = tml_lookup_atom(making, r, "-C", 2),
+                             .o = tml_lookup_atom(making, r, "-O", 2),
+                             .n = tml_lookup_atom(making, r, "N", 1),
+                             .ca2 = tml_lookup_atom(making, r, "CA", 2),
+                             .residue1 = making->residues[r].previous,
+                             .residue2 = r,
+                             .plane = -1,
+                             .cis = before->cis,
+                             .declared = before->cis};
     for (int32_t k = molecule->neighbour_first[peptide->c]; k < molecule->neighbour_first[peptide->c + 1]; k++)
         if (molecule->neighbours[k] == peptide->n) peptide->bond = molecule->neighbour_bonds[k];
     return TML_OK;
 }
 
-/* Are all atoms of the newest plane in an earlier one of the same residue? */
-static bool is_within_earlier(const tml_molecule *molecule, const tml_plane *plane, int32_t first_of_residue) {
+/* Are all of these atoms in an earlier plane of the same residue? */
+static bool is_within_earlier(const tml_molecule *molecule, const int32_t *atoms, int32_t count, int32_t first_of_residue) {
     for (int32_t p = first_of_residue; p < molecule->plane_count; p++) {
         const tml_plane *other = &molecule->planes[p];
         int32_t held = 0;
-        for (int32_t i = 0; i < plane->count; i++)
-            for (int32_t j = 0; j < other->count; j++)
-                held += molecule->plane_atoms[plane->first + i] == molecule->plane_atoms[other->first + j];
-        if (held == plane->count) return true;
+        for (int32_t i = 0; i < count; i++)
+            for (int32_t j = 0; j < other->count; j++) held += atoms[i] == molecule->plane_atoms[other->first + j];
+        if (held == count) return true;
     }
     return false;
+}
+
+/* Room for one more plane of `count` atoms. */
+static bool reserve_plane(tml_making *making, size_t count) {
+    tml_molecule *molecule = making->molecule;
+    size_t need = (size_t)molecule->plane_atom_count + count;
+    return tml_grow(&molecule->plane_atoms, &making->plane_atom_room, need, sizeof *molecule->plane_atoms) &&
+           tml_grow(&molecule->plane_xy, &making->plane_xy_room, 2 * need, sizeof *molecule->plane_xy) &&
+           tml_grow(&molecule->planes, &making->plane_room, (size_t)molecule->plane_count + 1, sizeof *molecule->planes);
 }
 
 /* A plane of those of the named atoms that are there, if they are at least four. */
@@ -94,42 +110,51 @@ static tml_status add_plane(tml_making *making, int32_t r, const char *names, in
     enum { SMALLEST = 4 };
     static const double WITHIN = 0.02; /* Å */
     tml_molecule *molecule = making->molecule;
-    tml_plane plane = {.first = molecule->plane_atom_count, .within = WITHIN};
-    bool of_peptide = *names == '-';
-    for (const char *at = names; *at != '\0'; at += strspn(at, " ")) {
+    int32_t atoms[TML_PLANE_MAX], count = 0;
+    for (const char *at = names; *at != '\0' && count < TML_PLANE_MAX; at += strspn(at, " ")) {
         size_t length = strcspn(at, " ");
         int32_t atom = tml_lookup_atom(making, r, at, length);
+        if (atom >= 0) atoms[count++] = atom;
         at += length;
-        if (atom < 0) continue;
-        if (!tml_grow(&molecule->plane_atoms, &making->plane_atom_room, (size_t)(plane.first + plane.count) + 1,
-                      sizeof *molecule->plane_atoms))
-            return tml_no_memory(making->error);
-        molecule->plane_atoms[plane.first + plane.count++] = atom;
     }
-    if (plane.count < SMALLEST || (of_peptide && making->residues[r].previous < 0) ||
-        is_within_earlier(molecule, &plane, first_of_residue))
-        return TML_OK;
-    double *xy = realloc(molecule->plane_xy, 2 * making->plane_atom_room * sizeof *xy);
-    if (xy == NULL) return tml_no_memory(making->error);
-    molecule->plane_xy = xy;
-    if (!tml_grow(&molecule->planes, &making->plane_room, (size_t)molecule->plane_count + 1, sizeof *molecule->planes))
-        return tml_no_memory(making->error);
+    bool of_peptide = *names == '-';
+    if (count < SMALLEST || (of_peptide && making->residues[r].previous < 0)) return TML_OK;
+    if (is_within_earlier(molecule, atoms, count, first_of_residue)) return TML_OK;
+    if (!reserve_plane(making, (size_t)count)) return tml_no_memory(making->error);
     if (of_peptide) molecule->peptides[molecule->peptide_count - 1].plane = molecule->plane_count;
-    molecule->planes[molecule->plane_count++] = plane;
-    molecule->plane_atom_count += plane.count;
-    const int32_t *atoms = &molecule->plane_atoms[plane.first];
-    for (int32_t i = 0; i < plane.count; i++) {
+    molecule->planes[molecule->plane_count++] =
+        (tml_plane){.first = molecule->plane_atom_count, .count = count, .within = WITHIN};
+    for (int32_t i = 0; i < count; i++) {
+        molecule->plane_atoms[molecule->plane_atom_count++] = atoms[i];
         int32_t within = 0;
-        for (int32_t j = 0; j < plane.count; j++) within += bonded(molecule, atoms[i], atoms[j]);
+        for (int32_t j = 0; j < count; j++) within += bonded(molecule, atoms[i], atoms[j]);
         if (within >= 2 && degree_of(molecule, atoms[i]) <= 3) making->planar[atoms[i]] = true;
     }
     return TML_OK;
 }
 
+/* What a variant or a link left in no listed plane: a carbon with three neighbours, a nitrogen linked to such a one. */
+static void mark_trigonal(tml_making *making) {
+    const tml_molecule *molecule = making->molecule;
+    for (int32_t i = 0; i < molecule->atom_count; i++)
+        if (!is_bare(making, i) && molecule->atoms[i].element == 6 && degree_of(molecule, i) == 3) making->planar[i] = true;
+    for (int32_t i = 0; i < molecule->bond_count; i++) {
+        int32_t a = molecule->bonds[i].a, b = molecule->bonds[i].b;
+        if (making->bond_kinds[i] != TML_BOND_LINK || is_bare(making, a) || is_bare(making, b)) continue;
+        if (molecule->atoms[a].element == 7 && molecule->atoms[b].element == 6 && making->planar[b] &&
+            degree_of(molecule, a) == 3)
+            making->planar[a] = true;
+        if (molecule->atoms[b].element == 7 && molecule->atoms[a].element == 6 && making->planar[a] &&
+            degree_of(molecule, b) == 3)
+            making->planar[b] = true;
+    }
+}
+
 /* ---- angles ---- */
 
-/* Half-widths for bounds. Deposited NMR structures and the spread that Engh & Huber give (1.0 to 2.9°, one sigma) lie within. */
-static const double ANGLE_TOLERANCE = 4 * TML_PI / 180, ANGLE_H_TOLERANCE = 5 * TML_PI / 180;
+/* Half-width for bounds: 99 % of the angles of deposited NMR structures lie within it of ours, and so do twice the spreads that
+ * Engh & Huber give for most (1.0 to 2.9°, one sigma). */
+static const double ANGLE_TOLERANCE = 5 * TML_PI / 180;
 
 static tml_status add_angles(tml_making *making, int32_t centre);
 
@@ -159,11 +184,8 @@ static tml_status add_angles(tml_making *making, int32_t centre) {
     size_t need = (size_t)molecule->angle_count + (size_t)(count * (count - 1) / 2);
     if (!tml_grow(&molecule->angles, &making->angle_room, need, sizeof *molecule->angles)) return tml_no_memory(making->error);
     for (int i = 0; i < count; i++)
-        for (int j = i + 1; j < count; j++) {
-            bool with_h = molecule->atoms[arm[i]].element == 1 || molecule->atoms[arm[j]].element == 1;
-            molecule->angles[molecule->angle_count++] =
-                (tml_angle){arm[i], centre, arm[j], angle[i][j], with_h ? ANGLE_H_TOLERANCE : ANGLE_TOLERANCE};
-        }
+        for (int j = i + 1; j < count; j++)
+            molecule->angles[molecule->angle_count++] = (tml_angle){arm[i], centre, arm[j], angle[i][j], ANGLE_TOLERANCE};
     return TML_OK;
 }
 
@@ -181,9 +203,11 @@ static tml_status make_centres(tml_making *making) {
             return tml_no_memory(making->error);
         const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[i]];
         tml_centre *centre = &molecule->centres[molecule->centre_count++];
-        if (from_row(making, making->residues[r].form->centres, i, centre) || from_row(making, tml_backbone.centres, i, centre)) continue;
+        if (from_row(making, making->residues[r].form->centres, i, centre) || from_row(making, tml_backbone.centres, i, centre))
+            continue;
         *centre = (tml_centre){.centre = i, .arms = {arm[0], arm[1], arm[2], degree == 4 ? arm[3] : -1}, .sign = 1};
     }
+    making->table_centres = molecule->centre_count;
     return TML_OK;
 }
 
@@ -194,8 +218,8 @@ static bool from_row(const tml_making *making, const tml_centre_row *rows, int32
     for (; rows->c != NULL; rows++) {
         if (strcmp(rows->c, molecule->atoms[atom].name) != 0) continue;
         const char *names[3] = {rows->a1, rows->a2, rows->a3};
-        *centre = (tml_centre){.centre = atom, .arms = {-1, -1, -1, -1}, .sign = rows->sign == 0 ? 1 : rows->sign,
-                               .fixed = rows->sign != 0};
+        *centre = (tml_centre){
+            .centre = atom, .arms = {-1, -1, -1, -1}, .sign = rows->sign == 0 ? 1 : rows->sign, .fixed = rows->sign != 0};
         for (int k = 0; k < 3; k++) {
             centre->arms[k] = tml_lookup_atom(making, r, names[k], strlen(names[k]));
             if (centre->arms[k] < 0) return false;
@@ -220,9 +244,9 @@ static void rest_of_arms(const tml_molecule *molecule, tml_centre *centre) {
 /* ---- what the input adds ---- */
 
 static tml_status find_made(tml_making *making, const tml_address *address, int32_t *made) {
-    int32_t draft;
-    tml_status status = tml_find_draft_atom(making, address, &draft);
-    if (status == TML_OK) *made = making->atoms[draft].made;
+    int32_t found;
+    tml_status status = tml_find_layout_atom(making, address, &found);
+    if (status == TML_OK) *made = making->atoms[found].made;
     return status;
 }
 
@@ -247,7 +271,8 @@ static tml_status add_user_centres(tml_making *making) {
         if (status != TML_OK) break;
         rest_of_arms(molecule, &centre);
         if (centre_of[centre.centre] == 0) {
-            if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1, sizeof *molecule->centres)) {
+            if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1,
+                          sizeof *molecule->centres)) {
                 status = tml_no_memory(making->error);
                 break;
             }
@@ -259,30 +284,35 @@ static tml_status add_user_centres(tml_making *making) {
     return status;
 }
 
+static tml_status add_user_plane(tml_making *making, const tml_outline_plane *given, size_t *seen, size_t stamp);
+
 static tml_status add_user_planes(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     const tml_outline *outline = making->outline;
-    for (size_t i = 0; i < outline->plane_count; i++) {
-        const tml_outline_plane *given = &outline->planes[i];
-        tml_plane plane = {.first = molecule->plane_atom_count, .within = given->within};
-        if (given->atom_count > (size_t)(INT32_MAX / 4 - molecule->plane_atom_count))
-            return tml_fail(making->error, TML_TOO_LARGE, "too many atoms in planes");
-        size_t need = (size_t)molecule->plane_atom_count + given->atom_count;
-        if (!tml_grow(&molecule->plane_atoms, &making->plane_atom_room, need, sizeof *molecule->plane_atoms) ||
-            !tml_grow(&molecule->planes, &making->plane_room, (size_t)molecule->plane_count + 1, sizeof *molecule->planes))
-            return tml_no_memory(making->error);
-        for (size_t k = 0; k < given->atom_count; k++) {
-            tml_status status = find_made(making, &given->atoms[k], &molecule->plane_atoms[plane.first + plane.count]);
-            if (status != TML_OK) return status;
-            plane.count++;
-        }
-        molecule->plane_atom_count += plane.count;
-        molecule->planes[molecule->plane_count++] = plane;
+    size_t *seen = tml_alloc((size_t)molecule->atom_count, sizeof *seen); /* the last plane that named an atom, from 1 */
+    tml_status status = seen == NULL ? tml_no_memory(making->error) : TML_OK;
+    for (size_t i = 0; i < outline->plane_count && status == TML_OK; i++)
+        status = add_user_plane(making, &outline->planes[i], seen, i + 1);
+    free(seen);
+    return status;
+}
+
+static tml_status add_user_plane(tml_making *making, const tml_outline_plane *given, size_t *seen, size_t stamp) {
+    tml_molecule *molecule = making->molecule;
+    tml_plane plane = {.first = molecule->plane_atom_count, .within = given->within};
+    if (given->atom_count > (size_t)(INT32_MAX / 4 - molecule->plane_atom_count))
+        return tml_fail(making->error, TML_TOO_LARGE, "too many atoms in planes");
+    if (!reserve_plane(making, given->atom_count)) return tml_no_memory(making->error);
+    for (size_t k = 0; k < given->atom_count; k++) {
+        int32_t atom;
+        tml_status status = find_made(making, &given->atoms[k], &atom);
+        if (status != TML_OK) return status;
+        if (seen[atom] == stamp)
+            return tml_making_fail(making, given->atoms[k].place, "the plane names %s twice", given->atoms[k].atom);
+        seen[atom] = stamp;
+        molecule->plane_atoms[plane.first + plane.count++] = atom;
     }
-    double *xy = realloc(molecule->plane_xy, (2 * making->plane_atom_room + 1) * sizeof *xy);
-    if (xy == NULL) return tml_no_memory(making->error);
-    for (int32_t i = 0; i < molecule->plane_count; i++)
-        if (!molecule->planes[i].has_xy) memset(&xy[2 * molecule->planes[i].first], 0, 2 * (size_t)molecule->planes[i].count * sizeof *xy);
-    molecule->plane_xy = xy;
+    molecule->plane_atom_count += plane.count;
+    molecule->planes[molecule->plane_count++] = plane;
     return TML_OK;
 }

@@ -1,17 +1,22 @@
+#include "molecule/making.h"
+
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
 #include "base/vector.h"
-#include "molecule/making.h"
 
 /* Contents: one bond after the other - what is known of a bond - other pairs of outer atoms - cis and trans */
 
 static const double PLANAR_TOLERANCE = 3 * TML_PI / 180;   /* rings and planar groups */
-static const double PEPTIDE_TOLERANCE = 10 * TML_PI / 180; /* omega's spread in deposited structures is about 5° */
+static const double PEPTIDE_TOLERANCE = 20 * TML_PI / 180; /* deposited NMR structures reach it */
 
 /* What is known of rotation about b-c: the torsion a-b-c-d. */
-typedef struct reference { int32_t a, d; tml_torsion_kind kind; bool flat; double angle, tolerance; } reference;
+typedef struct reference {
+    int32_t a, d;
+    tml_torsion_kind kind;
+    bool flat;
+    double angle, tolerance;
+} reference;
 
 static reference know_bond(const tml_making *making, int32_t bond);
 static double carry_over(const tml_making *making, const tml_bond *bond, const reference *known, int32_t a, int32_t d);
@@ -68,10 +73,13 @@ static reference know_bond(const tml_making *making, int32_t index) {
     if (of_peptide(making, index, &known)) return known;
     int32_t r = molecule->atoms[bond->a].residue;
     if (molecule->atoms[bond->b].residue == r && making->bond_kinds[index] == TML_BOND_INNER &&
-        (of_row(making, making->residues[r].form->torsions, bond, &known) || of_row(making, tml_backbone.torsions, bond, &known)))
+        (of_row(making, making->residues[r].form->torsions, bond, &known) ||
+         of_row(making, tml_backbone.torsions, bond, &known)))
         return known;
     if (making->planar[bond->a] && making->planar[bond->b] && of_ring(making, bond, &known)) return known;
-    if (is_tetrahedral(making, bond->a) && is_tetrahedral(making, bond->b))
+    /* Rotation about S-S prefers 90°, which is no staggering. */
+    bool sulphurs = molecule->atoms[bond->a].element == 16 && molecule->atoms[bond->b].element == 16;
+    if (is_tetrahedral(making, bond->a) && is_tetrahedral(making, bond->b) && !sulphurs)
         return (reference){.kind = TML_TORSION_STAGGERED, .angle = TML_PI / 3};
     return (reference){.kind = TML_TORSION_FREE};
 }
@@ -82,8 +90,10 @@ static bool of_peptide(const tml_making *making, int32_t index, reference *known
     int32_t low = 0, high = molecule->peptide_count - 1; /* peptides are in the order of their bonds */
     while (low < high) {
         int32_t middle = low + (high - low) / 2;
-        if (molecule->peptides[middle].bond < index) low = middle + 1;
-        else high = middle;
+        if (molecule->peptides[middle].bond < index)
+            low = middle + 1;
+        else
+            high = middle;
     }
     const tml_peptide *peptide = &molecule->peptides[low];
     *known = (reference){peptide->ca1, peptide->ca2, TML_TORSION_PEPTIDE, true, peptide->cis ? 0 : TML_PI, PEPTIDE_TOLERANCE};
@@ -97,10 +107,15 @@ static bool of_row(const tml_making *making, const tml_torsion_row *rows, const 
         bool forwards = strcmp(rows->b, atoms[bond->a].name) == 0 && strcmp(rows->c, atoms[bond->b].name) == 0;
         bool backwards = strcmp(rows->c, atoms[bond->a].name) == 0 && strcmp(rows->b, atoms[bond->b].name) == 0;
         if (!forwards && !backwards) continue;
-        int32_t a = tml_lookup_atom(making, r, rows->a, strlen(rows->a)), d = tml_lookup_atom(making, r, rows->d, strlen(rows->d));
+        int32_t a = tml_lookup_atom(making, r, rows->a, strlen(rows->a)),
+                d = tml_lookup_atom(making, r, rows->d, strlen(rows->d));
         if (a < 0 || d < 0) continue;
         bool flat = rows->tolerance == 0;
-        *known = (reference){forwards ? a : d, forwards ? d : a, TML_TORSION_FIXED, flat, rows->degrees * TML_PI / 180,
+        *known = (reference){forwards ? a : d,
+                             forwards ? d : a,
+                             TML_TORSION_FIXED,
+                             flat,
+                             rows->degrees * TML_PI / 180,
                              flat ? PLANAR_TOLERANCE : rows->tolerance * TML_PI / 180};
         return true;
     }
@@ -120,7 +135,8 @@ static bool of_ring(const tml_making *making, const tml_bond *bond, reference *k
                 if (e == bond->a || e == bond->b || !making->planar[e]) continue;
                 bool closes = bonded(molecule, e, d); /* five */
                 for (int32_t l = first[e]; l < first[e + 1] && !closes; l++)
-                    closes = to[l] != bond->a && to[l] != bond->b && to[l] != a && making->planar[to[l]] && bonded(molecule, to[l], d);
+                    closes = to[l] != bond->a && to[l] != bond->b && to[l] != a && making->planar[to[l]] &&
+                             bonded(molecule, to[l], d);
                 if (!closes) continue;
                 *known = (reference){a, d, TML_TORSION_FIXED, true, 0, PLANAR_TOLERANCE};
                 return true;
@@ -139,28 +155,30 @@ static bool is_tetrahedral(const tml_making *making, int32_t atom) {
 
 /* ---- other pairs of outer atoms ---- */
 
-static double azimuth(const tml_molecule *molecule, int32_t centre, int32_t axis, int32_t arm);
+static double azimuth(const tml_making *making, int32_t centre, int32_t axis, int32_t arm);
 
 /* The torsion of outer atoms a and d, if that of the reference's is known. About a bond of a planar group every change of an
  * outer atom turns by 180°; elsewhere by as much as the arms of the two centres lie apart around the bond. */
 static double carry_over(const tml_making *making, const tml_bond *bond, const reference *known, int32_t a, int32_t d) {
     if (known->flat) return (known->angle != 0) ^ (a != known->a) ^ (d != known->d) ? TML_PI : 0;
-    const tml_molecule *molecule = making->molecule;
     double angle = known->angle;
-    if (d != known->d) angle += azimuth(molecule, bond->b, bond->a, d) - azimuth(molecule, bond->b, bond->a, known->d);
+    if (d != known->d) angle += azimuth(making, bond->b, bond->a, d) - azimuth(making, bond->b, bond->a, known->d);
     /* From b's side the bond runs the other way, which turns the sense around. */
-    if (a != known->a) angle += azimuth(molecule, bond->a, bond->b, a) - azimuth(molecule, bond->a, bond->b, known->a);
+    if (a != known->a) angle += azimuth(making, bond->a, bond->b, a) - azimuth(making, bond->a, bond->b, known->a);
     return remainder(angle, 2 * TML_PI);
 }
 
-static const tml_centre *centre_at(const tml_molecule *molecule, int32_t atom) {
-    int32_t low = 0, high = molecule->centre_count; /* the table's centres are in the order of atoms */
+static const tml_centre *centre_at(const tml_making *making, int32_t atom) {
+    const tml_molecule *molecule = making->molecule;
+    int32_t low = 0, high = making->table_centres;
     while (low < high) {
         int32_t middle = low + (high - low) / 2;
-        if (molecule->centres[middle].centre < atom) low = middle + 1;
-        else high = middle;
+        if (molecule->centres[middle].centre < atom)
+            low = middle + 1;
+        else
+            high = middle;
     }
-    return low < molecule->centre_count && molecule->centres[low].centre == atom ? &molecule->centres[low] : NULL;
+    return low < making->table_centres && molecule->centres[low].centre == atom ? &molecule->centres[low] : NULL;
 }
 
 static double angle_between(const tml_molecule *molecule, int32_t a, int32_t centre, int32_t c) {
@@ -173,13 +191,16 @@ static double angle_between(const tml_molecule *molecule, int32_t a, int32_t cen
 
 /* Where an arm of a centre lies around the axis from `axis` to the centre, clockwise looking along it; only differences mean
  * something. */
-static double azimuth(const tml_molecule *molecule, int32_t centre, int32_t axis, int32_t arm) {
+static double azimuth(const tml_making *making, int32_t centre, int32_t axis, int32_t arm) {
     int32_t arms[TML_ARMS_MAX] = {-1, -1, -1, -1};
     int count = 0;
-    const tml_centre *known = centre_at(molecule, centre);
+    const tml_molecule *molecule = making->molecule;
+    const tml_centre *known = centre_at(making, centre);
     for (int k = 0; known != NULL && k < TML_ARMS_MAX && known->arms[k] >= 0; k++) arms[count++] = known->arms[k];
-    for (int32_t k = molecule->neighbour_first[centre]; known == NULL && k < molecule->neighbour_first[centre + 1] && count < TML_ARMS_MAX; k++)
-        arms[count++] = molecule->neighbours[k];
+    if (known == NULL)
+        for (int32_t k = molecule->neighbour_first[centre]; k < molecule->neighbour_first[centre + 1] && count < TML_ARMS_MAX;
+             k++)
+            arms[count++] = molecule->neighbours[k];
     double angle[TML_ARMS_MAX][TML_ARMS_MAX] = {{0}}, direction[TML_ARMS_MAX][3];
     for (int i = 0; i < count; i++)
         for (int j = 0; j < count; j++) angle[i][j] = angle_between(molecule, arms[i], centre, arms[j]);

@@ -23,7 +23,7 @@ tml_status tml_apply_ends_and_variants(tml_making *making) {
 /* ---- which residues stand at an end ---- */
 
 /* Does the number run on from one residue to the next? */
-static bool runs_on(const tml_draft_residue *a, const tml_draft_residue *b) {
+static bool runs_on(const tml_layout_residue *a, const tml_layout_residue *b) {
     int first, second;
     if (sscanf(a->number, "%9d", &first) != 1 || sscanf(b->number, "%9d", &second) != 1) return true;
     return second - first <= 1;
@@ -31,7 +31,7 @@ static bool runs_on(const tml_draft_residue *a, const tml_draft_residue *b) {
 
 /* Neighbours in a chain are linked unless one says otherwise; a break lies between two that both say so, or where a residue
  * that says so meets a jump of numbers. */
-static bool linked(const tml_draft_residue *a, const tml_draft_residue *b) {
+static bool linked(const tml_layout_residue *a, const tml_layout_residue *b) {
     if (a->form == NULL || b->form == NULL) return false;
     if (a->linking == TML_LINKING_END || a->linking == TML_LINKING_SINGLE) return false;
     if (b->linking == TML_LINKING_START || b->linking == TML_LINKING_SINGLE) return false;
@@ -47,7 +47,7 @@ static tml_status join_residues(tml_making *making) {
         int32_t ring_start = -1;
         for (int32_t k = 0; k < chain->residue_count; k++) {
             int32_t r = chain->first_residue + k;
-            tml_draft_residue *residue = &making->residues[r];
+            tml_layout_residue *residue = &making->residues[r];
             if (k > 0 && linked(residue - 1, residue)) {
                 residue->previous = r - 1;
                 residue[-1].next = r;
@@ -68,16 +68,18 @@ static tml_status join_residues(tml_making *making) {
     }
     for (int32_t r = 0; r < making->residue_count; r++)
         if (making->residues[r].cis && making->residues[r].next < 0)
-            return tml_making_fail(making, making->residues[r].place, "%s:%s has no peptide bond to a next residue that could be cis",
-                                   making->residues[r].chain, making->residues[r].number);
+            return tml_making_fail(making, making->residues[r].place,
+                                   "%s:%s has no peptide bond to a next residue that could be cis", making->residues[r].chain,
+                                   making->residues[r].number);
     return TML_OK;
 }
 
 static tml_status join_ring(tml_making *making, int32_t first, int32_t last) {
-    tml_draft_residue *start = &making->residues[first], *end = &making->residues[last];
+    tml_layout_residue *start = &making->residues[first], *end = &making->residues[last];
     if (last == first + 1 || start->previous >= 0 || end->next >= 0)
-        return tml_making_fail(making, end->place, "%s:%s and %s:%s cannot close a ring: %s", start->chain, start->number, end->chain,
-                               end->number, last == first + 1 ? "it would have two residues only" : "they are not the ends of their chain");
+        return tml_making_fail(making, end->place, "%s:%s and %s:%s cannot close a ring: %s", start->chain, start->number,
+                               end->chain, end->number,
+                               last == first + 1 ? "it would have two residues only" : "they are not the ends of their chain");
     start->previous = last;
     end->next = first;
     return TML_OK;
@@ -96,11 +98,12 @@ static tml_status apply_ends(tml_making *making) {
     for (size_t i = 0; i < outline->ends_count; i++) {
         int32_t chain = tml_index_find(molecule->chain_index, -1, outline->ends[i].chain);
         if (chain < 0)
-            return tml_making_fail(making, outline->ends[i].place, "no chain \"%.32s\" in the sequence", outline->ends[i].chain);
+            return tml_making_fail(making, outline->ends[i].place, "no chain \"%.32s\" in the sequence",
+                                   outline->ends[i].chain);
         molecule->chains[chain].ends = outline->ends[i].ends;
     }
     for (int32_t r = 0; r < making->residue_count; r++) {
-        const tml_draft_residue *residue = &making->residues[r];
+        const tml_layout_residue *residue = &making->residues[r];
         if (residue->form == NULL) continue;
         tml_ends ends = molecule->chains[residue->chain_index].ends;
         tml_linking linking = residue->linking;
@@ -122,14 +125,15 @@ static tml_status check_held(tml_making *making, int32_t r);
 
 /* "-HD1,+HE2": take away or add; what is so already may be said again. */
 static tml_status apply_changes(tml_making *making, int32_t r, const char *changes) {
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     const char *at = changes;
     while (*at != '\0') {
         at += strspn(at, ", ");
         if (*at == '\0') break;
         size_t length = strcspn(at, ", ");
         if ((*at != '+' && *at != '-') || length < 2)
-            return tml_making_fail(making, residue->place, "%s:%s: variant \"%.64s\": expected + or - and an atom name, as in -HD1,+HE2",
+            return tml_making_fail(making, residue->place,
+                                   "%s:%s: variant \"%.64s\": expected + or - and an atom name, as in -HD1,+HE2",
                                    residue->chain, residue->number, changes);
         int32_t found = -1;
         for (int32_t i = residue->first_atom; i < residue->first_atom + residue->atom_count && found < 0; i++)
@@ -142,7 +146,7 @@ static tml_status apply_changes(tml_making *making, int32_t r, const char *chang
 }
 
 static tml_status unknown_atom(tml_making *making, int32_t r, const char *name, int length) {
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     char wanted[33], text[256] = "";
     snprintf(wanted, sizeof wanted, "%.*s", length, name);
     tml_nearest nearest;
@@ -155,14 +159,14 @@ static tml_status unknown_atom(tml_making *making, int32_t r, const char *name, 
 
 /* Every atom that is there must have its parent. */
 static tml_status check_held(tml_making *making, int32_t r) {
-    const tml_draft_residue *residue = &making->residues[r];
+    const tml_layout_residue *residue = &making->residues[r];
     for (int32_t i = 0; i < residue->atom_count; i++) {
-        const tml_draft_atom *atom = &making->atoms[residue->first_atom + i];
+        const tml_layout_atom *atom = &making->atoms[residue->first_atom + i];
         const char *parent = residue->form->atoms[i].parent;
         if (!atom->present || *parent == '\0') continue;
-        if (!making->atoms[tml_index_find(making->molecule->atom_index, r, parent)].present)
-            return tml_making_fail(making, residue->place, "%s:%s: the variant leaves %s without %s, which carries it", residue->chain,
-                                   residue->number, atom->name, parent);
+        if (!making->atoms[tml_index_find(making->atom_index, r, parent)].present)
+            return tml_making_fail(making, residue->place, "%s:%s: the variant leaves %s without %s, which carries it",
+                                   residue->chain, residue->number, atom->name, parent);
     }
     return TML_OK;
 }

@@ -1,28 +1,26 @@
 #include "molecule/making.h"
 
-#include <ctype.h>
-#include <errno.h>
-#include <limits.h>
 #include <stdarg.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "molecule/elements.h"
+#include "molecule/nearest.h"
 
 /* Contents: residues in chain order - their templates - atoms - messages and finding */
 
 static tml_status number_chains(tml_making *making);
 static tml_status add_chain(tml_making *making, const char *code, int32_t *index);
 static tml_status order_by_chain(tml_making *making);
-static tml_status find_template(tml_making *making, tml_draft_residue *residue);
+static tml_status find_template(tml_making *making, tml_layout_residue *residue);
 
 enum { MOST_ATOMS = 50 * 1000 * 1000 }; /* keeps every count of terms within 32 bits */
 
 /* ---- residues in chain order ---- */
 
 /* Residues of the sequence and of single atoms, chains together, each chain in the order of the outline. */
-tml_status tml_draft_residues(tml_making *making) {
+tml_status tml_lay_out_residues(tml_making *making) {
     const tml_outline *outline = making->outline;
     tml_molecule *molecule = making->molecule;
     if (outline->residue_count > MOST_ATOMS || outline->atom_count > MOST_ATOMS)
@@ -30,8 +28,9 @@ tml_status tml_draft_residues(tml_making *making) {
     making->residues = tml_alloc(outline->residue_count + outline->atom_count, sizeof *making->residues);
     molecule->chain_index = tml_index_new();
     molecule->residue_index = tml_index_new();
-    molecule->atom_index = tml_index_new();
-    if (making->residues == NULL || molecule->chain_index == NULL || molecule->residue_index == NULL || molecule->atom_index == NULL)
+    making->atom_index = tml_index_new();
+    if (making->residues == NULL || molecule->chain_index == NULL || molecule->residue_index == NULL ||
+        making->atom_index == NULL)
         return tml_no_memory(making->error);
     tml_status status = number_chains(making);
     if (status == TML_OK) status = order_by_chain(making);
@@ -44,9 +43,16 @@ static tml_status number_chains(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     for (size_t i = 0; i < outline->residue_count; i++) {
         const tml_outline_residue *from = &outline->residues[i];
-        tml_draft_residue *residue = &making->residues[making->residue_count];
-        *residue = (tml_draft_residue){.chain = from->chain, .number = from->number, .name = from->name, .variant = from->variant,
-                                       .linking = from->linking, .cis = from->cis, .previous = -1, .next = -1, .place = from->place};
+        tml_layout_residue *residue = &making->residues[making->residue_count];
+        *residue = (tml_layout_residue){.chain = from->chain,
+                                        .number = from->number,
+                                        .name = from->name,
+                                        .variant = from->variant,
+                                        .linking = from->linking,
+                                        .cis = from->cis,
+                                        .previous = -1,
+                                        .next = -1,
+                                        .place = from->place};
         tml_status status = add_chain(making, from->chain, &residue->chain_index);
         if (status == TML_OK) status = find_template(making, residue);
         if (status != TML_OK) return status;
@@ -65,13 +71,20 @@ static tml_status number_chains(tml_making *making) {
         if (status != TML_OK) return status;
         int32_t other = tml_index_find(molecule->residue_index, chain, from->number);
         if (other >= 0 && other < sequence_count)
-            return tml_making_fail(making, from->place, "%s:%s is %s of the sequence already; atom %s needs a residue number of its own",
+            return tml_making_fail(making, from->place,
+                                   "%s:%s is %s of the sequence already; atom %s needs a residue number of its own",
                                    from->chain, from->number, making->residues[other].name, from->name);
         if (other >= 0) continue;
-        making->residues[making->residue_count] =
-            (tml_draft_residue){.chain = from->chain, .number = from->number, .name = from->residue, .variant = "",
-                                .previous = -1, .next = -1, .chain_index = chain, .place = from->place};
-        if (!tml_index_add(molecule->residue_index, chain, from->number, making->residue_count++)) return tml_no_memory(making->error);
+        making->residues[making->residue_count] = (tml_layout_residue){.chain = from->chain,
+                                                                       .number = from->number,
+                                                                       .name = from->residue,
+                                                                       .variant = "",
+                                                                       .previous = -1,
+                                                                       .next = -1,
+                                                                       .chain_index = chain,
+                                                                       .place = from->place};
+        if (!tml_index_add(molecule->residue_index, chain, from->number, making->residue_count++))
+            return tml_no_memory(making->error);
     }
     return TML_OK;
 }
@@ -88,7 +101,7 @@ static tml_status add_chain(tml_making *making, const char *code, int32_t *index
 static tml_status order_by_chain(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     size_t count = (size_t)making->residue_count;
-    tml_draft_residue *ordered = tml_alloc(count, sizeof *ordered);
+    tml_layout_residue *ordered = tml_alloc(count, sizeof *ordered);
     int32_t *filled = tml_alloc((size_t)molecule->chain_count, sizeof *filled);
     molecule->chains = tml_alloc((size_t)molecule->chain_count, sizeof *molecule->chains);
     tml_index *index = tml_index_new();
@@ -122,7 +135,7 @@ static tml_status order_by_chain(tml_making *making) {
 
 /* ---- their templates ---- */
 
-static tml_status find_template(tml_making *making, tml_draft_residue *residue) {
+static tml_status find_template(tml_making *making, tml_layout_residue *residue) {
     for (const tml_template *form = tml_templates; form->name != NULL; form++)
         if (strcmp(form->name, residue->name) == 0) {
             residue->form = form;
@@ -133,8 +146,8 @@ static tml_status find_template(tml_making *making, tml_draft_residue *residue) 
         size_t used = strlen(known);
         snprintf(known + used, sizeof known - used, "%s%s", used == 0 ? "" : " ", form->name);
     }
-    return tml_making_fail(making, residue->place, "%s:%s: unknown residue \"%.32s\"; known are %s", residue->chain, residue->number,
-                           residue->name, known);
+    return tml_making_fail(making, residue->place, "%s:%s: unknown residue \"%.32s\"; known are %s", residue->chain,
+                           residue->number, residue->name, known);
 }
 
 /* ---- atoms ---- */
@@ -145,7 +158,7 @@ static int element_of(const char *name) {
 }
 
 /* Every atom that a template knows, present or not, and every single atom of the outline. */
-tml_status tml_draft_atoms(tml_making *making) {
+tml_status tml_lay_out_atoms(tml_making *making) {
     const tml_outline *outline = making->outline;
     tml_molecule *molecule = making->molecule;
     size_t total = outline->atom_count;
@@ -166,32 +179,42 @@ tml_status tml_draft_atoms(tml_making *making) {
     making->atom_count = (int32_t)total;
     int32_t at = 0;
     for (int32_t r = 0; r < making->residue_count; r++) {
-        tml_draft_residue *residue = &making->residues[r];
+        tml_layout_residue *residue = &making->residues[r];
         residue->first_atom = at;
         at += residue->atom_count;
         if (residue->form == NULL) {
             residue->atom_count = 0;
             continue;
         }
-        tml_draft_atom *atom = &making->atoms[residue->first_atom];
+        tml_layout_atom *atom = &making->atoms[residue->first_atom];
         for (const tml_atom_row *row = residue->form->atoms; row->name != NULL; row++, atom++) {
-            *atom = (tml_draft_atom){.name = row->name, .element = element_of(row->name), .residue = r, .made = -1,
-                                     .present = !row->optional, .place = residue->place};
-            if (!tml_index_add(molecule->atom_index, r, row->name, (int32_t)(atom - making->atoms))) return tml_no_memory(making->error);
+            *atom = (tml_layout_atom){.name = row->name,
+                                      .element = element_of(row->name),
+                                      .residue = r,
+                                      .made = -1,
+                                      .present = !row->optional,
+                                      .place = residue->place};
+            if (!tml_index_add(making->atom_index, r, row->name, (int32_t)(atom - making->atoms)))
+                return tml_no_memory(making->error);
         }
     }
     for (size_t i = 0; i < outline->atom_count; i++) {
         const tml_outline_atom *from = &outline->atoms[i];
         int32_t chain = tml_index_find(molecule->chain_index, -1, from->chain);
         int32_t r = tml_index_find(molecule->residue_index, chain, from->number);
-        tml_draft_residue *residue = &making->residues[r];
+        tml_layout_residue *residue = &making->residues[r];
         int32_t index = residue->first_atom + residue->atom_count++;
-        if (tml_index_find(molecule->atom_index, r, from->name) >= 0)
+        if (tml_index_find(making->atom_index, r, from->name) >= 0)
             return tml_making_fail(making, from->place, "atom %s%s%s%s%s is given twice", from->chain, *from->chain ? ":" : "",
                                    from->number, *from->number ? ":" : "", from->name);
-        making->atoms[index] = (tml_draft_atom){.name = from->name, .element = from->element, .residue = r, .made = -1,
-                                                .present = true, .bare = true, .place = from->place};
-        if (!tml_index_add(molecule->atom_index, r, from->name, index)) return tml_no_memory(making->error);
+        making->atoms[index] = (tml_layout_atom){.name = from->name,
+                                                 .element = from->element,
+                                                 .residue = r,
+                                                 .made = -1,
+                                                 .present = true,
+                                                 .bare = true,
+                                                 .place = from->place};
+        if (!tml_index_add(making->atom_index, r, from->name, index)) return tml_no_memory(making->error);
     }
     return TML_OK;
 }
@@ -206,4 +229,39 @@ tml_status tml_making_fail(tml_making *making, tml_place place, const char *form
     va_end(arguments);
     return tml_fail_at(making->error, TML_BAD_INPUT, place.file < 0 || making->files == NULL ? NULL : making->files[place.file],
                        place.line, place.column, "%s", text);
+}
+
+tml_status tml_find_layout_atom(tml_making *making, const tml_address *address, int32_t *found) {
+    const tml_molecule *molecule = making->molecule;
+    int32_t chain = tml_index_find(molecule->chain_index, -1, address->chain);
+    int32_t r = chain < 0 ? -1 : tml_index_find(molecule->residue_index, chain, address->number);
+    const char *colon = *address->chain != '\0' || *address->number != '\0' ? ":" : "";
+    if (r < 0) {
+        char text[256] = "";
+        tml_nearest nearest;
+        tml_nearest_start(&nearest, chain < 0 ? address->chain : address->number);
+        if (chain < 0)
+            for (int32_t c = 0; c < molecule->chain_count; c++) tml_nearest_offer(&nearest, molecule->chains[c].code);
+        else
+            for (int32_t k = 0; k < molecule->chains[chain].residue_count; k++)
+                tml_nearest_offer(&nearest, making->residues[molecule->chains[chain].first_residue + k].number);
+        tml_nearest_append(&nearest, text, sizeof text);
+        return tml_making_fail(making, address->place, "%s%s%s%s%s: no such %s; nearest: %s", address->chain, colon,
+                               address->number, colon, address->atom, chain < 0 ? "chain" : "residue",
+                               *text == '\0' ? "none" : text);
+    }
+    const tml_layout_residue *residue = &making->residues[r];
+    if (address->residue != NULL && *address->residue != '\0' && strcmp(address->residue, residue->name) != 0)
+        return tml_making_fail(making, address->place, "%s:%s is %s, not %s", address->chain, address->number, residue->name,
+                               address->residue);
+    *found = tml_index_find(making->atom_index, r, address->atom);
+    if (*found >= 0 && making->atoms[*found].present) return TML_OK;
+    char text[256] = "";
+    tml_nearest nearest;
+    tml_nearest_start(&nearest, address->atom);
+    for (int32_t i = residue->first_atom; i < residue->first_atom + residue->atom_count; i++)
+        if (making->atoms[i].present) tml_nearest_offer(&nearest, making->atoms[i].name);
+    tml_nearest_append(&nearest, text, sizeof text);
+    return tml_making_fail(making, address->place, "%s%s%s%s%s: no such atom%s%s; it has %s", address->chain, colon,
+                           address->number, colon, address->atom, *residue->name == '\0' ? "" : " in ", residue->name, text);
 }
