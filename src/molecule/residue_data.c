@@ -3,7 +3,9 @@
  * Lengths and angles of heavy atoms: R. A. Engh & R. Huber, Acta Cryst. A47 (1991) 392, typed from memory. X-H lengths are
  * nuclear ones (usual values from neutron diffraction, from memory). Protonated carboxyl groups: F. H. Allen et al., J. Chem.
  * Soc. Perkin Trans. 2 (1987) S1, from memory. C-O-H and C-S-H angles as in methanol, phenol and methanethiol (microwave
- * spectra, from memory). All other angles with hydrogen follow from those of the heavy atoms: see arms.c.
+ * spectra, from memory). H on a peptide's N: 120.0° to C and 118.0° to CA in W. D. Cornell et al., J. Am. Chem. Soc. 117 (1995)
+ * 5179 (from memory), shared out so that the three angles come to 360°. All other angles with hydrogen follow from those of the
+ * heavy atoms: see arms.c.
  *
  * Contents: lengths and angles by type - backbone - residues - table of residues - chain ends
  */
@@ -67,14 +69,23 @@ static const tml_bond_row backbone_bonds[] = {{"C", "O", CARBOXYLATE, "+OXT-HXT"
                                               {"C", "OXT", ACID_COH, "+HXT"},
                                               {"-C", "N", 1.329, ""},
                                               END};
-static const tml_angle_row backbone_angles[] = {{"N", "CA", "C", 111.2, ""},         {"N", "CA", "CB", 110.5, ""},
-                                                {"C", "CA", "CB", 110.1, ""},        {"-CA", "-C", "N", 116.2, ""},
-                                                {"-O", "-C", "N", 123.0, ""},        {"-C", "N", "CA", 121.7, ""},
-                                                {"CA", "C", "O", 118.4, "+OXT-HXT"}, {"CA", "C", "OXT", 118.4, "-HXT"},
-                                                {"O", "C", "OXT", 122.9, "-HXT"},    {"CA", "C", "O", 124.0, "+HXT"},
-                                                {"CA", "C", "OXT", 112.5, "+HXT"},   {"O", "C", "OXT", 123.5, "+HXT"},
-                                                {"C", "OXT", "HXT", 109.0, ""},      {"CA", "C", "O", 120.8, ""},
-                                                {"CA", "N", "H", 119.15, "-H2"},     END};
+static const tml_angle_row backbone_angles[] = {{"N", "CA", "C", 111.2, ""},
+                                                {"N", "CA", "CB", 110.5, ""},
+                                                {"C", "CA", "CB", 110.1, ""},
+                                                {"-CA", "-C", "N", 116.2, ""},
+                                                {"-O", "-C", "N", 123.0, ""},
+                                                {"-C", "N", "CA", 121.7, ""},
+                                                {"CA", "C", "O", 118.4, "+OXT-HXT"},
+                                                {"CA", "C", "OXT", 118.4, "-HXT"},
+                                                {"O", "C", "OXT", 122.9, "-HXT"},
+                                                {"CA", "C", "O", 124.0, "+HXT"},
+                                                {"CA", "C", "OXT", 112.5, "+HXT"},
+                                                {"O", "C", "OXT", 123.5, "+HXT"},
+                                                {"C", "OXT", "HXT", 109.0, ""},
+                                                {"CA", "C", "O", 120.8, ""},
+                                                {"CA", "N", "H", 118.2, "-H2"},
+                                                {"-C", "N", "H", 120.1, ""},
+                                                END};
 static const tml_torsion_row backbone_torsions[] = {{"CA", "C", "OXT", "HXT", 180, 40}, END};
 static const tml_centre_row backbone_centres[] = {{"CA", "N", "C", "CB", +1}, {"CB", "HB2", "HB3", "CA", -1}, END};
 static const tml_charge_row backbone_charges[] = {{"N", +1, "+H1+H2+H3"}, {"OXT", -1, "-HXT"}, END};
@@ -215,11 +226,9 @@ static const char *const glu_planes[] = {"CG CD OE1 OE2", NULL};
 
 static const tml_atom_row gly_atoms[] = {
     HEAVY_BACKBONE(1.451, 1.516), END_OXYGEN, {"H", "N", NH, false}, END_NH, CH2("HA2", "HA3", "CA"), END_OH, END};
-static const tml_angle_row gly_angles[] = {{"N", "CA", "C", 112.5, ""},
-                                           {"-C", "N", "CA", 120.6, ""},
-                                           {"CA", "N", "H", 119.7, "-H2"},
-                                           {"CA", "C", "+N", 116.4, ""},
-                                           END};
+static const tml_angle_row gly_angles[] = {{"N", "CA", "C", 112.5, ""},    {"-C", "N", "CA", 120.6, ""},
+                                           {"CA", "N", "H", 118.7, "-H2"}, {"-C", "N", "H", 120.7, ""},
+                                           {"CA", "C", "+N", 116.4, ""},   END};
 static const tml_centre_row gly_centres[] = {{"CA", "HA2", "HA3", "N", -1}, END};
 
 static const tml_atom_row his_atoms[] = {BACKBONE,

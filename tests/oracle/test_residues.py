@@ -2,7 +2,7 @@
 
 Heavy atoms: both sides go back to Engh & Huber, Acta Cryst. A47 (1991) 392. X-H lengths: the dictionary's are those of electron
 clouds, so ours are compared with nuclear ones (neutron diffraction, usual values: C-H 1.09, ring C-H 1.08, N-H 1.02, O-H 0.97,
-S-H 1.34). Two angles differ on purpose and are left in the figures: H-N-CA, 119.15 degrees here since a peptide's N is planar, 114
+S-H 1.34). Two angles differ on purpose and are left in the figures: H-N-CA, 118.2 degrees here since a peptide's N is planar, 114
 there; CB-SG-HG, 96.5 here as in methanethiol (microwave spectrum), 109 there.
 
   test_residues.py [-v]     -v lists every bond and angle that differs
