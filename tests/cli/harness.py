@@ -37,6 +37,16 @@ class CommandTest(unittest.TestCase):
         with open(self.path(name), 'rb') as file:
             return file.read()
 
+    def start(self, command, **how):
+        """A process beside the test, which does not outlive it."""
+        process = subprocess.Popen(command, cwd=self.folder, stdout=subprocess.PIPE, stderr=subprocess.PIPE, **how)
+
+        def end():
+            process.kill()
+            process.communicate()
+        self.addCleanup(end)
+        return process
+
     def trammel(self, *arguments, status=0, stdin=b'', stdout=subprocess.PIPE, timeout=120):
         """Run the program; its standard output and error. The exit status must be the one expected."""
         done = subprocess.run([PROGRAM, *map(str, arguments)], input=stdin, stdout=stdout, stderr=subprocess.PIPE,

@@ -155,9 +155,9 @@ class Failures(harness.CommandTest):
 
     def test_devices_and_pipes_are_written_to_and_stay_what_they_are(self):
         os.mkfifo(self.path('pipe'))
-        with subprocess.Popen(['cat', self.path('pipe')], stdout=subprocess.PIPE) as cat:
-            self.trammel('bounds', FIVE_RING, '-o', 'pipe')
-            self.assertEqual(cat.communicate(timeout=20)[0].decode(), self.trammel('bounds', FIVE_RING)[0])
+        cat = self.start(['cat', 'pipe'])
+        self.trammel('bounds', FIVE_RING, '-o', 'pipe')
+        self.assertEqual(cat.communicate(timeout=20)[0].decode(), self.trammel('bounds', FIVE_RING)[0])
         self.assertTrue(stat.S_ISFIFO(os.stat(self.path('pipe')).st_mode))
 
     def test_a_full_device_as_the_output(self):
@@ -179,11 +179,12 @@ class Failures(harness.CommandTest):
         os.chmod(self.folder, 0o755)
 
     def test_a_reader_that_goes_away(self):
-        with subprocess.Popen([PROGRAM, 'bounds', PEPTIDE], stdout=subprocess.PIPE, stderr=subprocess.PIPE) as process:
-            process.stdout.close()
-            err = process.stderr.read().decode()
-            self.assertEqual(process.wait(timeout=60 * harness.SLOWER), 3)
-            self.assertIn('trammel: ', err)
+        process = self.start([PROGRAM, 'bounds', PEPTIDE])
+        process.stdout.close()
+        process.stdout = None
+        err = process.communicate(timeout=60 * harness.SLOWER)[1].decode()
+        self.assertEqual(process.returncode, 3)
+        self.assertIn('trammel: ', err)
 
     def test_a_format_that_cannot_hold_the_molecule(self):
         """PDB format 3.3 has one column for the chain."""
@@ -199,14 +200,14 @@ class Signals(harness.CommandTest):
         """Send a signal in the middle of the work: 128 + signal, and no file but the input."""
         residues = ' '.join(['ALA', 'LEU', 'LYS', 'SER', 'PHE'] * 20)
         self.write('long.sheet', f'sheet 1\nsequence A 1 {residues}\n')
-        with subprocess.Popen([PROGRAM, *arguments], cwd=self.folder, stdout=subprocess.PIPE, stderr=subprocess.PIPE) as process:
-            time.sleep(2)
-            self.assertIsNone(process.poll(), 'it ended before the signal')
-            start = time.time()
-            process.send_signal(number)
-            out, err = process.communicate(timeout=60 * harness.SLOWER)
-            self.assertEqual(process.returncode, 128 + number, err)
-            self.assertLess(time.time() - start, 5 * harness.SLOWER)
+        process = self.start([PROGRAM, *arguments])
+        time.sleep(2)
+        self.assertIsNone(process.poll(), 'it ended before the signal')
+        start = time.time()
+        process.send_signal(number)
+        out, err = process.communicate(timeout=60 * harness.SLOWER)
+        self.assertEqual(process.returncode, 128 + number, err)
+        self.assertLess(time.time() - start, 5 * harness.SLOWER)
         self.assertEqual(out, b'')
         self.assertEqual(os.listdir(self.folder), ['long.sheet'])
 
@@ -217,10 +218,10 @@ class Signals(harness.CommandTest):
         self.stopped(signal.SIGTERM, ['build', 'long.sheet', '-n', '500', '--effort', '20', '-o', 'm.cif.gz'])
 
     def test_interrupt_while_waiting_for_standard_input(self):
-        with subprocess.Popen([PROGRAM, 'check', '-'], stdin=subprocess.PIPE, stdout=subprocess.PIPE, stderr=subprocess.PIPE) as process:
-            time.sleep(0.5 * harness.SLOWER)
-            process.send_signal(signal.SIGINT)
-            self.assertEqual(process.wait(timeout=20), 130)
+        process = self.start([PROGRAM, 'check', '-'], stdin=subprocess.PIPE)
+        time.sleep(0.5 * harness.SLOWER)
+        process.send_signal(signal.SIGINT)
+        self.assertEqual(process.wait(timeout=20), 130)
 
 
 if __name__ == '__main__':

@@ -1,6 +1,6 @@
 /* A worked example of libtrammel: read a problem, look at its limits, prove a contradiction, build an ensemble, write it.
  *
- *     cc example.c $(pkg-config --cflags --libs trammel) -o example && ./example FOLDER
+ *     cc example.c $(pkg-config --cflags --libs trammel) -lm -o example && ./example FOLDER
  *
  * It writes two small sheets of its own into FOLDER and exits with 0 when all went as told here.
  */
