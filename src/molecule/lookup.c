@@ -6,7 +6,7 @@
 
 #include "base/vector.h"
 
-/* Contents: conditions - bonds - angles - charges and atoms */
+/* Contents: conditions - bonds - angles - charges and atoms - the graph of bonds */
 
 enum { NAME_ROOM = 48 };
 
@@ -146,4 +146,20 @@ int32_t tml_lookup_atom(const tml_making *making, int32_t r, const char *name, s
         if (strncmp(making->atoms[i].name, name, length) == 0 && making->atoms[i].name[length] == '\0')
             return making->atoms[i].present ? making->atoms[i].made : -1;
     return -1;
+}
+
+/* ---- the graph of bonds ---- */
+
+bool tml_bonded(const tml_molecule *molecule, int32_t a, int32_t b) {
+    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
+        if (molecule->neighbours[k] == b) return true;
+    return false;
+}
+
+int32_t tml_degree(const tml_molecule *molecule, int32_t atom) {
+    return molecule->neighbour_first[atom + 1] - molecule->neighbour_first[atom];
+}
+
+bool tml_is_bare(const tml_making *making, int32_t atom) {
+    return making->residues[making->molecule->atoms[atom].residue].form == NULL;
 }

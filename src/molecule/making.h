@@ -74,6 +74,11 @@ int8_t tml_lookup_charge(const tml_making *making, int32_t residue, const char *
 int32_t tml_lookup_atom(const tml_making *making, int32_t residue, const char *name, size_t length); /* made atom or -1 */
 tml_bond_kind tml_kind_between(const tml_making *making, int32_t a, int32_t b);              /* of bonded atoms */
 
+/* lookup.c too: the molecule's bonds as a graph */
+bool tml_bonded(const tml_molecule *molecule, int32_t a, int32_t b);
+int32_t tml_degree(const tml_molecule *molecule, int32_t atom);
+bool tml_is_bare(const tml_making *making, int32_t atom); /* of no template */
+
 /* terms.c: planes, angles, centres, torsions of the made atoms */
 tml_status tml_make_terms(tml_making *making);
 

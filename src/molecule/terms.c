@@ -29,20 +29,6 @@ tml_status tml_make_terms(tml_making *making) {
     return status;
 }
 
-static int32_t degree_of(const tml_molecule *molecule, int32_t atom) {
-    return molecule->neighbour_first[atom + 1] - molecule->neighbour_first[atom];
-}
-
-static bool is_bare(const tml_making *making, int32_t atom) {
-    return making->residues[making->molecule->atoms[atom].residue].form == NULL;
-}
-
-static bool bonded(const tml_molecule *molecule, int32_t a, int32_t b) {
-    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
-        if (molecule->neighbours[k] == b) return true;
-    return false;
-}
-
 /* ---- planes and peptides ---- */
 
 static tml_status add_plane(tml_making *making, int32_t r, const char *names, int32_t first_of_residue);
@@ -127,8 +113,8 @@ static tml_status add_plane(tml_making *making, int32_t r, const char *names, in
     for (int32_t i = 0; i < count; i++) {
         molecule->plane_atoms[molecule->plane_atom_count++] = atoms[i];
         int32_t within = 0;
-        for (int32_t j = 0; j < count; j++) within += bonded(molecule, atoms[i], atoms[j]);
-        if (within >= 2 && degree_of(molecule, atoms[i]) <= 3) making->planar[atoms[i]] = true;
+        for (int32_t j = 0; j < count; j++) within += tml_bonded(molecule, atoms[i], atoms[j]);
+        if (within >= 2 && tml_degree(molecule, atoms[i]) <= 3) making->planar[atoms[i]] = true;
     }
     return TML_OK;
 }
@@ -137,15 +123,16 @@ static tml_status add_plane(tml_making *making, int32_t r, const char *names, in
 static void mark_trigonal(tml_making *making) {
     const tml_molecule *molecule = making->molecule;
     for (int32_t i = 0; i < molecule->atom_count; i++)
-        if (!is_bare(making, i) && molecule->atoms[i].element == 6 && degree_of(molecule, i) == 3) making->planar[i] = true;
+        if (!tml_is_bare(making, i) && molecule->atoms[i].element == 6 && tml_degree(molecule, i) == 3)
+            making->planar[i] = true;
     for (int32_t i = 0; i < molecule->bond_count; i++) {
         int32_t a = molecule->bonds[i].a, b = molecule->bonds[i].b;
-        if (making->bond_kinds[i] != TML_BOND_LINK || is_bare(making, a) || is_bare(making, b)) continue;
+        if (making->bond_kinds[i] != TML_BOND_LINK || tml_is_bare(making, a) || tml_is_bare(making, b)) continue;
         if (molecule->atoms[a].element == 7 && molecule->atoms[b].element == 6 && making->planar[b] &&
-            degree_of(molecule, a) == 3)
+            tml_degree(molecule, a) == 3)
             making->planar[a] = true;
         if (molecule->atoms[b].element == 7 && molecule->atoms[a].element == 6 && making->planar[a] &&
-            degree_of(molecule, b) == 3)
+            tml_degree(molecule, b) == 3)
             making->planar[b] = true;
     }
 }
@@ -164,8 +151,8 @@ static tml_status make_angles(tml_making *making) {
     if (molecule->angle_first == NULL) return tml_no_memory(making->error);
     for (int32_t i = 0; i < molecule->atom_count; i++) {
         molecule->angle_first[i] = molecule->angle_count;
-        int32_t degree = degree_of(molecule, i);
-        tml_status status = is_bare(making, i) || degree < 2 || degree > TML_ARMS_MAX ? TML_OK : add_angles(making, i);
+        int32_t degree = tml_degree(molecule, i);
+        tml_status status = tml_is_bare(making, i) || degree < 2 || degree > TML_ARMS_MAX ? TML_OK : add_angles(making, i);
         if (status != TML_OK) return status;
     }
     molecule->angle_first[molecule->atom_count] = molecule->angle_count;
@@ -175,7 +162,7 @@ static tml_status make_angles(tml_making *making) {
 static tml_status add_angles(tml_making *making, int32_t centre) {
     tml_molecule *molecule = making->molecule;
     const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[centre]];
-    int count = degree_of(molecule, centre);
+    int count = tml_degree(molecule, centre);
     double angle[TML_ARMS_MAX][TML_ARMS_MAX] = {{0}};
     for (int i = 0; i < count; i++)
         for (int j = i + 1; j < count; j++) angle[i][j] = angle[j][i] = tml_lookup_angle(making, arm[i], centre, arm[j]);
@@ -197,8 +184,8 @@ static void rest_of_arms(const tml_molecule *molecule, tml_centre *centre);
 static tml_status make_centres(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     for (int32_t i = 0; i < molecule->atom_count; i++) {
-        int32_t degree = degree_of(molecule, i), r = molecule->atoms[i].residue;
-        if (is_bare(making, i) || making->planar[i] || degree < 3 || degree > TML_ARMS_MAX) continue;
+        int32_t degree = tml_degree(molecule, i), r = molecule->atoms[i].residue;
+        if (tml_is_bare(making, i) || making->planar[i] || degree < 3 || degree > TML_ARMS_MAX) continue;
         if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1, sizeof *molecule->centres))
             return tml_no_memory(making->error);
         const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[i]];
@@ -290,7 +277,8 @@ static tml_status add_user_planes(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     const tml_outline *outline = making->outline;
     size_t *seen = tml_alloc((size_t)molecule->atom_count, sizeof *seen); /* the last plane that named an atom, from 1 */
-    tml_status status = seen == NULL ? tml_no_memory(making->error) : TML_OK;
+    if (seen == NULL) return tml_no_memory(making->error);
+    tml_status status = TML_OK;
     for (size_t i = 0; i < outline->plane_count && status == TML_OK; i++)
         status = add_user_plane(making, &outline->planes[i], seen, i + 1);
     free(seen);

@@ -21,16 +21,6 @@ typedef struct reference {
 static reference know_bond(const tml_making *making, int32_t bond);
 static double carry_over(const tml_making *making, const tml_bond *bond, const reference *known, int32_t a, int32_t d);
 
-static bool bonded(const tml_molecule *molecule, int32_t a, int32_t b) {
-    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
-        if (molecule->neighbours[k] == b) return true;
-    return false;
-}
-
-static bool is_bare(const tml_making *making, int32_t atom) {
-    return making->residues[making->molecule->atoms[atom].residue].form == NULL;
-}
-
 /* ---- one bond after the other ---- */
 
 tml_status tml_make_torsions(tml_making *making) {
@@ -40,12 +30,12 @@ tml_status tml_make_torsions(tml_making *making) {
     for (int32_t i = 0; i < molecule->bond_count; i++) {
         molecule->torsion_first[i] = molecule->torsion_count;
         const tml_bond *bond = &molecule->bonds[i];
-        if (is_bare(making, bond->a) || is_bare(making, bond->b)) continue;
+        if (tml_is_bare(making, bond->a) || tml_is_bare(making, bond->b)) continue;
         reference known = know_bond(making, i);
         for (int32_t j = molecule->neighbour_first[bond->a]; j < molecule->neighbour_first[bond->a + 1]; j++)
             for (int32_t k = molecule->neighbour_first[bond->b]; k < molecule->neighbour_first[bond->b + 1]; k++) {
                 int32_t a = molecule->neighbours[j], d = molecule->neighbours[k];
-                if (a == bond->b || d == bond->a || a == d || bonded(molecule, a, d)) continue;
+                if (a == bond->b || d == bond->a || a == d || tml_bonded(molecule, a, d)) continue;
                 if (!tml_grow(&molecule->torsions, &making->torsion_room, (size_t)molecule->torsion_count + 1,
                               sizeof *molecule->torsions))
                     return tml_no_memory(making->error);
@@ -133,10 +123,10 @@ static bool of_ring(const tml_making *making, const tml_bond *bond, reference *k
             for (int32_t k = first[a]; k < first[a + 1]; k++) {
                 int32_t e = to[k];
                 if (e == bond->a || e == bond->b || !making->planar[e]) continue;
-                bool closes = bonded(molecule, e, d); /* five */
+                bool closes = tml_bonded(molecule, e, d); /* five */
                 for (int32_t l = first[e]; l < first[e + 1] && !closes; l++)
                     closes = to[l] != bond->a && to[l] != bond->b && to[l] != a && making->planar[to[l]] &&
-                             bonded(molecule, to[l], d);
+                             tml_bonded(molecule, to[l], d);
                 if (!closes) continue;
                 *known = (reference){a, d, TML_TORSION_FIXED, true, 0, PLANAR_TOLERANCE};
                 return true;
@@ -148,7 +138,7 @@ static bool of_ring(const tml_making *making, const tml_bond *bond, reference *k
 /* sp3: carbon and nitrogen with three or four arms that are not in a plane, oxygen and sulphur with two. */
 static bool is_tetrahedral(const tml_making *making, int32_t atom) {
     const tml_molecule *molecule = making->molecule;
-    int32_t degree = molecule->neighbour_first[atom + 1] - molecule->neighbour_first[atom];
+    int32_t degree = tml_degree(molecule, atom);
     if (making->planar[atom] || degree > TML_ARMS_MAX) return false;
     return degree >= 3 || (degree == 2 && (molecule->atoms[atom].element == 8 || molecule->atoms[atom].element == 16));
 }
