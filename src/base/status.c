@@ -31,10 +31,6 @@ tml_status tml_fail_at(tml_error *error, tml_status status, const char *file, lo
     return status;
 }
 
-tml_status tml_no_memory(tml_error *error) {
-    return tml_fail(error, TML_NO_MEMORY, "out of memory");
-}
-
 const char *tml_version(void) {
     return TML_VERSION;
 }

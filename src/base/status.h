@@ -15,7 +15,10 @@ tml_status tml_fail(tml_error *error, tml_status status, const char *format, ...
 tml_status tml_fail_at(tml_error *error, tml_status status, const char *file, long line, long column, const char *format, ...)
     __attribute__((format(printf, 6, 7)));
 
-/* TML_NO_MEMORY with the usual message. */
-tml_status tml_no_memory(tml_error *error);
+/* TML_NO_MEMORY with the usual message; inline, so that static analysis sees that it is never TML_OK. */
+static inline tml_status tml_no_memory(tml_error *error) {
+    tml_fail(error, TML_NO_MEMORY, "out of memory");
+    return TML_NO_MEMORY;
+}
 
 #endif
