@@ -1,0 +1,113 @@
+#include "refine/anneal.h"
+
+#include <math.h>
+#include <stddef.h>
+
+#include "refine/minimise.h"
+
+/* A stretch of dynamics in which temperature changes linearly and every weight geometrically from its start to its end.
+ * Energies in kcal/mol by the weights' scale, lengths in Å, masses 1. */
+typedef struct phase {
+    int steps;
+    double hot, cold;        /* kT at its start and end */
+    tml_weights from, to;
+    double skin;             /* Å, of the neighbour list */
+    int list_every;          /* steps between lists at the least; 0: only when an atom has moved by half the skin */
+} phase;
+
+
+#define SOFT                                                                                                                  \
+    {                                                                                                                         \
+        .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 15, .restraint_bend = 1.0,               \
+        .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8                                  \
+    }
+#define DEGREE_ (3.14159265358979323846 / 180.0)
+
+static const phase SCHEDULE[] = {
+    {.steps = 3000, .hot = 12, .cold = 12, .skin = 1.5, .list_every = 8,
+     .from = SOFT,
+     .to = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 1.0,
+            .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8}},
+    {.steps = 6000, .hot = 12, .cold = 0.02, .skin = 1.0, .list_every = 0,
+     .from = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 0.5,
+              .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8},
+     .to = {.bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40, .restraint = 30, .restraint_bend = 0.5,
+            .dihedral = 200, .dihedral_bend = 20 * DEGREE_, .repulsion = 20, .radius_scale = 1.0}},
+};
+
+const tml_weights TML_FINAL_WEIGHTS = {.bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
+                                       .restraint = 60, .restraint_bend = 0.5, .dihedral = 200,
+                                       .dihedral_bend = 20 * DEGREE_, .repulsion = 30, .radius_scale = 1.0};
+
+/* Step with bonds of k = 1000; it grows as bonds soften. */
+static const double STEP_AT_1000 = 0.012;
+/* No atom moves farther than this in one step, Å. */
+static const double LONGEST = 0.4;
+/* Share of the way to the wanted kinetic energy that one step's rescaling goes. */
+static const double COUPLING = 0.2;
+enum { SETTLE_STEPS = 60 };
+
+/* Every weight in `from` and `to` is a double; a table of their places keeps the interpolation in one loop. */
+static tml_weights between(const tml_weights *from, const tml_weights *to, double share) {
+    tml_weights out;
+    const double *a = (const double *)from, *b = (const double *)to;
+    double *c = (double *)&out;
+    for (size_t i = 0; i < sizeof out / sizeof *c; i++) c[i] = a[i] > 0 && b[i] > 0 ? a[i] * pow(b[i] / a[i], share) : b[i];
+    return out;
+}
+
+static void heat(tml_scene *scene, double kt, tml_pcg *pcg) {
+    double spread = sqrt(kt);
+    for (int32_t i = 0; i < scene->refiner->atom_count; i++)
+        for (int k = 0; k < 3; k++) scene->v[i][k] = spread * tml_pcg_normal(pcg);
+}
+
+/* One leapfrog step with velocities drawn towards kT. */
+TML_WIDE static void step_once(tml_scene *scene, double dt, double kt) {
+    int32_t n = scene->refiner->atom_count;
+    tml_v4 *x = scene->x, *v = scene->v;
+    const tml_v4 *f = scene->f;
+    tml_v4 total = TML_V4(0);
+    for (int32_t i = 0; i < n; i++) {
+        v[i] += dt * f[i];
+        total += v[i] * v[i];
+    }
+    double now = (total[0] + total[1] + total[2]) / (3.0 * n);
+    double scale = now > 0 ? sqrt(fmax(1 + COUPLING * (kt / now - 1), 0.25)) : 1;
+    const double fastest = LONGEST / dt;
+    for (int32_t i = 0; i < n; i++) {
+        tml_v4 w = v[i] * scale, square = w * w;
+        double speed = square[0] + square[1] + square[2];
+        if (speed > fastest * fastest) w *= fastest / sqrt(speed);
+        v[i] = w;
+        x[i] += dt * w;
+    }
+}
+
+static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, const volatile int *stop) {
+    int steps = (int)ceil(plan->steps * effort);
+    tml_weights weights = plan->from;
+    for (int step = 0; step < steps; step++) {
+        if (stop != NULL && *stop) return TML_INTERRUPTED;
+        double share = (double)step / steps;
+        if (step % 20 == 0) weights = between(&plan->from, &plan->to, share);
+        tml_status status = TML_OK;
+        if (plan->list_every > 0)
+            status = step % plan->list_every == 0 ? tml_scene_list(scene, plan->skin) : TML_OK;
+        else
+            status = tml_scene_relist(scene, plan->skin);
+        if (status != TML_OK) return status;
+        tml_energy(scene, &weights);
+        step_once(scene, STEP_AT_1000 / sqrt(weights.bond / 1000), plan->hot + share * (plan->cold - plan->hot));
+    }
+    return TML_OK;
+}
+
+tml_status tml_anneal(tml_scene *scene, double effort, tml_pcg *pcg, const volatile int *stop) {
+    double energy;
+    tml_status status = tml_minimise(scene, &SCHEDULE[0].from, SETTLE_STEPS, 0.0, stop, &energy);
+    heat(scene, SCHEDULE[0].hot, pcg);
+    for (size_t i = 0; status == TML_OK && i < sizeof SCHEDULE / sizeof *SCHEDULE; i++)
+        status = run_phase(scene, &SCHEDULE[i], effort, stop);
+    return status;
+}

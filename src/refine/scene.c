@@ -1,0 +1,233 @@
+/* scene.c: a thread's arrays, and the neighbour list over a grid of cells.
+ *
+ * The list holds the pairs that are closer than their own contact distance plus the skin: hydrogens, half of all atoms, have
+ * short contacts, so this is a third of what one common cutoff would list.
+ */
+#include "refine/scene.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/memory.h"
+
+/* Atoms sorted by cell, x fastest, so that three neighbouring cells of a row are one run of memory. */
+struct tml_cells {
+    int32_t *first;          /* of each cell, and one past the last */
+    size_t first_capacity;
+    int32_t *cell_of, *order; /* per atom; sorted */
+    float *x, *y, *z;        /* sorted */
+    float *square;           /* distances² of one atom from a run, and of everything in it */
+};
+
+enum { CELL_LIMIT = 1 << 21 };
+
+tml_status tml_scene_new(const tml_refiner *refiner, tml_scene **out, tml_error *error) {
+    size_t count = (size_t)refiner->atom_count + 2;
+    tml_scene *scene = tml_alloc(1, sizeof *scene);
+    *out = scene;
+    if (scene == NULL) return tml_no_memory(error);
+    scene->refiner = refiner;
+    scene->x = tml_alloc_aligned(count, sizeof *scene->x);
+    scene->f = tml_alloc_aligned(count, sizeof *scene->f);
+    scene->v = tml_alloc_aligned(count, sizeof *scene->v);
+    scene->listed_at = tml_alloc_aligned(count, sizeof *scene->listed_at);
+    scene->cells = tml_alloc(1, sizeof *scene->cells);
+    bool room = scene->x != NULL && scene->f != NULL && scene->v != NULL && scene->listed_at != NULL && scene->cells != NULL;
+    if (room) {
+        struct tml_cells *cells = scene->cells;
+        cells->cell_of = tml_alloc(count, sizeof *cells->cell_of);
+        cells->order = tml_alloc(count, sizeof *cells->order);
+        cells->x = tml_alloc(count, sizeof *cells->x);
+        cells->y = tml_alloc(count, sizeof *cells->y);
+        cells->z = tml_alloc(count, sizeof *cells->z);
+        cells->square = tml_alloc(count, sizeof *cells->square);
+        room = cells->cell_of != NULL && cells->order != NULL && cells->x != NULL && cells->y != NULL && cells->z != NULL &&
+               cells->square != NULL;
+    }
+    if (!room) {
+        tml_scene_free(scene);
+        *out = NULL;
+        return tml_no_memory(error);
+    }
+    for (size_t i = 0; i < count; i++) scene->x[i] = scene->v[i] = scene->f[i] = scene->listed_at[i] = TML_V4(0);
+    scene->x[count - 1][0] = 1.0;
+    scene->skin = -1;
+    return TML_OK;
+}
+
+void tml_scene_free(tml_scene *scene) {
+    if (scene == NULL) return;
+    if (scene->cells != NULL) {
+        free(scene->cells->first);
+        free(scene->cells->cell_of);
+        free(scene->cells->order);
+        free(scene->cells->x);
+        free(scene->cells->y);
+        free(scene->cells->z);
+        free(scene->cells->square);
+    }
+    free(scene->cells);
+    free(scene->x);
+    free(scene->f);
+    free(scene->v);
+    free(scene->listed_at);
+    free(scene->near);
+    free(scene->near_contact);
+    free(scene);
+}
+
+void tml_scene_load(tml_scene *scene, const double *xyz) {
+    for (int32_t i = 0; i < scene->refiner->atom_count; i++) scene->x[i] = (tml_v4){xyz[3 * i], xyz[3 * i + 1], xyz[3 * i + 2], 0};
+    scene->skin = -1;
+}
+
+void tml_scene_store(const tml_scene *scene, double *xyz) {
+    for (int32_t i = 0; i < scene->refiner->atom_count; i++)
+        for (int k = 0; k < 3; k++) xyz[3 * i + k] = scene->x[i][k];
+}
+
+/* ---- the neighbour list ---- */
+
+typedef struct grid { double low[3], size; int32_t cells[3]; } grid;
+
+/* Cells at least `reach` wide over the atoms' box; wider ones where the box is so large that there would be too many. */
+static grid lay_grid(const tml_scene *scene, double reach) {
+    grid g = {.size = reach > 0.5 ? reach : 0.5};
+    double high[3] = {-INFINITY, -INFINITY, -INFINITY};
+    for (int k = 0; k < 3; k++) g.low[k] = INFINITY;
+    for (int32_t i = 0; i < scene->refiner->atom_count; i++)
+        for (int k = 0; k < 3; k++) {
+            double at = scene->x[i][k];
+            if (at < g.low[k]) g.low[k] = at;
+            if (at > high[k]) high[k] = at;
+        }
+    for (;;) {
+        double total = 1;
+        for (int k = 0; k < 3; k++) {
+            double span = fmin(fmax(floor((high[k] - g.low[k]) / g.size) + 1, 1), (double)CELL_LIMIT);
+            g.cells[k] = (int32_t)span;
+            total *= span;
+        }
+        if (total <= CELL_LIMIT) return g;
+        g.size *= 1.5;
+    }
+}
+
+static int32_t cell_along(const grid *g, int axis, double at) {
+    double cell = (at - g->low[axis]) / g->size;
+    if (!(cell >= 0)) return 0; /* not a number, too */
+    return cell < g->cells[axis] ? (int32_t)cell : g->cells[axis] - 1;
+}
+
+/* Counting sort of the atoms by cell. */
+static bool sort_atoms(tml_scene *scene, const grid *g) {
+    struct tml_cells *cells = scene->cells;
+    int32_t count = scene->refiner->atom_count;
+    size_t total = (size_t)g->cells[0] * (size_t)g->cells[1] * (size_t)g->cells[2];
+    if (!tml_grow(&cells->first, &cells->first_capacity, total + 2, sizeof *cells->first)) return false;
+    memset(cells->first, 0, (total + 2) * sizeof *cells->first);
+    for (int32_t i = 0; i < count; i++) {
+        const tml_v4 *at = &scene->x[i];
+        int32_t cell = (cell_along(g, 2, (*at)[2]) * g->cells[1] + cell_along(g, 1, (*at)[1])) * g->cells[0] + cell_along(g, 0, (*at)[0]);
+        cells->cell_of[i] = cell;
+        cells->first[cell + 2]++;
+    }
+    for (size_t c = 2; c < total + 2; c++) cells->first[c] += cells->first[c - 1];
+    for (int32_t i = 0; i < count; i++) {
+        int32_t slot = cells->first[cells->cell_of[i] + 1]++;
+        cells->order[slot] = i;
+        cells->x[slot] = (float)scene->x[i][0];
+        cells->y[slot] = (float)scene->x[i][1];
+        cells->z[slot] = (float)scene->x[i][2];
+    }
+    return true;
+}
+
+static bool silent(const tml_refiner *refiner, int32_t a, int32_t b) {
+    int32_t low = a < b ? a : b, high = a < b ? b : a, ahead = high - low;
+    if (ahead <= 128) return refiner->near_mask[low][(ahead - 1) / 64] >> ((ahead - 1) % 64) & 1;
+    for (int32_t i = refiner->far_first[low]; i < refiner->far_first[low + 1]; i++)
+        if (refiner->far[i] == high) return true;
+    return false;
+}
+
+TML_WIDE static void squares(const struct tml_cells *cells, int32_t slot, int32_t begin, int32_t end, float *square) {
+    float x = cells->x[slot], y = cells->y[slot], z = cells->z[slot];
+    const float *restrict xs = cells->x, *restrict ys = cells->y, *restrict zs = cells->z;
+    for (int32_t i = begin; i < end; i++) {
+        float dx = xs[i] - x, dy = ys[i] - y, dz = zs[i] - z;
+        square[i - begin] = dx * dx + dy * dy + dz * dz;
+    }
+}
+
+/* List the pairs of the atom in `slot` with the run of slots [begin, end). */
+static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end, float skin, float cut) {
+    const tml_refiner *refiner = scene->refiner;
+    const struct tml_cells *cells = scene->cells;
+    if (begin >= end) return true;
+    squares(cells, slot, begin, end, cells->square);
+    int32_t a = cells->order[slot];
+    const float *contact = &refiner->contact[(size_t)refiner->contact_class[a] * (size_t)refiner->class_count];
+    for (int32_t i = begin; i < end; i++) {
+        float square = cells->square[i - begin];
+        if (square >= cut) continue;
+        int32_t b = cells->order[i];
+        float touch = contact[refiner->contact_class[b]], reach = touch + skin;
+        if (touch <= 0 || square >= reach * reach || silent(refiner, a, b)) continue;
+        if ((size_t)scene->near_count + 4 > scene->near_capacity) {
+            size_t need = (size_t)scene->near_count + 4;
+            if (!tml_grow(&scene->near, &scene->near_capacity, need, sizeof *scene->near)) return false;
+            if (!tml_grow(&scene->near_contact, &scene->contact_capacity, need, sizeof *scene->near_contact)) return false;
+        }
+        scene->near[scene->near_count] = (tml_pair){a, b};
+        scene->near_contact[scene->near_count++] = touch;
+    }
+    return true;
+}
+
+tml_status tml_scene_list(tml_scene *scene, double skin) {
+    const tml_refiner *refiner = scene->refiner;
+    const struct tml_cells *cells = scene->cells;
+    double reach = refiner->contact_max + skin;
+    float cut = (float)(reach * reach);
+    scene->near_count = 0;
+    scene->skin = skin;
+    memcpy(scene->listed_at, scene->x, ((size_t)refiner->atom_count + 2) * sizeof *scene->x);
+    if (refiner->contact_max <= 0 || refiner->atom_count == 0) return TML_OK;
+    grid g = lay_grid(scene, reach);
+    if (!sort_atoms(scene, &g)) return TML_NO_MEMORY;
+    const int32_t nx = g.cells[0], ny = g.cells[1], nz = g.cells[2], *first = cells->first;
+    for (int32_t z = 0; z < nz; z++)
+        for (int32_t y = 0; y < ny; y++)
+            for (int32_t x = 0; x < nx; x++) {
+                int32_t row = (z * ny + y) * nx, last = x + 1 < nx ? x + 1 : x, before = x > 0 ? x - 1 : x;
+                for (int32_t slot = first[row + x]; slot < first[row + x + 1]; slot++) {
+                    /* The rest of the own cell and the next one of the row; then the rows ahead. */
+                    bool room = list_run(scene, slot, slot + 1, first[row + last + 1], (float)skin, cut);
+                    for (int32_t dz = 0; room && dz <= 1 && z + dz < nz; dz++)
+                        for (int32_t dy = dz == 0 ? 1 : -1; room && dy <= 1; dy++) {
+                            if (y + dy < 0 || y + dy >= ny) continue;
+                            int32_t other = ((z + dz) * ny + y + dy) * nx;
+                            room = list_run(scene, slot, first[other + before], first[other + last + 1], (float)skin, cut);
+                        }
+                    if (!room) return TML_NO_MEMORY;
+                }
+            }
+    while (scene->near_count % 4 != 0) {
+        scene->near[scene->near_count] = (tml_pair){refiner->atom_count, refiner->atom_count + 1};
+        scene->near_contact[scene->near_count++] = 0;
+    }
+    return TML_OK;
+}
+
+tml_status tml_scene_relist(tml_scene *scene, double skin) {
+    bool stale = scene->skin < 0;
+    double allowed = scene->skin * scene->skin / 4;
+    for (int32_t i = 0; !stale && i < scene->refiner->atom_count; i++) {
+        tml_v4 d = scene->x[i] - scene->listed_at[i];
+        d *= d;
+        stale = d[0] + d[1] + d[2] > allowed;
+    }
+    return stale ? tml_scene_list(scene, skin) : TML_OK;
+}

@@ -1,0 +1,48 @@
+/* scene.h: one thread's coordinates, forces and neighbour list while it refines a model.
+ *
+ * A scene owns its arrays; the refiner it was made for is borrowed. Atoms n and n+1 are dummies, 1 Å apart, for padding.
+ */
+#ifndef TML_SCENE_H
+#define TML_SCENE_H
+
+#include "base/target.h"
+#include "refine/terms.h"
+
+typedef struct tml_scene {
+    const tml_refiner *refiner;
+    tml_v4 *x, *f, *v;       /* n + 2 positions (Å), forces and velocities */
+    tml_v4 *listed_at;       /* positions when the neighbour list was made */
+    tml_pair *near;          /* pairs that may touch before the next list; padded to a multiple of four */
+    float *near_contact;     /* their contact distances, Å */
+    int32_t near_count;      /* with padding */
+    size_t near_capacity, contact_capacity;
+    double skin;             /* how much farther than contact the list reaches, Å */
+    struct tml_cells *cells; /* work space of neighbour.c */
+} tml_scene;
+
+tml_status tml_scene_new(const tml_refiner *refiner, tml_scene **out, tml_error *error);
+void tml_scene_free(tml_scene *scene);
+
+void tml_scene_load(tml_scene *scene, const double *xyz);       /* positions from atom_count*3 doubles */
+void tml_scene_store(const tml_scene *scene, double *xyz);
+
+/* Make the neighbour list for the present positions, reaching `skin` Å beyond contact. TML_OK or TML_NO_MEMORY. */
+tml_status tml_scene_list(tml_scene *scene, double skin);
+
+/* The same, only if some atom has moved by more than half the skin since the last list. */
+tml_status tml_scene_relist(tml_scene *scene, double skin);
+
+/* Weights of the error function's terms, and where some bend from quadratic to linear. */
+typedef struct tml_weights {
+    double bond, angle, planar;              /* k of k·(d - d0)² */
+    double volume, flat;                     /* k of k·(V - V0)², V in Å³ */
+    double plane;                            /* k of k·Σ (distance from the best plane)²; 0 leaves the term out */
+    double restraint, restraint_bend;        /* k·δ², linear beyond bend Å */
+    double dihedral, dihedral_bend;          /* k·δ², linear beyond bend radians */
+    double repulsion, radius_scale;          /* k·(scale·contact - d)² where closer */
+} tml_weights;
+
+/* The error function at the scene's positions; forces (its negative gradient) go to scene->f. */
+double tml_energy(tml_scene *scene, const tml_weights *weights);
+
+#endif

@@ -1,0 +1,54 @@
+/* terms.h: the error function's terms as flat arrays, made once per problem and read by every thread.
+ *
+ * A tml_refiner owns all its arrays. Pair arrays are padded to multiples of four with pairs of two dummy atoms, n and n+1,
+ * which stand 1 Å apart and feel no force. Lengths in Å, angles in radians.
+ */
+#ifndef TML_TERMS_H
+#define TML_TERMS_H
+
+#include "refine/refine.h"
+
+/* Two atoms at a wanted distance. */
+typedef struct tml_pair { int32_t a, b; } tml_pair;
+typedef struct tml_spring_set { tml_pair *pairs; double *length; int32_t count, capacity; } tml_spring_set; /* padded */
+
+/* A centre with three or four arms and the wanted signed volumes of its triples (0,1,2), (0,1,3), (0,2,3), (1,2,3). */
+typedef struct tml_volume_term { int32_t centre, arms[4]; double volume[4]; } tml_volume_term;
+
+/* A distance restraint: its pairs stand in pair arrays from first_pair on, padded to a multiple of four. */
+typedef struct tml_sum_term {
+    int32_t first_pair, pair_count; /* pair_count without padding */
+    double lower, upper, weight;
+    double share;                   /* 1, or 1 / number of pairs where the sum is an average */
+    int32_t combination;            /* within its choice */
+} tml_sum_term;
+
+/* A restraint whose alternatives carry combinations: sums [first_sum, first_sum + sum_count); the combination of least error
+ * counts. */
+typedef struct tml_choice_term { int32_t first_sum, sum_count; } tml_choice_term;
+
+typedef struct tml_torsion_term { int32_t first_interval, interval_count; double weight; } tml_torsion_term;
+
+/* A backbone's phi and psi: atoms C N CA C N; for the preference of usual regions. */
+typedef struct tml_backbone_term { int32_t atoms[5]; bool glycine, proline; } tml_backbone_term;
+
+struct tml_refiner {
+    const tml_problem *problem;
+    int32_t atom_count;
+    tml_spring_set bonds, angles, planars;
+    tml_volume_term *volumes;  int32_t volume_count;
+    tml_volume_term *flats;    int32_t flat_count;   /* three arms, volume 0 */
+    tml_sum_term *sums;        int32_t sum_count;    /* single restraints first, then those of choices */
+    int32_t single_count;
+    tml_pair *sum_pairs;       int32_t sum_pair_count;
+    tml_choice_term *choices;   int32_t choice_count;
+    tml_torsion_term *torsions; int32_t torsion_count;
+    tml_backbone_term *backbones; int32_t backbone_count;
+    uint8_t *contact_class;    int32_t class_count;  /* per atom */
+    float *contact;            /* class_count² contact distances */
+    float contact_max;
+    uint64_t (*near_mask)[2];  /* bit d-1 of atom i: atom i+d is not repelled */
+    int32_t *far_first, *far;  /* the same for partners 129 and more ahead: far[far_first[i] … far_first[i+1]-1] */
+};
+
+#endif
