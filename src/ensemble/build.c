@@ -1,0 +1,317 @@
+/* build.c: the way from a problem to an ensemble.
+ *
+ *   tml_build       prepares the limits, runs the trials, selects
+ *   trials          taken in order by the threads, judged in order under one lock
+ *   one trial       metrize, embed, refine both images
+ *   selection       the best first
+ */
+#include "ensemble/build.h"
+
+#include <cblas.h>
+#include <math.h>
+#include <omp.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/clock.h"
+#include "base/memory.h"
+#include "embed/embed.h"
+#include "ensemble/cis.h"
+#include "refine/refine.h"
+#include "sample/metrize.h"
+
+extern void openblas_set_num_threads(int count);
+extern int openblas_get_num_threads(void);
+
+enum { MAJORIZE_STEPS = 10, SQUEEZE_STEPS = 20, MODELS_DEFAULT = 20, TRIALS_PER_MODEL = 5 };
+/* What is left of the fourth coordinate after one squeezing step. */
+static const double SQUEEZE = 0.8;
+/* Memory beside the matrices, bytes. */
+static const size_t OTHER_MEMORY = 100u << 20;
+
+/* What all threads of a run share. Fields below the lock's line are written only by its holder. */
+typedef struct run {
+    const tml_problem *problem;
+    const tml_build_options *options;
+    const tml_bounds *bounds;
+    const tml_refiner *refiner;
+    const tml_watch *watch;
+    int trial_limit, enough; /* trials at most; trials after which N that pass are enough */
+    /* -- */
+    tml_model *models;       /* one for each trial */
+    bool *ready;
+    int next, judged, passed;
+    bool done;
+    tml_timing timing;
+    tml_status status;
+    tml_error error;
+} run;
+
+static tml_status check_request(const tml_problem *problem, const tml_build_options *options, tml_error *error);
+static tml_status fit_threads(const tml_problem *problem, int wanted, int *threads, tml_error *error);
+static tml_status run_trials(run *work, int threads, tml_error *error);
+static tml_status keep_best(run *work, tml_ensemble *ensemble, tml_error *error);
+
+void tml_build_defaults(tml_build_options *options) {
+    *options = (tml_build_options){.models = MODELS_DEFAULT, .seed = 1, .select_lowest = true, .dimensions = 3, .effort = 1.0};
+}
+
+tml_status tml_build(tml_problem *problem, const tml_build_options *options, const tml_watch *watch, tml_ensemble **out,
+                     tml_contradictions *found, tml_error *error) {
+    static const tml_watch NO_WATCH = {0};
+    double start = tml_seconds();
+    int threads = 1;
+    *out = NULL;
+    if (watch == NULL) watch = &NO_WATCH;
+    tml_status status = check_request(problem, options, error);
+    if (status == TML_OK) status = fit_threads(problem, options->threads, &threads, error);
+    if (status == TML_OK) status = tml_find_cis(problem, options->seed, threads, watch->stop, error);
+    if (status != TML_OK) return status;
+
+    tml_bounds *bounds = NULL;
+    tml_refiner *refiner = NULL;
+    tml_ensemble *ensemble = NULL;
+    bool contradicted = false;
+    double before_smoothing = tml_seconds();
+    status = tml_bounds_prepare(problem, threads, watch, &bounds, found, error);
+    double smoothing = tml_seconds() - before_smoothing;
+    if (status == TML_CONTRADICTED) {
+        contradicted = true;
+        status = options->strict ? tml_fail(error, TML_CONTRADICTED, "the limits contradict each other") : TML_OK;
+    }
+    if (status == TML_OK) status = tml_refiner_new(problem, &refiner, error);
+    if (status == TML_OK) {
+        run work = {.problem = problem, .options = options, .bounds = bounds, .refiner = refiner, .watch = watch,
+                    .trial_limit = options->trials > 0 ? options->trials : TRIALS_PER_MODEL * options->models,
+                    .enough = options->select_lowest ? (3 * options->models + 1) / 2 : options->models};
+        status = run_trials(&work, threads, error);
+        ensemble = status == TML_OK ? tml_alloc(1, sizeof *ensemble) : NULL;
+        if (ensemble != NULL) {
+            *ensemble = (tml_ensemble){.problem = problem, .trials = work.judged, .passed = work.passed, .wanted = options->models,
+                                       .seed = options->seed, .threads = threads, .select_lowest = options->select_lowest,
+                                       .timing = work.timing};
+            ensemble->timing.smooth = smoothing;
+            status = keep_best(&work, ensemble, error);
+            if (status == TML_OK) status = tml_ensemble_superpose(ensemble, error);
+            if (status == TML_OK && ensemble->passed < ensemble->wanted) status = TML_SHORT;
+        } else if (status == TML_OK) {
+            status = tml_no_memory(error);
+        }
+        for (int i = 0; work.models != NULL && i < work.trial_limit; i++) free(work.models[i].xyz);
+        free(work.models);
+        free(work.ready);
+    }
+    tml_bounds_free(bounds);
+    tml_refiner_free(refiner);
+    if (status != TML_OK && status != TML_SHORT) {
+        tml_ensemble_free(ensemble);
+        return status;
+    }
+    ensemble->timing.total = tml_seconds() - start;
+    *out = ensemble;
+    return contradicted ? TML_CONTRADICTED : status;
+}
+
+static tml_status check_request(const tml_problem *problem, const tml_build_options *options, tml_error *error) {
+    enum { MOST_MODELS = 9999, MOST_TRIALS = 1000000 };
+    if (problem->molecule.atom_count < 2)
+        return tml_fail(error, TML_BAD_INPUT, "the inputs describe %d atoms; a model needs at least 2", problem->molecule.atom_count);
+    if (options->models < 1 || options->models > MOST_MODELS)
+        return tml_fail(error, TML_BAD_INPUT, "%d models wanted; possible are 1 to %d", options->models, MOST_MODELS);
+    if (options->trials < 0 || options->trials > MOST_TRIALS)
+        return tml_fail(error, TML_BAD_INPUT, "%d trials wanted; possible are 1 to %d", options->trials, MOST_TRIALS);
+    if (options->trials > 0 && options->trials < options->models)
+        return tml_fail(error, TML_BAD_INPUT, "%d trials cannot give %d models", options->trials, options->models);
+    if (options->dimensions != 3 && options->dimensions != 4)
+        return tml_fail(error, TML_BAD_INPUT, "embedding in %d dimensions; possible are 3 and 4", options->dimensions);
+    if (!(options->effort > 0 && options->effort <= 100))
+        return tml_fail(error, TML_BAD_INPUT, "effort %g; possible is more than 0, at most 100", options->effort);
+    if (options->strict && problem->restraints.unmapped_count > 0)
+        return tml_fail(error, TML_BAD_INPUT, "%d restraints name atoms that are not in the molecule; the first: %s",
+                        problem->restraints.unmapped_count, problem->restraints.unmapped[0].reason);
+    return TML_OK;
+}
+
+/* As many threads as wanted, fewer where the memory does not hold all their matrices: the result is the same. */
+static tml_status fit_threads(const tml_problem *problem, int wanted, int *threads, tml_error *error) {
+    size_t n = (size_t)problem->molecule.atom_count, matrix;
+    *threads = wanted > 0 ? wanted : omp_get_num_procs();
+    if (__builtin_mul_overflow(n + 16, (n + 16) * sizeof(float), &matrix)) matrix = SIZE_MAX / 8;
+    size_t available = tml_memory_available(), least = 3 * matrix + OTHER_MEMORY;
+    if (least > available)
+        return tml_fail(error, TML_TOO_LARGE, "%zu atoms need %zu MB of memory, and %zu MB are free", n, least >> 20, available >> 20);
+    while (*threads > 1 && (1 + 2 * (size_t)*threads) * matrix + OTHER_MEMORY > available) --*threads;
+    return TML_OK;
+}
+
+/* ---- one trial ---- */
+
+/* What a thread works with. */
+typedef struct bench {
+    float *distance;
+    double *start, *spare; /* up to four coordinates an atom; three */
+    tml_timing timing;
+} bench;
+
+/* Coordinates in three dimensions from the drawn distances; a fourth dimension is squeezed out by degrees. */
+static tml_status place(const run *work, bench *tools, double *eigenvalues, tml_error *error) {
+    int32_t n = work->bounds->n, dimensions = work->options->dimensions;
+    tml_status status = tml_embed(tools->distance, n, work->bounds->stride, dimensions, tools->start, eigenvalues, error);
+    if (status == TML_OK)
+        status = tml_majorize(tools->distance, n, work->bounds->stride, dimensions, MAJORIZE_STEPS, tools->start, error);
+    for (int step = 0; status == TML_OK && dimensions == 4 && step < SQUEEZE_STEPS; step++) {
+        for (int32_t i = 0; i < n; i++) tools->start[4 * i + 3] *= SQUEEZE;
+        status = tml_majorize(tools->distance, n, work->bounds->stride, dimensions, 1, tools->start, error);
+    }
+    for (int32_t i = 0; dimensions == 4 && i < n; i++)
+        for (int k = 0; k < 3; k++) tools->start[3 * i + k] = tools->start[4 * i + k];
+    return status;
+}
+
+/* Refine one image of the embedding into xyz and measure it. */
+static tml_status improve(const run *work, tml_pcg *pcg, double *xyz, double *energy, tml_measures *measures, tml_error *error) {
+    tml_status status = tml_refine(work->refiner, work->options->effort, pcg, xyz, work->watch->stop, energy, error);
+    return status == TML_OK ? tml_measure(work->problem, xyz, measures, error) : status;
+}
+
+static bool better(bool passed, double energy, bool other_passed, double other_energy) {
+    return passed != other_passed ? passed : energy < other_energy;
+}
+
+static tml_status try_once(const run *work, bench *tools, int trial, tml_model *model, tml_error *error) {
+    const size_t n = (size_t)work->bounds->n;
+    tml_pcg pcg;
+    tml_pcg_seed_trial(&pcg, work->options->seed, (uint64_t)trial);
+    *model = (tml_model){.trial = trial, .xyz = tml_alloc(3 * n, sizeof *model->xyz), .other_error = NAN};
+    if (model->xyz == NULL) return tml_no_memory(error);
+
+    double t0 = tml_seconds();
+    tml_metrize(work->bounds, work->options->metrize_roots > 0 ? work->options->metrize_roots : work->bounds->n, &pcg, tools->distance);
+    double t1 = tml_seconds();
+    tml_status status = place(work, tools, model->eigenvalues, error);
+    double t2 = tml_seconds();
+    tools->timing.metrize += t1 - t0;
+    tools->timing.embed += t2 - t1;
+    if (status != TML_OK) return status;
+
+    memcpy(model->xyz, tools->start, 3 * n * sizeof *model->xyz);
+    for (size_t i = 0; i < 3 * n; i++) tools->spare[i] = i % 3 == 0 ? -tools->start[i] : tools->start[i];
+    status = improve(work, &pcg, model->xyz, &model->error, &model->measures, error);
+    double other = NAN;
+    tml_measures other_measures;
+    if (status == TML_OK) status = improve(work, &pcg, tools->spare, &other, &other_measures, error);
+    tools->timing.refine += tml_seconds() - t2;
+    if (status != TML_OK) return status;
+    model->passed = tml_measures_pass(&model->measures);
+    model->other_error = other;
+    if (better(tml_measures_pass(&other_measures), other, model->passed, model->error)) {
+        memcpy(model->xyz, tools->spare, 3 * n * sizeof *model->xyz);
+        model->measures = other_measures;
+        model->other_error = model->error;
+        model->error = other;
+        model->passed = tml_measures_pass(&other_measures);
+        model->mirrored = true;
+    }
+    return TML_OK;
+}
+
+/* ---- trials ---- */
+
+/* Judge what is ready, strictly in the order of the trials; what comes after the deciding one is left aside. */
+static void judge(run *work) {
+    while (!work->done && work->judged < work->trial_limit && work->ready[work->judged]) {
+        work->passed += work->models[work->judged++].passed;
+        work->done = work->judged == work->trial_limit || (work->passed >= work->options->models && work->judged >= work->enough);
+    }
+    if (work->watch->progress != NULL)
+        work->watch->progress(work->watch->context, "trials", work->passed < work->options->models ? work->passed : work->options->models,
+                              work->options->models);
+}
+
+static int take_trial(run *work) {
+    int trial = 0;
+#pragma omp critical(tml_trials)
+    if (!work->done && work->status == TML_OK && work->next < work->trial_limit) trial = ++work->next;
+    return trial;
+}
+
+static void give_trial(run *work, int trial, const tml_model *model, tml_status status, const tml_error *error) {
+#pragma omp critical(tml_trials)
+    {
+        work->models[trial - 1] = *model;
+        work->ready[trial - 1] = status == TML_OK;
+        if (status != TML_OK && work->status == TML_OK) {
+            work->status = status;
+            work->error = *error;
+        }
+        if (work->status == TML_OK) judge(work);
+    }
+}
+
+static void work_on_trials(run *work) {
+    const size_t n = (size_t)work->bounds->n;
+    tml_error error = {0};
+    bench tools = {.distance = tml_alloc_aligned(n * work->bounds->stride, sizeof(float)),
+                   .start = tml_alloc(4 * n, sizeof(double)),
+                   .spare = tml_alloc(3 * n, sizeof(double))};
+    if (tools.distance == NULL || tools.start == NULL || tools.spare == NULL) {
+#pragma omp critical(tml_trials)
+        work->status = tml_no_memory(&work->error);
+    } else {
+        for (int trial; (trial = take_trial(work)) > 0;) {
+            tml_model model = {0};
+            tml_status status = try_once(work, &tools, trial, &model, &error);
+            give_trial(work, trial, &model, status, &error);
+        }
+    }
+#pragma omp critical(tml_trials)
+    {
+        work->timing.metrize += tools.timing.metrize;
+        work->timing.embed += tools.timing.embed;
+        work->timing.refine += tools.timing.refine;
+    }
+    free(tools.distance);
+    free(tools.start);
+    free(tools.spare);
+}
+
+static tml_status run_trials(run *work, int threads, tml_error *error) {
+    work->models = tml_alloc((size_t)work->trial_limit, sizeof *work->models);
+    work->ready = tml_alloc((size_t)work->trial_limit, sizeof *work->ready);
+    if (work->models == NULL || work->ready == NULL) return tml_no_memory(error);
+    int blas_threads = openblas_get_num_threads();
+    openblas_set_num_threads(1);
+#pragma omp parallel num_threads(threads)
+    work_on_trials(work);
+    openblas_set_num_threads(blas_threads);
+    if (work->status != TML_OK && error != NULL) *error = work->error;
+    return work->status;
+}
+
+/* ---- selection ---- */
+
+static int compare_models(const void *left, const void *right) {
+    const tml_model *l = left, *r = right;
+    if (better(l->passed, l->error, r->passed, r->error)) return -1;
+    if (better(r->passed, r->error, l->passed, l->error)) return 1;
+    return l->trial < r->trial ? -1 : l->trial > r->trial;
+}
+
+static int compare_first(const void *left, const void *right) {
+    const tml_model *l = left, *r = right;
+    if (l->passed != r->passed) return l->passed ? -1 : 1;
+    return l->trial < r->trial ? -1 : l->trial > r->trial;
+}
+
+/* The first `wanted` of the judged trials, in the order of the rule; then best first. Takes their coordinates over. */
+static tml_status keep_best(run *work, tml_ensemble *ensemble, tml_error *error) {
+    int count = work->judged < ensemble->wanted ? work->judged : ensemble->wanted;
+    qsort(work->models, (size_t)work->judged, sizeof *work->models, ensemble->select_lowest ? compare_models : compare_first);
+    qsort(work->models, (size_t)count, sizeof *work->models, compare_models);
+    ensemble->models = tml_alloc((size_t)count, sizeof *ensemble->models);
+    if (ensemble->models == NULL) return tml_no_memory(error);
+    memcpy(ensemble->models, work->models, (size_t)count * sizeof *ensemble->models);
+    ensemble->model_count = count;
+    for (int i = 0; i < count; i++) work->models[i].xyz = NULL;
+    return TML_OK;
+}
