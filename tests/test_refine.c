@@ -26,6 +26,7 @@ typedef struct model {
     int32_t group_atoms[10];
     tml_dihedral_restraint dihedrals[2];
     tml_dihedral_interval intervals[3];
+    tml_peptide peptides[2];
 } model;
 
 static void make_model(model *m) {
@@ -56,6 +57,13 @@ static void make_model(model *m) {
                                .centres = m->centres, .centre_count = 2, .planes = &m->plane, .plane_count = 1,
                                .plane_atoms = m->plane_atoms, .plane_xy = m->plane_xy, .plane_atom_count = 4,
                                .neighbour_first = m->neighbour_first, .neighbours = m->neighbours};
+
+    /* Two peptide bonds that meet in one residue give it phi (1 5 6 7) and psi (5 6 7 10). */
+    m->residue.name = "ALA";
+    m->peptides[0] = (tml_peptide){.ca1 = 0, .c = 1, .o = 2, .n = 5, .ca2 = 6, .residue1 = 0, .residue2 = 0};
+    m->peptides[1] = (tml_peptide){.ca1 = 6, .c = 7, .o = 8, .n = 10, .ca2 = 11, .residue1 = 0, .residue2 = 0};
+    molecule->peptides = m->peptides;
+    molecule->peptide_count = 2;
 
     const int32_t groups[10] = {1, 2, 3, 9, 10, 4, 11, 6, 7, 8};
     memcpy(m->group_atoms, groups, sizeof groups);
@@ -138,6 +146,7 @@ GRADIENT(volumes, .volume = 1)
 GRADIENT(planes, .plane = 10)
 GRADIENT(distance_sums_and_choices, .restraint = 5, .restraint_bend = 0.5)
 GRADIENT(dihedral_intervals, .dihedral = 5, .dihedral_bend = 0.3)
+GRADIENT(backbone_preference, .backbone = 3)
 GRADIENT(repulsion, .repulsion = 5, .radius_scale = 1.0)
 
 /* Flat centres need a planar atom with three bonded neighbours in the group. */

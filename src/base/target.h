@@ -1,7 +1,6 @@
-/* target.h: vectors of four doubles, and functions compiled for several widths of the processor.
+/* target.h: vectors of four doubles, and functions compiled for more than the baseline processor.
  *
- * A function marked TML_WIDE is compiled for AVX-512, AVX2 and the baseline; the loader takes the widest that the processor
- * has. Sums keep their written order (no contraction, no reassociation), so all of them give the same bits.
+ * A function marked TML_WIDE is compiled for AVX2 and the baseline; the loader takes the wider one where the processor has it. Sums keep their written order (no contraction, no reassociation), so all of them give the same bits.
  */
 #ifndef TML_TARGET_H
 #define TML_TARGET_H
@@ -9,7 +8,7 @@
 #include <math.h>
 
 #if defined(__x86_64__) && !defined(TML_ONE_TARGET)
-#define TML_WIDE __attribute__((target_clones("arch=skylake-avx512", "avx2", "default")))
+#define TML_WIDE __attribute__((target_clones("avx2", "default")))
 #else
 #define TML_WIDE
 #endif

@@ -5,6 +5,7 @@
  *   planes       distance from the best plane
  *   sums         restraints as (Σ r⁻⁶)^(-1/6), choices between combinations
  *   torsions     dihedral intervals
+ *   backbones    preference for the usual regions of phi and psi
  *   repulsion    over the neighbour list
  *
  * Every term is inlined into tml_energy, which is compiled for several vector widths (base/target.h).
@@ -225,6 +226,7 @@ INLINE double sums(const tml_refiner *refiner, double k, double bend, const tml_
     for (int32_t i = 0; i < refiner->single_count; i++) {
         const tml_sum_term *sum = &refiner->sums[i];
         double total = sum_of(sum, refiner->sum_pairs, x);
+        if (total >= sum->least && total <= sum->most) continue;
         double e = sum_energy(sum, total, k, bend, &effective, &slope);
         if (slope == 0) continue;
         energy += e;
@@ -325,6 +327,42 @@ static double torsions(const tml_refiner *refiner, double k, double bend, const 
     return energy;
 }
 
+/* ---- backbones ---- */
+
+/* The basins in which folded proteins keep phi and psi: right-handed helix, its bridge, extended strand, polyproline II,
+ * left-handed helix. Centres and widths (as the concentration of a von Mises distribution, 1/radians²) are round values for
+ * the regions of Lovell et al., Proteins 50 (2003) 437, typed from memory. */
+typedef struct basin { double phi, psi, phi_sharp, psi_sharp, share; } basin;
+static const basin BASINS[] = {
+    {-65, -42, 6.0, 4.0, 1.0}, {-90, 0, 4.0, 3.0, 0.3}, {-120, 135, 3.0, 3.0, 1.0}, {-70, 145, 6.0, 4.0, 1.0}, {57, 42, 8.0, 6.0, 0.1},
+};
+enum { BASIN_COUNT = sizeof BASINS / sizeof *BASINS };
+/* What every other place gets, so that the preference is bounded: it is a slope, not a wall. */
+static const double ELSEWHERE = 0.01;
+
+/* E = -h·ln(ELSEWHERE + Σ share·exp(κ(cos(φ-φ0)-1) + κ'(cos(ψ-ψ0)-1))). Glycine, which has no side chain, is left free. */
+static double backbones(const tml_refiner *refiner, double height, const tml_v4 *x, tml_v4 *f) {
+    double energy = 0;
+    for (int32_t i = 0; i < refiner->backbone_count; i++) {
+        const tml_backbone_term *term = &refiner->backbones[i];
+        torsion_state phi, psi;
+        if (term->glycine || !torsion_at(&term->atoms[0], x, &phi) || !torsion_at(&term->atoms[1], x, &psi)) continue;
+        double total = ELSEWHERE, by_phi = 0, by_psi = 0;
+        for (int b = 0; b < BASIN_COUNT; b++) {
+            double off_phi = phi.angle - BASINS[b].phi * PI / 180, off_psi = psi.angle - BASINS[b].psi * PI / 180;
+            double part = BASINS[b].share *
+                          exp(BASINS[b].phi_sharp * (cos(off_phi) - 1) + BASINS[b].psi_sharp * (cos(off_psi) - 1));
+            total += part;
+            by_phi += part * BASINS[b].phi_sharp * sin(off_phi);
+            by_psi += part * BASINS[b].psi_sharp * sin(off_psi);
+        }
+        energy -= height * log(total);
+        torsion_push(&term->atoms[0], &phi, height * by_phi / total, f);
+        torsion_push(&term->atoms[1], &psi, height * by_psi / total, f);
+    }
+    return energy;
+}
+
 /* ---- repulsion ---- */
 
 INLINE double repulsion(const tml_scene *scene, double k, double scale, tml_v4 *f) {
@@ -366,6 +404,7 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     energy += sums(refiner, weights->restraint, weights->restraint_bend, x, f);
     if (refiner->choice_count > 0) energy += choices(refiner, weights->restraint, weights->restraint_bend, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
+    if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);
     if (weights->repulsion > 0) energy += repulsion(scene, weights->repulsion, weights->radius_scale, f);
     return energy;
 }

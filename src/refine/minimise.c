@@ -17,14 +17,14 @@ static const double ENOUGH = 1e-4;
 
 typedef struct history { tml_v4 *s[MEMORY], *y[MEMORY]; double rho[MEMORY]; int count, next; } history;
 
-static double dot(const tml_v4 *a, const tml_v4 *b, int32_t n) {
+TML_WIDE static double dot(const tml_v4 *a, const tml_v4 *b, int32_t n) {
     tml_v4 total = TML_V4(0);
     for (int32_t i = 0; i < n; i++) total += a[i] * b[i];
     return total[0] + total[1] + total[2];
 }
 
 /* The two-loop recursion: direction = H·f, with f the forces (downhill). */
-static void direction_of(history *past, const tml_v4 *f, int32_t n, tml_v4 *direction) {
+TML_WIDE static void direction_of(history *past, const tml_v4 *f, int32_t n, tml_v4 *direction) {
     double alpha[MEMORY];
     memcpy(direction, f, (size_t)n * sizeof *f);
     for (int k = 0; k < past->count; k++) {
@@ -44,7 +44,7 @@ static void direction_of(history *past, const tml_v4 *f, int32_t n, tml_v4 *dire
     }
 }
 
-static double longest_of(const tml_v4 *direction, int32_t n) {
+TML_WIDE static double longest_of(const tml_v4 *direction, int32_t n) {
     double most = 0;
     for (int32_t i = 0; i < n; i++) {
         tml_v4 square = direction[i] * direction[i];
@@ -54,7 +54,7 @@ static double longest_of(const tml_v4 *direction, int32_t n) {
 }
 
 /* Keep the last step's s and y, unless curvature is not positive. */
-static void remember(history *past, const tml_v4 *x, const tml_v4 *old_x, const tml_v4 *f, const tml_v4 *old_f, int32_t n) {
+TML_WIDE static void remember(history *past, const tml_v4 *x, const tml_v4 *old_x, const tml_v4 *f, const tml_v4 *old_f, int32_t n) {
     tml_v4 *s = past->s[past->next], *y = past->y[past->next];
     for (int32_t i = 0; i < n; i++) {
         s[i] = x[i] - old_x[i];

@@ -17,7 +17,8 @@ struct tml_cells {
     size_t first_capacity;
     int32_t *cell_of, *order; /* per atom; sorted */
     float *x, *y, *z;        /* sorted */
-    float *square;           /* distances² of one atom from a run, and of everything in it */
+    float *square;           /* distances² of one atom from a run */
+    int32_t *hits;           /* the slots of a run that are near */
 };
 
 enum { CELL_LIMIT = 1 << 21 };
@@ -42,8 +43,9 @@ tml_status tml_scene_new(const tml_refiner *refiner, tml_scene **out, tml_error 
         cells->y = tml_alloc(count, sizeof *cells->y);
         cells->z = tml_alloc(count, sizeof *cells->z);
         cells->square = tml_alloc(count, sizeof *cells->square);
+        cells->hits = tml_alloc(count, sizeof *cells->hits);
         room = cells->cell_of != NULL && cells->order != NULL && cells->x != NULL && cells->y != NULL && cells->z != NULL &&
-               cells->square != NULL;
+               cells->square != NULL && cells->hits != NULL;
     }
     if (!room) {
         tml_scene_free(scene);
@@ -66,6 +68,7 @@ void tml_scene_free(tml_scene *scene) {
         free(scene->cells->y);
         free(scene->cells->z);
         free(scene->cells->square);
+        free(scene->cells->hits);
     }
     free(scene->cells);
     free(scene->x);
@@ -152,34 +155,41 @@ static bool silent(const tml_refiner *refiner, int32_t a, int32_t b) {
     return false;
 }
 
-TML_WIDE static void squares(const struct tml_cells *cells, int32_t slot, int32_t begin, int32_t end, float *square) {
+/* The slots of [begin, end) within the distance² `cut` of one slot go to near; returns how many. */
+TML_WIDE static int32_t within(const struct tml_cells *cells, int32_t slot, int32_t begin, int32_t end, float cut, int32_t *near) {
     float x = cells->x[slot], y = cells->y[slot], z = cells->z[slot];
     const float *restrict xs = cells->x, *restrict ys = cells->y, *restrict zs = cells->z;
+    float *restrict square = cells->square;
     for (int32_t i = begin; i < end; i++) {
         float dx = xs[i] - x, dy = ys[i] - y, dz = zs[i] - z;
         square[i - begin] = dx * dx + dy * dy + dz * dz;
     }
+    int32_t count = 0;
+    for (int32_t i = begin; i < end; i++) { /* no branch: hits are too irregular to be predicted */
+        near[count] = i;
+        count += square[i - begin] < cut;
+    }
+    return count;
 }
 
 /* List the pairs of the atom in `slot` with the run of slots [begin, end). */
-static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end, float skin, float cut) {
+static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end, float skin) {
     const tml_refiner *refiner = scene->refiner;
     const struct tml_cells *cells = scene->cells;
     if (begin >= end) return true;
-    squares(cells, slot, begin, end, cells->square);
-    int32_t a = cells->order[slot];
-    const float *contact = &refiner->contact[(size_t)refiner->contact_class[a] * (size_t)refiner->class_count];
-    for (int32_t i = begin; i < end; i++) {
-        float square = cells->square[i - begin];
-        if (square >= cut) continue;
-        int32_t b = cells->order[i];
+    int32_t a = cells->order[slot], class_a = refiner->contact_class[a];
+    float far = refiner->reach[class_a] + skin;
+    int32_t hits = within(cells, slot, begin, end, far * far, cells->hits);
+    size_t need = (size_t)scene->near_count + (size_t)hits + 4;
+    if (need > scene->near_capacity) {
+        if (!tml_grow(&scene->near, &scene->near_capacity, need, sizeof *scene->near)) return false;
+        if (!tml_grow(&scene->near_contact, &scene->contact_capacity, need, sizeof *scene->near_contact)) return false;
+    }
+    const float *contact = &refiner->contact[class_a * refiner->class_count];
+    for (int32_t k = 0; k < hits; k++) {
+        int32_t b = cells->order[cells->hits[k]];
         float touch = contact[refiner->contact_class[b]], reach = touch + skin;
-        if (touch <= 0 || square >= reach * reach || silent(refiner, a, b)) continue;
-        if ((size_t)scene->near_count + 4 > scene->near_capacity) {
-            size_t need = (size_t)scene->near_count + 4;
-            if (!tml_grow(&scene->near, &scene->near_capacity, need, sizeof *scene->near)) return false;
-            if (!tml_grow(&scene->near_contact, &scene->contact_capacity, need, sizeof *scene->near_contact)) return false;
-        }
+        if (touch <= 0 || cells->square[cells->hits[k] - begin] >= reach * reach || silent(refiner, a, b)) continue;
         scene->near[scene->near_count] = (tml_pair){a, b};
         scene->near_contact[scene->near_count++] = touch;
     }
@@ -190,7 +200,6 @@ tml_status tml_scene_list(tml_scene *scene, double skin) {
     const tml_refiner *refiner = scene->refiner;
     const struct tml_cells *cells = scene->cells;
     double reach = refiner->contact_max + skin;
-    float cut = (float)(reach * reach);
     scene->near_count = 0;
     scene->skin = skin;
     memcpy(scene->listed_at, scene->x, ((size_t)refiner->atom_count + 2) * sizeof *scene->x);
@@ -204,12 +213,12 @@ tml_status tml_scene_list(tml_scene *scene, double skin) {
                 int32_t row = (z * ny + y) * nx, last = x + 1 < nx ? x + 1 : x, before = x > 0 ? x - 1 : x;
                 for (int32_t slot = first[row + x]; slot < first[row + x + 1]; slot++) {
                     /* The rest of the own cell and the next one of the row; then the rows ahead. */
-                    bool room = list_run(scene, slot, slot + 1, first[row + last + 1], (float)skin, cut);
+                    bool room = list_run(scene, slot, slot + 1, first[row + last + 1], (float)skin);
                     for (int32_t dz = 0; room && dz <= 1 && z + dz < nz; dz++)
                         for (int32_t dy = dz == 0 ? 1 : -1; room && dy <= 1; dy++) {
                             if (y + dy < 0 || y + dy >= ny) continue;
                             int32_t other = ((z + dz) * ny + y + dy) * nx;
-                            room = list_run(scene, slot, first[other + before], first[other + last + 1], (float)skin, cut);
+                            room = list_run(scene, slot, first[other + before], first[other + last + 1], (float)skin);
                         }
                     if (!room) return TML_NO_MEMORY;
                 }

@@ -40,6 +40,7 @@ typedef struct tml_weights {
     double restraint, restraint_bend;        /* k·δ², linear beyond bend Å */
     double dihedral, dihedral_bend;          /* k·δ², linear beyond bend radians */
     double repulsion, radius_scale;          /* k·(scale·contact - d)² where closer */
+    double backbone;                         /* height of the preference for usual phi and psi; 0 leaves it out */
 } tml_weights;
 
 /* The error function at the scene's positions; forces (its negative gradient) go to scene->f. */

@@ -67,6 +67,7 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->backbones);
     free(refiner->contact_class);
     free(refiner->contact);
+    free(refiner->reach);
     free(refiner->near_mask);
     free(refiner->far_first);
     free(refiner->far);
@@ -289,6 +290,8 @@ static bool sum_end(sum_builder *builder, bool average) {
     tml_sum_term *sum = &refiner->sums[refiner->sum_count - 1];
     sum->pair_count = refiner->sum_pair_count - sum->first_pair;
     if (average && sum->pair_count > 0) sum->share = 1.0 / sum->pair_count;
+    sum->least = isinf(sum->upper) ? 0 : pow(sum->upper, -6) / sum->share;
+    sum->most = sum->lower > 0 ? pow(sum->lower, -6) / sum->share : INFINITY;
     while (refiner->sum_pair_count % 4 != 0)
         if (!sum_add_pair(builder, refiner->atom_count, refiner->atom_count + 1)) return false;
     return true;
@@ -396,11 +399,13 @@ static bool make_classes(tml_refiner *refiner) {
     }
     size_t count = (size_t)refiner->class_count;
     refiner->contact = tml_alloc(count * count, sizeof *refiner->contact);
-    if (refiner->contact == NULL) return false;
+    refiner->reach = tml_alloc(count, sizeof *refiner->reach);
+    if (refiner->contact == NULL || refiner->reach == NULL) return false;
     for (size_t a = 0; a < count; a++)
         for (size_t b = 0; b < count; b++) {
             float contact = (float)tml_soft_contact(molecule, example[a], example[b]);
             refiner->contact[a * count + b] = contact;
+            if (contact > refiner->reach[a]) refiner->reach[a] = contact;
             if (contact > refiner->contact_max) refiner->contact_max = contact;
         }
     return true;

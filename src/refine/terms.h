@@ -20,6 +20,7 @@ typedef struct tml_sum_term {
     int32_t first_pair, pair_count; /* pair_count without padding */
     double lower, upper, weight;
     double share;                   /* 1, or 1 / number of pairs where the sum is an average */
+    double least, most;             /* Σ r⁻⁶ between these: within both limits */
     int32_t combination;            /* within its choice */
 } tml_sum_term;
 
@@ -46,6 +47,7 @@ struct tml_refiner {
     tml_backbone_term *backbones; int32_t backbone_count;
     uint8_t *contact_class;    int32_t class_count;  /* per atom */
     float *contact;            /* class_count² contact distances */
+    float *reach;                      /* per class, its largest contact distance */
     float contact_max;
     uint64_t (*near_mask)[2];  /* bit d-1 of atom i: atom i+d is not repelled */
     int32_t *far_first, *far;  /* the same for partners 129 and more ahead: far[far_first[i] … far_first[i+1]-1] */
