@@ -12,7 +12,7 @@ typedef struct phase {
     double hot, cold;        /* kT at its start and end */
     tml_weights from, to;
     double skin;             /* Å, of the neighbour list */
-    int list_every;          /* steps between lists at the least; 0: only when an atom has moved by half the skin */
+    int list_every;          /* steps between looks at whether an atom has moved by half the skin */
 } phase;
 
 
@@ -28,16 +28,16 @@ static const phase SCHEDULE[] = {
      .from = SOFT,
      .to = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 1.0,
             .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8}},
-    {.steps = 6000, .hot = 12, .cold = 0.02, .skin = 1.0, .list_every = 0,
+    {.steps = 6000, .hot = 12, .cold = 0.02, .skin = 1.2, .list_every = 8,
      .from = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 0.5,
               .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8},
      .to = {.bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40, .restraint = 30, .restraint_bend = 0.5,
-            .dihedral = 200, .dihedral_bend = 20 * DEGREE_, .repulsion = 20, .radius_scale = 1.0}},
+            .dihedral = 200, .dihedral_bend = 20 * DEGREE_, .repulsion = 20, .radius_scale = 1.0, .backbone = 1}},
 };
 
 const tml_weights TML_FINAL_WEIGHTS = {.bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
                                        .restraint = 60, .restraint_bend = 0.5, .dihedral = 200,
-                                       .dihedral_bend = 20 * DEGREE_, .repulsion = 30, .radius_scale = 1.0};
+                                       .dihedral_bend = 20 * DEGREE_, .repulsion = 30, .radius_scale = 1.0, .backbone = 1};
 
 /* Step with bonds of k = 1000; it grows as bonds soften. */
 static const double STEP_AT_1000 = 0.012;
@@ -92,10 +92,7 @@ static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, 
         double share = (double)step / steps;
         if (step % 20 == 0) weights = between(&plan->from, &plan->to, share);
         tml_status status = TML_OK;
-        if (plan->list_every > 0)
-            status = step % plan->list_every == 0 ? tml_scene_list(scene, plan->skin) : TML_OK;
-        else
-            status = tml_scene_relist(scene, plan->skin);
+        if (step % plan->list_every == 0) status = tml_scene_relist(scene, plan->skin);
         if (status != TML_OK) return status;
         tml_energy(scene, &weights);
         step_once(scene, STEP_AT_1000 / sqrt(weights.bond / 1000), plan->hot + share * (plan->cold - plan->hot));
