@@ -112,10 +112,9 @@ static tml_status note_cis(tml_problem *problem, const tml_peptide *peptide, con
                            const outcome *cis, tml_error *error) {
     const tml_residue *residue = &problem->molecule.residues[peptide->residue2];
     const tml_distance_restraint *blamed = &fragment->restraints.distances[trans->restraint];
-    char text[512];
-    snprintf(text, sizeof text,
-             "%s:%s PRO is taken as cis: with a trans peptide bond, restraint %s is off by %.2f Å in the best of %d local models; "
-             "with cis none is off by more than %.2f Å",
-             residue->chain, residue->number, blamed->id, trans->worst, STARTS, cis->worst);
-    return tml_problem_add_note(problem, blamed->place, text, error);
+    return tml_problem_add_note(
+        problem, blamed->place, error,
+        "%s:%s PRO is taken as cis: with a trans peptide bond, restraint %s is off by %.2f Å in the best of %d local models; with cis "
+        "none is off by more than %.2f Å",
+        residue->chain, residue->number, blamed->id, trans->worst, STARTS, cis->worst);
 }

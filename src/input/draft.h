@@ -3,6 +3,7 @@
 #define TML_DRAFT_H
 
 #include "input/problem.h"
+#include "input/star.h"
 
 typedef struct tml_draft {
     tml_problem *problem; /* borrowed: string pool, file names, title and notes go there at once */
@@ -10,14 +11,12 @@ typedef struct tml_draft {
     tml_rows rows;
 } tml_draft;
 
-void tml_draft_clear(tml_draft *draft);
+/* Readers; file indexes problem->files. A sheet is the whole text, ended by '\0'. */
+tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tml_error *error);
+tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_error *error);
+bool tml_is_sheet(const char *text);
 
-/* A note, printf style. */
-tml_status tml_draft_note(tml_draft *draft, tml_place place, tml_error *error, const char *format, ...)
-    __attribute__((format(printf, 4, 5)));
-
-/* Readers: text is the whole file, ended by '\0' (length does not count it); file indexes problem->files. */
-tml_status tml_read_nef(tml_draft *draft, const char *text, size_t length, int32_t file, tml_error *error);
-tml_status tml_read_sheet(tml_draft *draft, const char *text, size_t length, int32_t file, tml_error *error);
+/* Whether a parsed document is NEF; readers of other dialects ask the same way. */
+bool tml_is_nef(const tml_star *star);
 
 #endif

@@ -20,4 +20,8 @@ struct tml_problem {
     tml_note *notes; size_t note_count, note_capacity;
 };
 
+/* Add a note, printf style. TML_OK or TML_NO_MEMORY. */
+tml_status tml_problem_add_note(tml_problem *problem, tml_place place, tml_error *error, const char *format, ...)
+    __attribute__((format(printf, 4, 5)));
+
 #endif

@@ -1,6 +1,6 @@
 /* restraint.h: restraints of a molecule, with every name resolved to atoms.
  *
- * A tml_restraints owns its arrays; map.c fills it, everything later only reads it. A distance restraint is a set of
+ * A tml_restraints owns its arrays; map.h fills it, everything later only reads it. A distance restraint is a set of
  * alternatives. Each alternative is a pair of atom groups: all pairs (a, b), a from the first and b from the second, a != b,
  * enter the sum (Σ r⁻⁶)^(-1/6), which runs over the pairs of all alternatives. Where alternatives carry combinations, those of
  * one combination hold together, each by its own sum, and the combination that is violated least counts.
@@ -54,15 +54,6 @@ typedef struct tml_restraints {
     tml_dihedral_interval *intervals;  int32_t interval_count;
     tml_unmapped *unmapped;            int32_t unmapped_count;
 } tml_restraints;
-
-/* Match the rows' names with the molecule's atoms.
- *
- * Names that match nothing make their restraint unmapped, with a reason that names the nearest atoms; with other rows of the
- * same id still standing, the restraint keeps those only if the row is an alternative in an OR (and says so).
- * Returns TML_OK, TML_BAD_INPUT (an upper limit below its lower, not a number …), TML_TOO_LARGE or TML_NO_MEMORY.
- */
-tml_status tml_restraints_map(const tml_rows *rows, const tml_molecule *molecule, const char *const *files, tml_strings *pool,
-                              tml_restraints *out, tml_error *error);
 
 void tml_restraints_clear(tml_restraints *restraints);
 

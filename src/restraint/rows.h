@@ -34,6 +34,11 @@ typedef struct tml_rows {
     tml_address *addresses;      size_t address_count, address_capacity;
 } tml_rows;
 
+/* Append a row; the addresses, count_a of side a and count_b of side b, are copied and first_a, first_b set. false without
+ * memory. */
+bool tml_rows_add_distance(tml_rows *rows, const tml_distance_row *row, const tml_address *addresses);
+bool tml_rows_add_dihedral(tml_rows *rows, const tml_dihedral_row *row);
+
 void tml_rows_clear(tml_rows *rows);
 
 #endif

@@ -1,0 +1,18 @@
+/* names.h: which atoms of a residue a name in a restraint means.
+ *
+ * Exact names first; then NEF 1.1: `%` stands for digits, `*` for anything, `x` and `y` for the members of a stereo pair not
+ * yet told apart (both are taken); then the pseudo-atoms of Markley et al., Pure Appl. Chem. 70 (1998) 117 (Q…, M…).
+ */
+#ifndef TML_NAMES_H
+#define TML_NAMES_H
+
+#include "molecule/molecule.h"
+
+typedef enum tml_name_kind { TML_NAME_EXACT, TML_NAME_WILD, TML_NAME_PSEUDO, TML_NAME_AMIDE } tml_name_kind;
+
+/* Atoms of a residue that `name` means, in atom order, up to `room`; returns their number, 0 for none. *kind tells by which
+ * rule; TML_NAME_AMIDE is H or HN for the first hydrogen of a charged N terminus, or HN for H. */
+int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, int32_t room,
+                        tml_name_kind *kind);
+
+#endif

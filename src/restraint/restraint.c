@@ -1,0 +1,85 @@
+#include "restraint/restraint.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+#include "base/vector.h"
+
+static const double PI = 3.14159265358979323846;
+
+void tml_restraints_clear(tml_restraints *restraints) {
+    free(restraints->distances);
+    free(restraints->alternatives);
+    free(restraints->group_atoms);
+    free(restraints->dihedrals);
+    free(restraints->intervals);
+    free(restraints->unmapped);
+    *restraints = (tml_restraints){0};
+}
+
+/* Σ r⁻⁶ over one alternative's pairs. */
+static double sum_over(const tml_restraints *restraints, const tml_alternative *alternative, const double *xyz) {
+    double sum = 0;
+    for (int32_t i = 0; i < alternative->count_a; i++)
+        for (int32_t j = 0; j < alternative->count_b; j++) {
+            int32_t a = restraints->group_atoms[alternative->first_a + i], b = restraints->group_atoms[alternative->first_b + j];
+            double d[3];
+            if (a == b) continue;
+            tml_sub(d, &xyz[3 * a], &xyz[3 * b]);
+            double square = tml_dot(d, d);
+            sum += 1.0 / (square * square * square);
+        }
+    return sum;
+}
+
+double tml_alternative_distance(const tml_restraints *restraints, const tml_alternative *alternative, bool average, const double *xyz) {
+    double sum = sum_over(restraints, alternative, xyz);
+    return pow(average ? sum / alternative->pair_count : sum, -1.0 / 6.0);
+}
+
+double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz) {
+    double sum = 0;
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++)
+        sum += sum_over(restraints, &restraints->alternatives[k], xyz);
+    return pow(restraint->average ? sum / restraint->pair_count : sum, -1.0 / 6.0);
+}
+
+static double beyond(const tml_distance_restraint *restraint, double distance) {
+    return distance > restraint->upper ? distance - restraint->upper : distance < restraint->lower ? distance - restraint->lower : 0;
+}
+
+/* The largest violation of the alternatives that stand together with number `which` of a combined restraint. */
+static double combination_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, int32_t which,
+                                    const double *xyz) {
+    const tml_alternative *alternatives = &restraints->alternatives[restraint->first_alternative];
+    double worst = 0;
+    for (int32_t k = 0; k < restraint->alternative_count; k++) {
+        if (k != which && (alternatives[k].combination < 0 || alternatives[k].combination != alternatives[which].combination)) continue;
+        double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k], restraint->average, xyz));
+        if (fabs(off) > fabs(worst)) worst = off;
+    }
+    return worst;
+}
+
+double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz) {
+    if (!restraint->combined) return beyond(restraint, tml_restraint_distance(restraints, restraint, xyz));
+    double least = INFINITY;
+    for (int32_t k = 0; k < restraint->alternative_count; k++) {
+        double off = combination_violation(restraints, restraint, k, xyz);
+        if (fabs(off) < fabs(least)) least = off;
+    }
+    return least;
+}
+
+double tml_dihedral_violation(const tml_restraints *restraints, const tml_dihedral_restraint *restraint, const double *xyz) {
+    double least = INFINITY;
+    for (int32_t k = restraint->first_interval; k < restraint->first_interval + restraint->interval_count; k++) {
+        const tml_dihedral_interval *interval = &restraints->intervals[k];
+        const int32_t *atoms = interval->atoms;
+        double off = tml_dihedral_of(&xyz[3 * atoms[0]], &xyz[3 * atoms[1]], &xyz[3 * atoms[2]], &xyz[3 * atoms[3]]) - interval->lower;
+        off -= 2 * PI * floor(off / (2 * PI));
+        double width = interval->upper - interval->lower;
+        least = fmin(least, off <= width ? 0 : fmin(off - width, 2 * PI - off));
+    }
+    return least;
+}
