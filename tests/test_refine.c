@@ -2,7 +2,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "base/memory.h"
+#include "bounds/radii.h"
 #include "refine/anneal.h"
 #include "refine/minimise.h"
 #include "refine/refine.h"
@@ -196,7 +196,7 @@ Test(neighbours, list_holds_every_touching_pair_that_brute_force_finds) {
     int brute = 0, listed = 0;
     for (int i = 0; i < MANY; i++)
         for (int j = 0; j < i; j++) {
-            double d2 = 0, reach = refiner->contact[refiner->contact_class[i] * refiner->class_count + refiner->contact_class[j]] + 0.5;
+            double d2 = 0, reach = tml_soft_contact(&problem.molecule, i, j) + 0.5;
             for (int k = 0; k < 3; k++) d2 += (xyz[3 * i + k] - xyz[3 * j + k]) * (xyz[3 * i + k] - xyz[3 * j + k]);
             brute += d2 < reach * reach;
         }

@@ -8,6 +8,7 @@
 #ifndef TML_BOUNDS_H
 #define TML_BOUNDS_H
 
+#include "bounds/minplus.h"
 #include "input/problem.h"
 
 struct tml_bounds {
@@ -40,7 +41,7 @@ typedef enum tml_reason {
 const char *tml_reason_name(tml_reason reason); /* one word, as reports write it: restraint, bond, angle … */
 
 /* One given limit with its source, in double: what proofs are made of. Only given limits are listed, radii are not:
- * a pair without a given lower limit has the radius floor of fill.h. */
+ * a pair without a given lower limit has the floor of radii.h. */
 typedef struct tml_given {
     int32_t a, b;      /* a < b */
     double value;      /* Å */
@@ -65,13 +66,6 @@ void tml_contradictions_clear(tml_contradictions *found);
  */
 tml_status tml_bounds_fill(const tml_problem *problem, tml_bounds **out, tml_givens *givens, tml_error *error);
 
-/* Smallest distance that good structures never fall below, from the radii; 0 for beads. Hydrogen-bonded, metal and disulfide
- * pairs are let off. Å. */
-double tml_hard_floor(const tml_molecule *molecule, int32_t a, int32_t b);
-
-/* The softer contact distance of the repulsion term, Å; 0 for beads. */
-double tml_soft_contact(const tml_molecule *molecule, int32_t a, int32_t b);
-
 /* Tighten all limits to their triangle-inequality closure.
  *
  * bounds    n atoms; changed in place
@@ -81,6 +75,9 @@ double tml_soft_contact(const tml_molecule *molecule, int32_t a, int32_t b);
  * Source: Dress & Havel, Discrete Appl. Math. 19 (1988) 129.
  */
 tml_status tml_bounds_smooth(tml_bounds *bounds, int threads, const tml_watch *watch, tml_error *error);
+
+/* The same with vectors of a given width, for tests and benchmarks. */
+tml_status tml_bounds_smooth_with(tml_bounds *bounds, int threads, tml_width width, const tml_watch *watch, tml_error *error);
 
 /* The contradictions of a problem with their proofs, shortest first, found in double from the given limits; chains that share
  * no restraint of the user's with one another. `tolerance` is the excess, Å, from which it counts (0.001). */

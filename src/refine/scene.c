@@ -177,18 +177,18 @@ static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end,
     const tml_refiner *refiner = scene->refiner;
     const struct tml_cells *cells = scene->cells;
     if (begin >= end) return true;
-    int32_t a = cells->order[slot], class_a = refiner->contact_class[a];
-    float far = refiner->reach[class_a] + skin;
+    int32_t a = cells->order[slot], class_a = refiner->contacts.class_of[a];
+    float far = refiner->contacts.reach[class_a] + skin;
     int32_t hits = within(cells, slot, begin, end, far * far, cells->hits);
     size_t need = (size_t)scene->near_count + (size_t)hits + 4;
     if (need > scene->near_capacity) {
         if (!tml_grow(&scene->near, &scene->near_capacity, need, sizeof *scene->near)) return false;
         if (!tml_grow(&scene->near_contact, &scene->contact_capacity, need, sizeof *scene->near_contact)) return false;
     }
-    const float *contact = &refiner->contact[class_a * refiner->class_count];
+    const float *contact = &refiner->contacts.soft[class_a * refiner->contacts.class_count];
     for (int32_t k = 0; k < hits; k++) {
         int32_t b = cells->order[cells->hits[k]];
-        float touch = contact[refiner->contact_class[b]], reach = touch + skin;
+        float touch = contact[refiner->contacts.class_of[b]], reach = touch + skin;
         if (touch <= 0 || cells->square[cells->hits[k] - begin] >= reach * reach || silent(refiner, a, b)) continue;
         scene->near[scene->near_count] = (tml_pair){a, b};
         scene->near_contact[scene->near_count++] = touch;
@@ -199,11 +199,11 @@ static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end,
 tml_status tml_scene_list(tml_scene *scene, double skin) {
     const tml_refiner *refiner = scene->refiner;
     const struct tml_cells *cells = scene->cells;
-    double reach = refiner->contact_max + skin;
+    double reach = refiner->contacts.longest + skin;
     scene->near_count = 0;
     scene->skin = skin;
     memcpy(scene->listed_at, scene->x, ((size_t)refiner->atom_count + 2) * sizeof *scene->x);
-    if (refiner->contact_max <= 0 || refiner->atom_count == 0) return TML_OK;
+    if (refiner->contacts.longest <= 0 || refiner->atom_count == 0) return TML_OK;
     grid g = lay_grid(scene, reach);
     if (!sort_atoms(scene, &g)) return TML_NO_MEMORY;
     const int32_t nx = g.cells[0], ny = g.cells[1], nz = g.cells[2], *first = cells->first;

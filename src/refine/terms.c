@@ -13,19 +13,17 @@
 #include <string.h>
 
 #include "base/memory.h"
-#include "bounds/bounds.h"
+#include "bounds/radii.h"
+#include "molecule/geometry.h"
 
 static const double PI = 3.14159265358979323846;
 
-/* Distances known from covalent geometry, by pair: an open-addressing table. */
-typedef struct known { uint64_t *keys; double *values; size_t slots, used; } known;
-
-static tml_status make_springs(tml_refiner *refiner, known *table, tml_error *error);
-static tml_status make_volumes(tml_refiner *refiner, const known *table, tml_error *error);
+static tml_status make_springs(tml_refiner *refiner, tml_geometry *table, tml_error *error);
+static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, tml_error *error);
 static tml_status make_sums(tml_refiner *refiner, tml_error *error);
 static tml_status make_torsions(tml_refiner *refiner, tml_error *error);
 static tml_status make_backbones(tml_refiner *refiner, tml_error *error);
-static tml_status make_contacts(tml_refiner *refiner, const known *table, tml_error *error);
+static tml_status make_contacts(tml_refiner *refiner, const tml_geometry *table, tml_error *error);
 
 tml_status tml_refiner_new(const tml_problem *problem, tml_refiner **out, tml_error *error) {
     *out = NULL;
@@ -34,15 +32,14 @@ tml_status tml_refiner_new(const tml_problem *problem, tml_refiner **out, tml_er
     refiner->problem = problem;
     refiner->atom_count = problem->molecule.atom_count;
 
-    known table = {0};
+    tml_geometry table = {0};
     tml_status status = make_springs(refiner, &table, error);
     if (status == TML_OK) status = make_volumes(refiner, &table, error);
     if (status == TML_OK) status = make_sums(refiner, error);
     if (status == TML_OK) status = make_torsions(refiner, error);
     if (status == TML_OK) status = make_backbones(refiner, error);
     if (status == TML_OK) status = make_contacts(refiner, &table, error);
-    free(table.keys);
-    free(table.values);
+    tml_geometry_clear(&table);
     if (status != TML_OK) {
         tml_refiner_free(refiner);
         return status;
@@ -65,128 +62,50 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->choices);
     free(refiner->torsions);
     free(refiner->backbones);
-    free(refiner->contact_class);
-    free(refiner->contact);
-    free(refiner->reach);
+    tml_contacts_clear(&refiner->contacts);
     free(refiner->near_mask);
     free(refiner->far_first);
     free(refiner->far);
     free(refiner);
 }
 
-/* ---- distances known from geometry ---- */
-
-static uint64_t pair_key(int32_t a, int32_t b) {
-    uint32_t low = (uint32_t)(a < b ? a : b), high = (uint32_t)(a < b ? b : a);
-    return ((uint64_t)low << 32 | high) + 1; /* never 0, the mark of an empty slot */
-}
-
-static size_t known_slot(const known *table, uint64_t key) {
-    size_t at = (size_t)((key * 0x9e3779b97f4a7c15u) >> 20) & (table->slots - 1);
-    while (table->keys[at] != 0 && table->keys[at] != key) at = (at + 1) & (table->slots - 1);
-    return at;
-}
-
-static bool known_add(known *table, int32_t a, int32_t b, double value) {
-    if (table->used * 2 >= table->slots) {
-        known larger = {.slots = table->slots == 0 ? 1024 : table->slots * 2};
-        larger.keys = tml_alloc(larger.slots, sizeof *larger.keys);
-        larger.values = tml_alloc(larger.slots, sizeof *larger.values);
-        if (larger.keys == NULL || larger.values == NULL) {
-            free(larger.keys);
-            free(larger.values);
-            return false;
-        }
-        for (size_t i = 0; i < table->slots; i++)
-            if (table->keys[i] != 0) {
-                size_t at = known_slot(&larger, table->keys[i]);
-                larger.keys[at] = table->keys[i];
-                larger.values[at] = table->values[i];
-            }
-        larger.used = table->used;
-        free(table->keys);
-        free(table->values);
-        *table = larger;
-    }
-    size_t at = known_slot(table, pair_key(a, b));
-    table->used += table->keys[at] == 0;
-    table->keys[at] = pair_key(a, b);
-    table->values[at] = value;
-    return true;
-}
-
-static double known_distance(const known *table, int32_t a, int32_t b) {
-    if (table->slots == 0) return NAN;
-    size_t at = known_slot(table, pair_key(a, b));
-    return table->keys[at] == 0 ? NAN : table->values[at];
-}
-
 /* ---- springs ---- */
 
-static bool spring_add(tml_spring_set *set, known *table, int32_t a, int32_t b, double length) {
-    if (!isnan(known_distance(table, a, b))) return true;
+static bool spring_add(tml_spring_set *set, int32_t a, int32_t b, double length) {
     size_t pairs = (size_t)set->capacity, lengths = (size_t)set->capacity, need = (size_t)set->count + 1;
     if (!tml_grow(&set->pairs, &pairs, need, sizeof *set->pairs)) return false;
     if (!tml_grow(&set->length, &lengths, need, sizeof *set->length)) return false;
     set->capacity = (int32_t)pairs;
     set->pairs[set->count] = (tml_pair){a, b};
     set->length[set->count++] = length;
-    return known_add(table, a, b, length);
+    return true;
 }
 
-/* Distance a-d across the bond b-c, from the five other distances and the torsion; NAN where one is not known. */
-static double across_torsion(const known *table, const tml_torsion *torsion) {
-    double ab = known_distance(table, torsion->a, torsion->b), bc = known_distance(table, torsion->b, torsion->c),
-           cd = known_distance(table, torsion->c, torsion->d), ac = known_distance(table, torsion->a, torsion->c),
-           bd = known_distance(table, torsion->b, torsion->d);
-    /* b at the origin, c at (bc, 0): heights and feet of a and d over the axis. */
-    double foot_a = (ab * ab + bc * bc - ac * ac) / (2 * bc), foot_d = (bd * bd + bc * bc - cd * cd) / (2 * bc);
-    double height_a = sqrt(fmax(ab * ab - foot_a * foot_a, 0)), height_d = sqrt(fmax(bd * bd - foot_d * foot_d, 0));
-    double along = foot_a - foot_d;
-    return sqrt(along * along + height_a * height_a + height_d * height_d - 2 * height_a * height_d * cos(torsion->angle));
+static bool spring_for(void *context, tml_fixed fixed, int32_t a, int32_t b, double length) {
+    tml_refiner *refiner = context;
+    return spring_add(fixed == TML_FIXED_BOND    ? &refiner->bonds
+                      : fixed == TML_FIXED_ANGLE ? &refiner->angles
+                                                 : &refiner->planars,
+                      a, b, length);
 }
 
 /* Fill up to a multiple of four with the dummy pair, at its distance of 1 Å. */
 static bool spring_pad(tml_spring_set *set, int32_t atom_count) {
-    known none = {0};
-    while (set->count % 4 != 0) {
-        bool added = spring_add(set, &none, atom_count, atom_count + 1, 1.0);
-        free(none.keys);
-        free(none.values);
-        none = (known){0};
-        if (!added) return false;
-    }
+    while (set->count % 4 != 0)
+        if (!spring_add(set, atom_count, atom_count + 1, 1.0)) return false;
     return true;
 }
 
-static tml_status make_springs(tml_refiner *refiner, known *table, tml_error *error) {
+static tml_status make_springs(tml_refiner *refiner, tml_geometry *table, tml_error *error) {
     const tml_molecule *molecule = &refiner->problem->molecule;
     const double KNOWN_TORSION = 10.0 * PI / 180.0; /* wider ones are ranges, not values */
-    bool room = true;
-    for (int32_t i = 0; room && i < molecule->bond_count; i++) {
-        const tml_bond *bond = &molecule->bonds[i];
-        room = spring_add(&refiner->bonds, table, bond->a, bond->b, bond->length);
-    }
-    for (int32_t i = 0; room && i < molecule->angle_count; i++) {
-        const tml_angle *angle = &molecule->angles[i];
-        double ab = known_distance(table, angle->a, angle->b), bc = known_distance(table, angle->b, angle->c);
-        double ac = sqrt(ab * ab + bc * bc - 2 * ab * bc * cos(angle->angle));
-        if (!isnan(ac)) room = spring_add(&refiner->angles, table, angle->a, angle->c, ac);
-    }
-    for (int32_t i = 0; room && i < molecule->plane_count; i++) {
-        const tml_plane *plane = &molecule->planes[i];
-        const int32_t *atoms = &molecule->plane_atoms[plane->first];
-        const double *xy = &molecule->plane_xy[2 * plane->first];
-        for (int32_t j = 0; room && plane->has_xy && j < plane->count; j++)
-            for (int32_t k = 0; room && k < j; k++)
-                room = spring_add(&refiner->planars, table, atoms[k], atoms[j],
-                                  hypot(xy[2 * j] - xy[2 * k], xy[2 * j + 1] - xy[2 * k + 1]));
-    }
+    bool room = tml_geometry_fill(table, molecule, spring_for, refiner);
     for (int32_t i = 0; room && i < molecule->torsion_count; i++) {
         const tml_torsion *torsion = &molecule->torsions[i];
-        if (torsion->kind != TML_TORSION_FIXED && torsion->kind != TML_TORSION_PEPTIDE) continue;
-        double length = torsion->tolerance < KNOWN_TORSION ? across_torsion(table, torsion) : NAN;
-        if (!isnan(length)) room = spring_add(&refiner->planars, table, torsion->a, torsion->d, length);
+        bool known = (torsion->kind == TML_TORSION_FIXED || torsion->kind == TML_TORSION_PEPTIDE) && torsion->tolerance < KNOWN_TORSION;
+        if (!known || !isnan(tml_geometry_distance(table, torsion->a, torsion->d))) continue;
+        double length = tml_geometry_across(table, torsion->a, torsion->b, torsion->c, torsion->d, torsion->angle);
+        if (!isnan(length)) room = spring_add(&refiner->planars, torsion->a, torsion->d, length);
     }
     room = room && spring_pad(&refiner->bonds, refiner->atom_count) && spring_pad(&refiner->angles, refiner->atom_count) &&
            spring_pad(&refiner->planars, refiner->atom_count);
@@ -196,13 +115,13 @@ static tml_status make_springs(tml_refiner *refiner, known *table, tml_error *er
 /* ---- volumes ---- */
 
 /* Signed volume of three arms from lengths and the distances between their ends; NAN where one is not known. */
-static double ideal_volume(const known *table, int32_t centre, int32_t p, int32_t q, int32_t r) {
+static double ideal_volume(const tml_geometry *table, int32_t centre, int32_t p, int32_t q, int32_t r) {
     const int32_t arm[3] = {p, q, r};
     double length[3], cosine[3];
-    for (int k = 0; k < 3; k++) length[k] = known_distance(table, centre, arm[k]);
+    for (int k = 0; k < 3; k++) length[k] = tml_geometry_distance(table, centre, arm[k]);
     for (int k = 0; k < 3; k++) {
         int i = (k + 1) % 3, j = (k + 2) % 3;
-        double d = known_distance(table, arm[i], arm[j]);
+        double d = tml_geometry_distance(table, arm[i], arm[j]);
         cosine[k] = (length[i] * length[i] + length[j] * length[j] - d * d) / (2 * length[i] * length[j]);
     }
     double gram = 1 + 2 * cosine[0] * cosine[1] * cosine[2] - cosine[0] * cosine[0] - cosine[1] * cosine[1] - cosine[2] * cosine[2];
@@ -213,7 +132,7 @@ static double ideal_volume(const known *table, int32_t centre, int32_t p, int32_
  * known either, so the sign is asked for with a volume that tetrahedral single bonds have. */
 static const double USUAL_VOLUME = 2.0;
 
-static tml_status make_volumes(tml_refiner *refiner, const known *table, tml_error *error) {
+static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, tml_error *error) {
     static const int TRIPLE[4][3] = {{0, 1, 2}, {0, 1, 3}, {0, 2, 3}, {1, 2, 3}};
     static const int TURN[4] = {1, -1, 1, -1}; /* of a tetrahedron's triples against the first */
     const tml_molecule *molecule = &refiner->problem->molecule;
@@ -372,44 +291,7 @@ static tml_status make_backbones(tml_refiner *refiner, tml_error *error) {
 
 /* ---- contacts ---- */
 
-enum { CLASS_LIMIT = 64, NEAR_REACH = 128 };
-
-static bool polar_hydrogen(const tml_molecule *molecule, int32_t atom) {
-    if (molecule->atoms[atom].element != 1) return false;
-    for (int32_t k = molecule->neighbour_first[atom]; k < molecule->neighbour_first[atom + 1]; k++)
-        if (molecule->atoms[molecule->neighbours[k]].element != 6) return true;
-    return false;
-}
-
-/* Atoms of one element, and hydrogens of one polarity, have the same contact distances. */
-static bool make_classes(tml_refiner *refiner) {
-    const tml_molecule *molecule = &refiner->problem->molecule;
-    int32_t example[CLASS_LIMIT], key[CLASS_LIMIT];
-    refiner->contact_class = tml_alloc((size_t)refiner->atom_count, 1);
-    if (refiner->contact_class == NULL) return false;
-    for (int32_t i = 0; i < refiner->atom_count; i++) {
-        int32_t mine = 2 * molecule->atoms[i].element + polar_hydrogen(molecule, i), found = 0;
-        while (found < refiner->class_count && key[found] != mine) found++;
-        if (found == refiner->class_count && found < CLASS_LIMIT) {
-            key[found] = mine;
-            example[found] = i;
-            refiner->class_count++;
-        }
-        refiner->contact_class[i] = (uint8_t)(found < CLASS_LIMIT ? found : CLASS_LIMIT - 1);
-    }
-    size_t count = (size_t)refiner->class_count;
-    refiner->contact = tml_alloc(count * count, sizeof *refiner->contact);
-    refiner->reach = tml_alloc(count, sizeof *refiner->reach);
-    if (refiner->contact == NULL || refiner->reach == NULL) return false;
-    for (size_t a = 0; a < count; a++)
-        for (size_t b = 0; b < count; b++) {
-            float contact = (float)tml_soft_contact(molecule, example[a], example[b]);
-            refiner->contact[a * count + b] = contact;
-            if (contact > refiner->reach[a]) refiner->reach[a] = contact;
-            if (contact > refiner->contact_max) refiner->contact_max = contact;
-        }
-    return true;
-}
+enum { NEAR_REACH = 128 };
 
 typedef struct far_list { tml_pair *pairs; size_t count, capacity; } far_list;
 
@@ -431,8 +313,15 @@ static int compare_pairs(const void *left, const void *right) {
     return l->b < r->b ? -1 : l->b > r->b;
 }
 
+typedef struct silencing { tml_refiner *refiner; far_list *far; } silencing;
+
+static bool silence_pair(void *context, int32_t a, int32_t b) {
+    silencing *all = context;
+    return silence(all->refiner, all->far, a, b);
+}
+
 /* Pairs within three bonds of each other do not repel, nor do those whose distance the geometry fixes. */
-static bool silence_all(tml_refiner *refiner, const known *table, far_list *far) {
+static bool silence_all(tml_refiner *refiner, const tml_geometry *table, far_list *far) {
     const tml_molecule *molecule = &refiner->problem->molecule;
     const int32_t *first = molecule->neighbour_first, *next = molecule->neighbours;
     for (int32_t a = 0; a < molecule->atom_count; a++)
@@ -444,20 +333,17 @@ static bool silence_all(tml_refiner *refiner, const known *table, far_list *far)
                     if (!silence(refiner, far, a, next[k])) return false;
             }
         }
-    for (size_t i = 0; i < table->slots; i++)
-        if (table->keys[i] != 0) {
-            uint64_t key = table->keys[i] - 1;
-            if (!silence(refiner, far, (int32_t)(key >> 32), (int32_t)(key & 0xffffffffu))) return false;
-        }
-    return true;
+    silencing all = {refiner, far};
+    return tml_geometry_each(table, silence_pair, &all);
 }
 
-static tml_status make_contacts(tml_refiner *refiner, const known *table, tml_error *error) {
+static tml_status make_contacts(tml_refiner *refiner, const tml_geometry *table, tml_error *error) {
     size_t count = (size_t)refiner->atom_count;
     far_list far = {0};
     refiner->near_mask = tml_alloc(count, sizeof *refiner->near_mask);
     refiner->far_first = tml_alloc(count + 1, sizeof *refiner->far_first);
-    bool room = refiner->near_mask != NULL && refiner->far_first != NULL && make_classes(refiner) && silence_all(refiner, table, &far);
+    bool room = refiner->near_mask != NULL && refiner->far_first != NULL &&
+                tml_contacts_make(&refiner->problem->molecule, &refiner->contacts) == TML_OK && silence_all(refiner, table, &far);
     if (room) {
         if (far.count > 0) qsort(far.pairs, far.count, sizeof *far.pairs, compare_pairs);
         refiner->far = tml_alloc(far.count, sizeof *refiner->far);

@@ -6,6 +6,7 @@
 #ifndef TML_TERMS_H
 #define TML_TERMS_H
 
+#include "bounds/radii.h"
 #include "refine/refine.h"
 
 /* Two atoms at a wanted distance. */
@@ -45,10 +46,7 @@ struct tml_refiner {
     tml_choice_term *choices;   int32_t choice_count;
     tml_torsion_term *torsions; int32_t torsion_count;
     tml_backbone_term *backbones; int32_t backbone_count;
-    uint8_t *contact_class;    int32_t class_count;  /* per atom */
-    float *contact;            /* class_count² contact distances */
-    float *reach;                      /* per class, its largest contact distance */
-    float contact_max;
+    tml_contacts contacts;             /* what repels whom, and from how near */
     uint64_t (*near_mask)[2];  /* bit d-1 of atom i: atom i+d is not repelled */
     int32_t *far_first, *far;  /* the same for partners 129 and more ahead: far[far_first[i] … far_first[i+1]-1] */
 };
