@@ -149,22 +149,24 @@ static tml_status fit_threads(const tml_problem *problem, int wanted, int *threa
 /* What a thread works with. */
 typedef struct bench {
     float *distance;
-    double *start, *spare; /* up to four coordinates an atom; three */
+    int32_t *order;        /* of the rows of distance */
+    double *drawn;         /* coordinates in that order, up to four an atom */
+    double *start, *spare; /* three an atom */
     tml_timing timing;
 } bench;
 
 /* Coordinates in three dimensions from the drawn distances; a fourth dimension is squeezed out by degrees. */
 static tml_status place(const run *work, bench *tools, double *eigenvalues, tml_error *error) {
     int32_t n = work->bounds->n, dimensions = work->options->dimensions;
-    tml_status status = tml_embed(tools->distance, n, work->bounds->stride, dimensions, tools->start, eigenvalues, error);
-    if (status == TML_OK)
-        status = tml_majorize(tools->distance, n, work->bounds->stride, dimensions, MAJORIZE_STEPS, tools->start, error);
+    size_t stride = work->bounds->stride;
+    tml_status status = tml_embed(tools->distance, n, stride, dimensions, tools->drawn, eigenvalues, error);
+    if (status == TML_OK) status = tml_majorize(tools->distance, n, stride, dimensions, MAJORIZE_STEPS, tools->drawn, error);
     for (int step = 0; status == TML_OK && dimensions == 4 && step < SQUEEZE_STEPS; step++) {
-        for (int32_t i = 0; i < n; i++) tools->start[4 * i + 3] *= SQUEEZE;
-        status = tml_majorize(tools->distance, n, work->bounds->stride, dimensions, 1, tools->start, error);
+        for (int32_t i = 0; i < n; i++) tools->drawn[4 * i + 3] *= SQUEEZE;
+        status = tml_majorize(tools->distance, n, stride, dimensions, 1, tools->drawn, error);
     }
-    for (int32_t i = 0; dimensions == 4 && i < n; i++)
-        for (int k = 0; k < 3; k++) tools->start[3 * i + k] = tools->start[4 * i + k];
+    for (int32_t i = 0; i < n; i++)
+        for (int k = 0; k < 3; k++) tools->start[3 * tools->order[i] + k] = tools->drawn[dimensions * i + k];
     return status;
 }
 
@@ -186,9 +188,10 @@ static tml_status try_once(const run *work, bench *tools, int trial, tml_model *
     if (model->xyz == NULL) return tml_no_memory(error);
 
     double t0 = tml_seconds();
-    tml_metrize(work->bounds, work->options->metrize_roots > 0 ? work->options->metrize_roots : work->bounds->n, &pcg, tools->distance);
+    tml_status status = tml_metrize(work->bounds, work->options->metrize_roots > 0 ? work->options->metrize_roots : work->bounds->n,
+                                    &pcg, tools->distance, tools->order, error);
     double t1 = tml_seconds();
-    tml_status status = place(work, tools, model->eigenvalues, error);
+    if (status == TML_OK) status = place(work, tools, model->eigenvalues, error);
     double t2 = tml_seconds();
     tools->timing.metrize += t1 - t0;
     tools->timing.embed += t2 - t1;
@@ -252,9 +255,11 @@ static void work_on_trials(run *work) {
     const size_t n = (size_t)work->bounds->n;
     tml_error error = {0};
     bench tools = {.distance = tml_alloc_aligned(n * work->bounds->stride, sizeof(float)),
-                   .start = tml_alloc(4 * n, sizeof(double)),
+                   .order = tml_alloc(n, sizeof(int32_t)),
+                   .drawn = tml_alloc(4 * n, sizeof(double)),
+                   .start = tml_alloc(3 * n, sizeof(double)),
                    .spare = tml_alloc(3 * n, sizeof(double))};
-    if (tools.distance == NULL || tools.start == NULL || tools.spare == NULL) {
+    if (tools.distance == NULL || tools.order == NULL || tools.drawn == NULL || tools.start == NULL || tools.spare == NULL) {
 #pragma omp critical(tml_trials)
         work->status = tml_no_memory(&work->error);
     } else {
@@ -271,6 +276,8 @@ static void work_on_trials(run *work) {
         work->timing.refine += tools.timing.refine;
     }
     free(tools.distance);
+    free(tools.order);
+    free(tools.drawn);
     free(tools.start);
     free(tools.spare);
 }
