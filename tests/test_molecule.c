@@ -755,6 +755,23 @@ Test(molecule, a_link_names_atoms_that_are_there) {
     must_refuse(b, "A:1:HB1: no such atom in SER; it has HB2, HB3", 90);
 }
 
+Test(molecule, a_link_names_residues_and_chains_that_are_there) {
+    bench *b = new_bench();
+    add_sequence(b, "A", "SER ALA");
+    add_link(b, address_of("A", "1", "OG"), address_of("A", "12", "CB"));
+    must_refuse(b, "A:12:CB: no such residue; nearest: 1", 90);
+    b = new_bench();
+    add_sequence(b, "A", "SER ALA");
+    add_link(b, address_of("A", "1", "OG"), address_of("Z", "2", "CB"));
+    must_refuse(b, "Z:2:CB: no such chain; nearest: A", 90);
+    b = new_bench();
+    add_sequence(b, "A", "SER ALA");
+    tml_address wrong = address_of("A", "1", "OG");
+    wrong.residue = "THR";
+    add_link(b, wrong, address_of("A", "2", "CB"));
+    must_refuse(b, "A:1 is SER, not THR", 90);
+}
+
 Test(molecule, a_link_needs_a_free_place) {
     bench *b = new_bench();
     add_sequence(b, "A", "GLY ASP GLY ASP GLY");
@@ -804,6 +821,7 @@ Test(molecule, ends_name_a_chain_that_is_there) {
 Test(molecule, what_is_not_there_is_answered_with_the_nearest) {
     bench *b = new_bench();
     add_sequence(b, "A", "ALA SER GLY");
+    add_atom(b, "", "", "C1", 6);
     must_build(b);
     char text[256];
     cr_assert_eq(tml_molecule_locate_residue(&b->molecule, "A", "2", text, sizeof text), 1);
@@ -814,6 +832,8 @@ Test(molecule, what_is_not_there_is_answered_with_the_nearest) {
     cr_assert_str_eq(text, "A:9: no such residue; chain A has 1 to 3");
     cr_assert_eq(tml_molecule_locate_residue(&b->molecule, "Z", "9", text, sizeof text), -1);
     cr_assert_str_eq(text, "Z:9: no such chain; nearest: A");
+    tml_molecule_suggest(&b->molecule, 3, "C9", text, sizeof text);
+    cr_assert_str_eq(text, "C9: no such atom; nearest: C1");
     char little[8];
     tml_molecule_suggest(&b->molecule, 1, "HB1", little, sizeof little);
     cr_assert_str_eq(little, "A:2:HB1");

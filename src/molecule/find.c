@@ -48,7 +48,8 @@ int32_t tml_molecule_locate_residue(const tml_molecule *molecule, const char *ch
         tml_nearest_start(&nearest, chain);
         for (int32_t c = 0; c < molecule->chain_count; c++)
             if (*molecule->chains[c].code != '\0') tml_nearest_offer(&nearest, molecule->chains[c].code);
-        snprintf(why, size, "%.32s:%.32s: no such chain; nearest: ", chain, number);
+        snprintf(why, size, "%.32s:%.32s: no such chain; %s", chain, number,
+                 nearest.count > 0 ? "nearest: " : "there are none");
         tml_nearest_append(&nearest, why, size);
     } else {
         const tml_chain *within = &molecule->chains[index];
@@ -70,10 +71,9 @@ void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const c
     tml_nearest_start(&nearest, name);
     for (int32_t i = 0; i < in->atom_count; i++) tml_nearest_offer(&nearest, molecule->atoms[in->first_atom + i].name);
     const char *colon = *in->chain != '\0' || *in->number != '\0' ? ":" : "";
-    snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom%s%.32s; it has ", in->chain, colon, in->number, colon, name,
-             *in->name == '\0' ? "" : " in ", in->name);
-    if (*in->name == '\0')
-        snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom; nearest: ", in->chain, colon, in->number, colon, name);
+    bool named = *in->name != '\0';
+    snprintf(text, size, "%.32s%s%.32s%s%.32s: no such atom%s%.32s; %s ", in->chain, colon, in->number, colon, name,
+             named ? " in " : "", in->name, named ? "it has" : "nearest:");
     tml_nearest_append(&nearest, text, size);
 }
 

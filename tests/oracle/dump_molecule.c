@@ -1,5 +1,6 @@
 /* Prints the terms of a molecule as tab-separated rows, for the oracle scripts.
  *
+ *   dump_molecule                                                     names of the residues that are built in
  *   dump_molecule [charged|neutral|open] RESIDUE[VARIANT][@cis]…      one chain A numbered from 1; CYS-HG, HIS-HE2, GLY@cis
  *
  * atom index residue name element charge; bond a b length; angle a b c degrees; torsion a b c d kind degrees tolerance;
@@ -12,6 +13,7 @@
 #include "base/vector.h"
 #include "molecule/elements.h"
 #include "molecule/molecule.h"
+#include "molecule/residue_data.h"
 
 static double degrees(double radians) {
     return radians * 180 / TML_PI;
@@ -46,6 +48,9 @@ static void print(const tml_molecule *m) {
 }
 
 int main(int argc, char **argv) {
+    if (argc == 1)
+        for (const tml_template *form = tml_templates; form->name != NULL; form++) puts(form->name);
+    if (argc == 1) return 0;
     tml_strings *pool = tml_strings_new();
     tml_outline outline = {0};
     outline.residues = calloc((size_t)argc, sizeof *outline.residues);
