@@ -97,7 +97,7 @@ static bool take_selection(const tml_command *self, const char *value, bool *low
 }
 
 static bool take_option(const tml_command *self, int got, const char *value, settings *set) {
-    enum { MODELS_MOST = 100000, TRIALS_MOST = 10000000 };
+    enum { MODELS_MOST = 9999, TRIALS_MOST = 1000000 };
     tml_build_options *build = &set->build;
     switch (got) {
     case 'o': set->output = value; return true;
@@ -132,6 +132,9 @@ static int settle(const tml_command *self, settings *set, char *const *inputs, i
         return tml_cli_usage(self, "--format and the name '%s' tell different formats.", set->output);
     if (set->summary != NULL && strcmp(set->summary, set->output) == 0)
         return tml_cli_usage(self, "Models and summary cannot both go to '%s'.", set->output);
+    if (set->build.trials != 0 && set->build.trials < set->build.models)
+        return tml_cli_usage(self, "%d trials cannot give %d models; ask for fewer with --models.", set->build.trials,
+                             set->build.models);
     if (!tml_cli_output_good(self, set->output, inputs, count, &exit_status)) return exit_status;
     if (!tml_cli_output_good(self, set->summary, inputs, count, &exit_status)) return exit_status;
     return TML_EXIT_DONE;

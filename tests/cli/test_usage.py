@@ -57,6 +57,9 @@ class Usage(harness.CommandTest):
             for value in values:
                 self.bad('build', FIVE_RING, '-o', 'm.pdb', f'{option}={value}', says=f'{option} takes a number from')
 
+    def test_fewer_trials_than_models(self):
+        self.bad('build', FIVE_RING, '-o', 'm.pdb', '--trials', 3, says='3 trials cannot give 20 models')
+
     def test_seeds(self):
         for value in ('-1', '18446744073709551616', '1.5', '+1', '', '1 '):
             self.bad('build', FIVE_RING, '-o', 'm.pdb', f'--seed={value}', says='--seed takes a whole number')
