@@ -153,7 +153,5 @@ tml_status tml_ensemble_write(const tml_ensemble *ensemble, const tml_contradict
     tml_format format = tml_format_of(path, &compressed);
     if (format == TML_FORMAT_UNKNOWN)
         return tml_fail_at(error, TML_BAD_INPUT, path, 0, 0, "the name does not end in .pdb, .cif, .pdb.gz or .cif.gz");
-    tml_status status = tml_format_fits(&ensemble->problem->molecule, format, error);
-    if (status != TML_OK) return status;
     return tml_write_models(ensemble, found == NULL ? &none : found, path, format, compressed, error);
 }

@@ -160,7 +160,7 @@ static int build_and_write(const settings *set, tml_problem *problem, const tml_
     tml_contradictions found = {0};
     int exit_status;
     double read = tml_seconds() - started;
-    if (tml_format_fits(&problem->molecule, set->format, &error) != TML_OK) {
+    if (tml_format_fits(&problem->molecule, set->build.models, set->format, &error) != TML_OK) {
         tml_cli_failed(&error);
         return TML_EXIT_USAGE;
     }

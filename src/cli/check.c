@@ -1,5 +1,6 @@
 /* check.c: `trammel check`: are the inputs consistent, and if not, which limits fight. */
 #include <stdio.h>
+#include <stdlib.h>
 
 #include "cli/command.h"
 #include "output/output.h"
@@ -55,12 +56,15 @@ static int smooth_and_report(const settings *set, const tml_problem *problem, co
     tml_error error = {0};
     tml_bounds *bounds = NULL;
     tml_contradictions found = {0};
+    tml_use *uses = NULL;
     bool to_stdout = set->json != NULL && set->json[0] == '-' && set->json[1] == '\0';
     tml_status status = tml_bounds_prepare(problem, set->threads, watch, &bounds, &found, &error);
     tml_bounds_free(bounds);
     if (status == TML_OK || status == TML_CONTRADICTED) status = TML_OK;
-    if (status == TML_OK && !to_stdout) status = tml_print_check(stdout, problem, &found, &error);
-    if (status == TML_OK && set->json != NULL) status = tml_write_check_json(problem, &found, set->json, &error);
+    if (status == TML_OK) status = tml_restraints_judge(problem, set->threads, watch, &uses, &error);
+    if (status == TML_OK && !to_stdout) status = tml_print_check(stdout, problem, &found, uses, &error);
+    if (status == TML_OK && set->json != NULL) status = tml_write_check_json(problem, &found, uses, set->json, &error);
+    free(uses);
     int exit_status = found.count > 0 ? TML_EXIT_FINDING : TML_EXIT_DONE;
     if (status != TML_OK) exit_status = tml_cli_failed(&error);
     tml_contradictions_clear(&found);

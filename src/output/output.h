@@ -8,7 +8,7 @@
 
 #include <stdio.h>
 
-#include "bounds/bounds.h"
+#include "bounds/redundant.h"
 #include "ensemble/ensemble.h"
 
 typedef enum tml_format { TML_FORMAT_UNKNOWN, TML_FORMAT_PDB, TML_FORMAT_CIF } tml_format;
@@ -16,9 +16,9 @@ typedef enum tml_format { TML_FORMAT_UNKNOWN, TML_FORMAT_PDB, TML_FORMAT_CIF } t
 /* Format by suffix: .pdb or .cif, either with .gz after it; TML_FORMAT_UNKNOWN otherwise. *compressed is set. */
 tml_format tml_format_of(const char *path, bool *compressed);
 
-/* Check, before any work, that the molecule fits the format (PDB: 99,999 atoms, 9,999 residues a chain, one-letter chains);
- * the message advises mmCIF. */
-tml_status tml_format_fits(const tml_molecule *molecule, tml_format format, tml_error *error);
+/* Check, before any work, that so many models of the molecule fit the format (PDB: 99,999 atoms, 9,999 residues a chain, chains
+ * of one letter, names and numbers within their columns, 9,999 models); TML_TOO_LARGE with a message that advises mmCIF. */
+tml_status tml_format_fits(const tml_molecule *molecule, int32_t models, tml_format format, tml_error *error);
 
 /* Write all models; no time, path or thread count goes into the file. */
 tml_status tml_write_models(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_format format,
@@ -30,9 +30,11 @@ tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradi
 /* The summary of a build for people. */
 tml_status tml_print_build(FILE *out, const tml_ensemble *ensemble, const tml_contradictions *found, tml_error *error);
 
-/* The report of a check: for programs (JSON) and for people. */
-tml_status tml_write_check_json(const tml_problem *problem, const tml_contradictions *found, const char *path, tml_error *error);
-tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_contradictions *found, tml_error *error);
+/* The report of a check: for programs (JSON) and for people. uses: from tml_restraints_judge, or NULL. */
+tml_status tml_write_check_json(const tml_problem *problem, const tml_contradictions *found, const tml_use *uses,
+                                const char *path, tml_error *error);
+tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_contradictions *found, const tml_use *uses,
+                           tml_error *error);
 
 /* Smoothed limits as a table: heading, then atom_1, atom_2, lower, upper, tab-separated, four decimals, "-" for no upper. */
 tml_status tml_write_bounds(const tml_problem *problem, const tml_bounds *bounds, const char *path, tml_error *error);

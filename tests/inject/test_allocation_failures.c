@@ -112,8 +112,8 @@ static tml_status check_way(const char *const *paths, size_t count) {
     tml_status status = tml_problem_read(paths, count, &problem, &error);
     if (status == TML_OK) status = tml_bounds_prepare(problem, 1, NULL, &bounds, &found, &error);
     if (status == TML_CONTRADICTED) status = TML_OK;
-    if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, &error);
-    if (status == TML_OK) status = tml_write_check_json(problem, &found, in_folder("check.json"), &error);
+    if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, NULL, &error);
+    if (status == TML_OK) status = tml_write_check_json(problem, &found, NULL, in_folder("check.json"), &error);
     if (status == TML_OK) status = tml_write_bounds(problem, bounds, in_folder("bounds.gz"), &error);
     fclose(nowhere);
     tml_contradictions_clear(&found);
