@@ -103,7 +103,7 @@ tml_status tml_build(tml_problem *problem, const tml_build_options *options, con
     }
     tml_bounds_free(bounds);
     tml_refiner_free(refiner);
-    if (status != TML_OK && status != TML_SHORT) {
+    if (ensemble == NULL || (status != TML_OK && status != TML_SHORT)) {
         tml_ensemble_free(ensemble);
         return status;
     }

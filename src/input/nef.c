@@ -92,6 +92,7 @@ typedef struct address_columns { int chain, number, residue, atom; } address_col
 static tml_status find_address(nef *in, const tml_star_loop *loop, int which, address_columns *out) {
     static const char *const NAMES[4] = {"chain_code", "sequence_code", "residue_name", "atom_name"};
     int *columns[4] = {&out->chain, &out->number, &out->residue, &out->atom};
+    *out = (address_columns){-1, -1, -1, -1};
     for (int k = 0; k < 4; k++) {
         char name[32];
         snprintf(name, sizeof name, "%s_%d", NAMES[k], which);

@@ -47,7 +47,7 @@ static bool add(filling *f, tml_fixed fixed, int32_t a, int32_t b, double length
     if (f->table->used * 2 >= f->table->slots && !enlarge(f->table)) return false;
     size_t at = slot_of(f->table, key_of(a, b));
     f->table->keys[at] = key_of(a, b);
-    f->table->values[at] = length;
+    f->table->values[at] = length; /* NOLINT(clang-analyzer-unix.Malloc): enlarge replaced the array that it freed */
     f->table->used++;
     return f->visit == NULL || f->visit(f->context, fixed, a, b, length);
 }

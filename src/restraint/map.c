@@ -174,8 +174,9 @@ static tml_status add_alternative(map *m, const int32_t *a, int32_t count_a, con
         for (int32_t j = 0; j < count_b; j++) same += a[i] == b[j];
     *added = false;
     if ((int64_t)count_a * count_b - same == 0) {
-        tml_molecule_address(&m->problem->molecule, a[0], m->why, sizeof m->why - 40);
-        strcat(m->why, ": both sides name the same atom");
+        char address[128];
+        tml_molecule_address(&m->problem->molecule, a[0], address, sizeof address);
+        snprintf(m->why, sizeof m->why, "%s: both sides name the same atom", address);
         return TML_OK;
     }
     if ((int64_t)count_a * count_b > MOST_PAIRS) return tml_fail(m->error, TML_TOO_LARGE, "a restraint over more than %d pairs", MOST_PAIRS);
@@ -236,6 +237,11 @@ static void drop_combination(map *m, tml_distance_restraint *restraint, int32_t 
     m->out->alternative_count = restraint->first_alternative + kept;
 }
 
+/* Limits as the rows write them: NAN, an open limit, equals itself. */
+static bool same_limit(double a, double b) {
+    return a == b || (isnan(a) && isnan(b));
+}
+
 static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, const char **known) {
     const tml_distance_row *first = &m->rows->distances[order[0]];
     tml_restraints *out = m->out;
@@ -259,7 +265,7 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
         if (status != TML_OK) return status == TML_NO_MEMORY ? tml_no_memory(m->error) : status;
         lost += !whole;
         if (!whole && combination >= 0) drop_combination(m, restraint, combination);
-        differing += memcmp(&row->lower, &first->lower, sizeof row->lower) != 0 || memcmp(&row->upper, &first->upper, sizeof row->upper) != 0;
+        differing += !same_limit(row->lower, first->lower) || !same_limit(row->upper, first->upper);
     }
     restraint->alternative_count = out->alternative_count - restraint->first_alternative;
     if (restraint->alternative_count == 0) return add_unmapped(m, first->list, first->id, first->place, false);
