@@ -60,11 +60,13 @@ typedef struct tml_contradiction { tml_step *steps; size_t step_count; double ex
 struct tml_contradictions { tml_contradiction *items; size_t count, capacity; };
 void tml_contradictions_clear(tml_contradictions *found);
 
-/* Fill the limits of a problem: covalent, radii, restraints (by the rule for sums over groups).
- *
- * givens   every limit with its source, for proofs; cleared by the caller with free(givens.items)
- */
-tml_status tml_bounds_fill(const tml_problem *problem, tml_bounds **out, tml_givens *givens, tml_error *error);
+/* Collect every given limit of a problem: covalent ones, and restraints by the rule for sums over groups.
+ * givens is appended to; the caller frees its items with free(). TML_OK or TML_NO_MEMORY. */
+tml_status tml_givens_collect(const tml_problem *problem, tml_givens *givens, tml_error *error);
+
+/* Limits from givens, over the floors of radii.h where nothing covalent holds two atoms together. Not smoothed.
+ * TML_OK, TML_TOO_LARGE or TML_NO_MEMORY. */
+tml_status tml_bounds_from_givens(const tml_problem *problem, const tml_givens *givens, tml_bounds **out, tml_error *error);
 
 /* Tighten all limits to their triangle-inequality closure.
  *
@@ -79,9 +81,18 @@ tml_status tml_bounds_smooth(tml_bounds *bounds, int threads, const tml_watch *w
 /* The same with vectors of a given width, for tests and benchmarks. */
 tml_status tml_bounds_smooth_with(tml_bounds *bounds, int threads, tml_width width, const tml_watch *watch, tml_error *error);
 
-/* The contradictions of a problem with their proofs, shortest first, found in double from the given limits; chains that share
- * no restraint of the user's with one another. `tolerance` is the excess, Å, from which it counts (0.001). */
-tml_status tml_contradictions_find(const tml_problem *problem, const tml_givens *givens, const tml_bounds *unsmoothed,
-                                   double tolerance, tml_contradictions *found, tml_error *error);
+/* Contradictions with their proofs, found in double from the given limits, shortest proofs first; of proofs that share a
+ * restraint of the user's only the shortest is kept.
+ *
+ * closed       the limits after tml_bounds_smooth returned TML_CONTRADICTED: its uppers are closed, its lowers as given
+ * tolerance    the excess, Å, from which it counts
+ * found        what is found is appended
+ */
+tml_status tml_contradictions_find(const tml_problem *problem, const tml_givens *givens, const tml_bounds *closed, double tolerance,
+                                   tml_contradictions *found, tml_error *error);
+
+/* Give pairs without an upper limit one to draw under: 1.5 times the largest limit of all, and at least 30 Å. Limits that were
+ * closed stay so. */
+void tml_bounds_cap(tml_bounds *bounds);
 
 #endif
