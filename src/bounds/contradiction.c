@@ -18,7 +18,7 @@ static const double MARGIN = 0.002;
 /* Pairs looked at in one finding, those with the greatest excess; and rounds of loosening before all blamed limits go. */
 enum { MOST_PAIRS = 4000, MOST_ROUNDS = 200 };
 /* The upper limit for drawing where there is none: this many times the largest that there is, and at least so many Å. */
-static const double CAP_FACTOR = 1.5, CAP_LEAST = 30.0;
+static const float CAP_FACTOR = 1.5f, CAP_LEAST = 30.0f;
 
 /* ---- finding ---- */
 
@@ -234,15 +234,15 @@ static void lower_floors(tml_bounds *bounds, const tml_contradictions *found) {
     }
 }
 
-/* Give the pairs without an upper limit one to draw under: closure is kept, since it is more than half of any other. */
-static void cap(tml_bounds *bounds) {
-    float longest = (float)(CAP_LEAST / CAP_FACTOR);
+/* Closure is kept, since the cap is more than half of any other upper limit. */
+void tml_bounds_cap(tml_bounds *bounds) {
+    float longest = CAP_LEAST / CAP_FACTOR;
     for (int32_t i = 0; i < bounds->n; i++)
         for (int32_t j = 0; j < i; j++) {
             float upper = tml_bounds_upper(bounds, i, j);
             longest = fmaxf(longest, fmaxf(isinf(upper) ? 0 : upper, tml_bounds_lower(bounds, i, j)));
         }
-    float limit = (float)CAP_FACTOR * longest;
+    float limit = CAP_FACTOR * longest;
     for (int32_t i = 0; i < bounds->n; i++)
         for (int32_t j = i + 1; j < bounds->n; j++)
             if (isinf(*tml_bounds_cell(bounds, i, j))) *tml_bounds_cell(bounds, i, j) = limit;
@@ -269,8 +269,8 @@ static tml_status append(tml_contradictions *all, tml_contradictions *round, tml
     return TML_OK;
 }
 
-tml_status tml_bounds_close(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out, tml_contradictions *found,
-                            tml_error *error) {
+tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out, tml_contradictions *found,
+                              tml_error *error) {
     tml_givens givens = {0};
     tml_contradictions all = {0};
     tml_status status = tml_givens_collect(problem, &givens, error);
@@ -296,9 +296,4 @@ tml_status tml_bounds_close(const tml_problem *problem, int threads, const tml_w
     tml_bounds_free(*out);
     *out = NULL;
     return status;
-}
-
-tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out, tml_contradictions *found,
-                              tml_error *error) {
-    return tml_bounds_close(problem, threads, watch, out, found, error);
 }

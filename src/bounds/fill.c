@@ -16,7 +16,7 @@
 
 static const double PI = 3.14159265358979323846;
 /* What good structures stray from ideal distances across a torsion and within a planar group, Å. */
-static const double TORSION_SLACK = 0.15, PLANE_SLACK = 0.10;
+static const double TORSION_SLACK = 0.15, PLANE_SLACK = 0.15;
 /* A chain of covalent limits within one group is never longer than this, Å; farther means the group is not connected. */
 static const double GROUP_REACH = 40.0;
 
@@ -24,9 +24,11 @@ typedef struct filler {
     const tml_problem *problem;
     tml_givens *givens;
     tml_geometry geometry;
-    int32_t bond, angle; /* next to be visited by note_fixed */
+    int32_t bond, angle;     /* next to be visited by note_fixed */
+    int32_t *before, *after; /* per atom: the undeclared peptide bond on whose C (N) it stands, -1 for none */
 } filler;
 
+static bool find_assumed(filler *f);
 static bool note_fixed(void *context, tml_fixed fixed, int32_t a, int32_t b, double length);
 static bool fill_torsions(filler *f);
 static bool fill_dihedrals(filler *f);
@@ -34,9 +36,11 @@ static bool fill_restraints(filler *f);
 
 tml_status tml_givens_collect(const tml_problem *problem, tml_givens *givens, tml_error *error) {
     filler f = {.problem = problem, .givens = givens};
-    bool room = tml_geometry_fill(&f.geometry, &problem->molecule, note_fixed, &f) && fill_torsions(&f) && fill_dihedrals(&f) &&
+    bool room = find_assumed(&f) && tml_geometry_fill(&f.geometry, &problem->molecule, note_fixed, &f) && fill_torsions(&f) && fill_dihedrals(&f) &&
                 fill_restraints(&f);
     tml_geometry_clear(&f.geometry);
+    free(f.before);
+    free(f.after);
     return room ? TML_OK : tml_no_memory(error);
 }
 
@@ -54,6 +58,29 @@ static bool add_range(filler *f, int32_t a, int32_t b, double lower, double uppe
 }
 
 /* ---- covalent ---- */
+
+/* A peptide bond that nobody declared is taken as trans, which is an assumption of ours: what it fixes, the distances between the
+ * atoms on its C and those on its N, is conditional. */
+static bool find_assumed(filler *f) {
+    const tml_molecule *molecule = &f->problem->molecule;
+    f->before = tml_alloc((size_t)molecule->atom_count, sizeof *f->before);
+    f->after = tml_alloc((size_t)molecule->atom_count, sizeof *f->after);
+    if (f->before == NULL || f->after == NULL) return false;
+    for (int32_t i = 0; i < molecule->atom_count; i++) f->before[i] = f->after[i] = -1;
+    for (int32_t i = 0; i < molecule->peptide_count; i++) {
+        const tml_peptide *peptide = &molecule->peptides[i];
+        if (peptide->declared) continue;
+        for (int32_t k = molecule->neighbour_first[peptide->c]; k < molecule->neighbour_first[peptide->c + 1]; k++)
+            f->before[molecule->neighbours[k]] = i;
+        for (int32_t k = molecule->neighbour_first[peptide->n]; k < molecule->neighbour_first[peptide->n + 1]; k++)
+            f->after[molecule->neighbours[k]] = i;
+    }
+    return true;
+}
+
+static bool assumed(const filler *f, int32_t a, int32_t b) {
+    return (f->before[a] >= 0 && f->before[a] == f->after[b]) || (f->before[b] >= 0 && f->before[b] == f->after[a]);
+}
 
 static double across_angle(double ab, double bc, double angle) {
     return sqrt(ab * ab + bc * bc - 2 * ab * bc * cos(fmin(fmax(angle, 0), PI)));
@@ -79,7 +106,7 @@ static bool note_fixed(void *context, tml_fixed fixed, int32_t a, int32_t b, dou
         return add_range(f, a, b, across_angle(ab, bc, angle->angle - angle->tolerance), across_angle(ab, bc, angle->angle + angle->tolerance),
                          TML_REASON_ANGLE, false, -1);
     }
-    return add_range(f, a, b, length - PLANE_SLACK, length + PLANE_SLACK, TML_REASON_PLANE, false, -1);
+    return add_range(f, a, b, length - PLANE_SLACK, length + PLANE_SLACK, TML_REASON_PLANE, assumed(f, a, b), -1);
 }
 
 /* Least and greatest |angle| in [from, to], radians: the 1-4 distance grows with it. */
@@ -104,14 +131,6 @@ static bool add_across(filler *f, int32_t a, int32_t b, int32_t c, int32_t d, do
     return add_range(f, a, d, near - TORSION_SLACK, far + TORSION_SLACK, reason, conditional, source);
 }
 
-/* A peptide bond that nobody declared is taken as trans: an assumption of ours. */
-static bool is_assumed(const tml_molecule *molecule, const tml_torsion *torsion) {
-    if (torsion->kind != TML_TORSION_PEPTIDE) return false;
-    for (int32_t i = 0; i < molecule->peptide_count; i++)
-        if (is_pair(torsion->b, torsion->c, molecule->peptides[i].c, molecule->peptides[i].n)) return !molecule->peptides[i].declared;
-    return true;
-}
-
 static bool fill_torsions(filler *f) {
     const tml_molecule *molecule = &f->problem->molecule;
     for (int32_t i = 0; i < molecule->torsion_count; i++) {
@@ -119,7 +138,7 @@ static bool fill_torsions(filler *f) {
         if (!isnan(tml_geometry_distance(&f->geometry, torsion->a, torsion->d))) continue;
         bool known = torsion->kind == TML_TORSION_FIXED || torsion->kind == TML_TORSION_PEPTIDE;
         double from = known ? torsion->angle - torsion->tolerance : 0, to = known ? torsion->angle + torsion->tolerance : PI;
-        if (!add_across(f, torsion->a, torsion->b, torsion->c, torsion->d, from, to, TML_REASON_TORSION, is_assumed(molecule, torsion),
+        if (!add_across(f, torsion->a, torsion->b, torsion->c, torsion->d, from, to, TML_REASON_TORSION, assumed(f, torsion->a, torsion->d),
                         -1))
             return false;
     }

@@ -9,22 +9,23 @@
 
 /* One kernel: a tile of TML_TILE_ROWS rows and two vectors, kept in registers over the whole depth. The step macro STEP(c, a, b)
  * is one of the four semirings. */
+#define UNROLL _Pragma("GCC unroll 6")
 #define TILE_LOOP(V, W, LOAD, STORE, SPREAD, STEP)                                                     \
     do {                                                                                               \
         V c0[TML_TILE_ROWS], c1[TML_TILE_ROWS];                                                        \
-        for (int r = 0; r < TML_TILE_ROWS; r++) {                                                      \
+        UNROLL for (int r = 0; r < TML_TILE_ROWS; r++) {                                               \
             c0[r] = LOAD(c + (size_t)r * stride);                                                      \
             c1[r] = LOAD(c + (size_t)r * stride + W);                                                  \
         }                                                                                              \
         for (int k = 0; k < depth; k++, a += TML_TILE_ROWS, b += 2 * W) {                              \
             V b0 = LOAD(b), b1 = LOAD(b + W);                                                          \
-            _Pragma("GCC unroll 6") for (int r = 0; r < TML_TILE_ROWS; r++) {                          \
+            UNROLL for (int r = 0; r < TML_TILE_ROWS; r++) {                                           \
                 V s = SPREAD(a[r]);                                                                    \
                 c0[r] = STEP(c0[r], s, b0);                                                            \
                 c1[r] = STEP(c1[r], s, b1);                                                            \
             }                                                                                          \
         }                                                                                              \
-        for (int r = 0; r < TML_TILE_ROWS; r++) {                                                      \
+        UNROLL for (int r = 0; r < TML_TILE_ROWS; r++) {                                               \
             STORE(c + (size_t)r * stride, c0[r]);                                                      \
             STORE(c + (size_t)r * stride + W, c1[r]);                                                  \
         }                                                                                              \

@@ -50,6 +50,7 @@ static tml_status number_chains(tml_making *making) {
                                         .variant = from->variant,
                                         .linking = from->linking,
                                         .cis = from->cis,
+                                        .trans = from->trans,
                                         .previous = -1,
                                         .next = -1,
                                         .place = from->place};

@@ -27,7 +27,7 @@ typedef struct tml_layout_residue {
     const char *chain, *number, *name, *variant;
     const tml_template *form;  /* NULL for bare atoms */
     tml_linking linking;
-    bool cis;                  /* the peptide bond to the next residue */
+    bool cis, trans;           /* the peptide bond to the next residue is declared so */
     int32_t previous, next;    /* residues that peptide bonds lead to; -1 for none */
     int32_t chain_index;
     int32_t first_atom, atom_count;

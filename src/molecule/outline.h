@@ -26,7 +26,7 @@ typedef struct tml_outline_residue {
     const char *chain, *number, *name; /* chain code, sequence code as written, residue name */
     const char *variant;               /* atoms added or taken away, as in NEF ("-HD2,+HE2"); "" for none */
     tml_linking linking;
-    bool cis;                          /* the peptide bond between this residue and the next is cis */
+    bool cis, trans;                   /* the peptide bond between this residue and the next is declared so */
     tml_place place;
 } tml_outline_residue;
 

@@ -64,7 +64,7 @@ static tml_status add_peptide(tml_making *making, int32_t r) {
                              .residue2 = r,
                              .plane = -1,
                              .cis = before->cis,
-                             .declared = before->cis};
+                             .declared = before->cis || before->trans};
     for (int32_t k = molecule->neighbour_first[peptide->c]; k < molecule->neighbour_first[peptide->c + 1]; k++)
         if (molecule->neighbours[k] == peptide->n) peptide->bond = molecule->neighbour_bonds[k];
     return TML_OK;

@@ -1,0 +1,415 @@
+/* sheet.c: Trammel's own text: one statement a line, words apart by blanks, # for comments, "…" for quotes, - for an open limit.
+ *
+ *   lines and words
+ *   statements      one function each, by a table
+ *   addresses       chain:residue:atom, or a bare name
+ */
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "input/draft.h"
+#include "molecule/elements.h"
+#include "molecule/nearest.h"
+
+enum { MOST_WORDS = 4096, MOST_ALTERNATIVES = 256 };
+
+typedef struct word { const char *text; int length, column; bool quoted; } word;
+
+typedef struct sheet {
+    tml_draft *draft;
+    tml_error *error;
+    const char *path;
+    int32_t file, line;
+    word *words;
+    int count;
+    int limits, dihedrals; /* statements so far, for the ids of those that have none */
+    bool begun;
+} sheet;
+
+typedef tml_status statement_fn(sheet *s);
+
+/* ---- messages ---- */
+
+static tml_place here(const sheet *s, int index) {
+    return (tml_place){s->file, s->line, index < s->count ? s->words[index].column : s->words[s->count - 1].column + s->words[s->count - 1].length};
+}
+
+static tml_status expected(sheet *s, int index, const char *what) {
+    tml_place at = here(s, index);
+    if (index >= s->count) return tml_fail_at(s->error, TML_BAD_INPUT, s->path, at.line, at.column, "the line ends where %s is expected", what);
+    int shown = s->words[index].length > 40 ? 40 : s->words[index].length;
+    return tml_fail_at(s->error, TML_BAD_INPUT, s->path, at.line, at.column, "found '%.*s' where %s is expected", shown, s->words[index].text, what);
+}
+
+static tml_status no_more(sheet *s, int count) {
+    return s->count > count ? expected(s, count, "the end of the line") : TML_OK;
+}
+
+static bool is_word(const sheet *s, int index, const char *text) {
+    return index < s->count && !s->words[index].quoted && (size_t)s->words[index].length == strlen(text) &&
+           memcmp(s->words[index].text, text, (size_t)s->words[index].length) == 0;
+}
+
+static tml_status pooled(sheet *s, const char *text, size_t length, const char **out) {
+    *out = tml_strings_add_part(s->draft->problem->pool, text, length);
+    return *out == NULL ? tml_no_memory(s->error) : TML_OK;
+}
+
+static tml_status text_at(sheet *s, int index, const char *what, const char **out) {
+    if (index >= s->count || s->words[index].length == 0) return expected(s, index, what);
+    return pooled(s, s->words[index].text, (size_t)s->words[index].length, out);
+}
+
+static tml_status number_at(sheet *s, int index, const char *what, double *out) {
+    tml_star_value value = {.text = index < s->count ? s->words[index].text : "", .length = index < s->count ? s->words[index].length : 0};
+    if (index >= s->count || memchr(value.text, '(', (size_t)value.length) != NULL || !tml_star_number(&value, out)) return expected(s, index, what);
+    return TML_OK;
+}
+
+/* A limit: a number, or - for none. */
+static tml_status limit_at(sheet *s, int index, const char *what, double *out) {
+    *out = NAN;
+    return is_word(s, index, "-") ? TML_OK : number_at(s, index, what, out);
+}
+
+/* ---- addresses ---- */
+
+static tml_status address_from(sheet *s, int index, const char *text, size_t length, tml_address *out) {
+    const char *first = memchr(text, ':', length), *second = first == NULL ? NULL : memchr(first + 1, ':', length - (size_t)(first + 1 - text));
+    *out = (tml_address){.place = here(s, index)};
+    out->place.column += (int32_t)(text - s->words[index].text);
+    tml_status status = pooled(s, "", 0, &out->residue);
+    if (first == NULL) {
+        out->chain = out->number = out->residue;
+        if (length == 0) return expected(s, index, "an atom");
+        return status == TML_OK ? pooled(s, text, length, &out->atom) : status;
+    }
+    const char *end = text + length;
+    if (second == NULL || first == text || second == first + 1 || second + 1 == end || memchr(second + 1, ':', (size_t)(end - second - 1)) != NULL)
+        return expected(s, index, "an atom as chain:residue:atom, such as A:7:CA");
+    if (status == TML_OK) status = pooled(s, text, (size_t)(first - text), &out->chain);
+    if (status == TML_OK) status = pooled(s, first + 1, (size_t)(second - first - 1), &out->number);
+    return status == TML_OK ? pooled(s, second + 1, (size_t)(end - second - 1), &out->atom) : status;
+}
+
+static tml_status address_at(sheet *s, int index, tml_address *out) {
+    if (index >= s->count) return expected(s, index, "an atom");
+    return address_from(s, index, s->words[index].text, (size_t)s->words[index].length, out);
+}
+
+/* Addresses with commas between them, which mean 'or'. */
+static tml_status addresses_at(sheet *s, int index, tml_address *out, int room, int *count) {
+    if (index >= s->count) return expected(s, index, "an atom");
+    const char *text = s->words[index].text, *end = text + s->words[index].length;
+    for (*count = 0;;) {
+        const char *comma = memchr(text, ',', (size_t)(end - text));
+        if (*count == room) return expected(s, index, "fewer alternatives on one line");
+        tml_status status = address_from(s, index, text, (size_t)((comma == NULL ? end : comma) - text), &out[(*count)++]);
+        if (status != TML_OK || comma == NULL) return status;
+        text = comma + 1;
+    }
+}
+
+/* ---- statements ---- */
+
+static tml_status title_statement(sheet *s) {
+    if (s->count < 2) return expected(s, 1, "a title");
+    tml_status status = pooled(s, s->words[1].text, (size_t)s->words[1].length, &s->draft->problem->title);
+    return status == TML_OK ? no_more(s, 2) : status;
+}
+
+static tml_status atom_statement(sheet *s) {
+    tml_outline *outline = &s->draft->outline;
+    tml_address address;
+    tml_status status = address_at(s, 1, &address);
+    if (status != TML_OK) return status;
+    if (strpbrk(address.atom, "%*") != NULL) return expected(s, 1, "an atom's name without wildcards");
+    if (s->count < 3) return expected(s, 2, "an element, or bead");
+    char symbol[8] = "";
+    if (s->words[2].length < (int)sizeof symbol) memcpy(symbol, s->words[2].text, (size_t)s->words[2].length);
+    int element = is_word(s, 2, "bead") ? 0 : tml_element_number(symbol);
+    if (element < 0 || (element == 0 && !is_word(s, 2, "bead"))) return expected(s, 2, "an element's symbol, or bead");
+    if (!tml_grow(&outline->atoms, &outline->atom_capacity, outline->atom_count + 1, sizeof *outline->atoms)) return tml_no_memory(s->error);
+    outline->atoms[outline->atom_count++] = (tml_outline_atom){.chain = address.chain, .number = address.number, .residue = address.residue,
+                                                               .name = address.atom, .element = element, .place = address.place};
+    return no_more(s, 3);
+}
+
+/* The number of the residue after `number`, where a sequence goes on. */
+static tml_status next_number(sheet *s, int index, long number, const char **out) {
+    char text[24];
+    if (number > 99999999 || number < -99999999) return expected(s, index, "a residue number of at most eight digits");
+    snprintf(text, sizeof text, "%ld", number);
+    return pooled(s, text, strlen(text), out);
+}
+
+/* sequence CHAIN [FIRST] NAME …: a line without a number goes on where the chain's last one ended. */
+static tml_status sequence_statement(sheet *s) {
+    tml_outline *outline = &s->draft->outline;
+    const char *chain = NULL;
+    tml_status status = text_at(s, 1, "a chain", &chain);
+    if (status != TML_OK) return status;
+    long number = 0;
+    char *end = NULL;
+    int index = 2;
+    if (s->count > 2) number = strtol(s->words[2].text, &end, 10);
+    bool given = s->count > 2 && end == s->words[2].text + s->words[2].length;
+    size_t last = outline->residue_count;
+    while (last > 0 && outline->residues[last - 1].chain != chain) last--;
+    if (given)
+        index++;
+    else if (last > 0)
+        number = strtol(outline->residues[last - 1].number, NULL, 10) + 1;
+    else
+        return expected(s, 2, "the number of the first residue");
+    if (index >= s->count) return expected(s, index, "a residue");
+    for (; status == TML_OK && index < s->count; index++, number++) {
+        if (!tml_grow(&outline->residues, &outline->residue_capacity, outline->residue_count + 1, sizeof *outline->residues))
+            return tml_no_memory(s->error);
+        tml_outline_residue *residue = &outline->residues[outline->residue_count++];
+        *residue = (tml_outline_residue){.chain = chain, .place = here(s, index)};
+        status = next_number(s, index, number, &residue->number);
+        if (status == TML_OK) status = text_at(s, index, "a residue", &residue->name);
+        if (status == TML_OK) status = pooled(s, "", 0, &residue->variant);
+    }
+    return status;
+}
+
+/* The residue that words 1 and 2 name, among those of the sequences so far. */
+static tml_status residue_at(sheet *s, tml_outline_residue **out) {
+    const char *chain = NULL, *number = NULL;
+    tml_outline *outline = &s->draft->outline;
+    tml_status status = text_at(s, 1, "a chain", &chain);
+    if (status == TML_OK) status = text_at(s, 2, "a residue number", &number);
+    if (status != TML_OK) return status;
+    for (size_t i = outline->residue_count; i-- > 0;)
+        if (outline->residues[i].chain == chain && outline->residues[i].number == number) {
+            *out = &outline->residues[i];
+            return TML_OK;
+        }
+    return expected(s, 2, "a residue of a sequence above");
+}
+
+static tml_status variant_statement(sheet *s) {
+    tml_outline_residue *residue = NULL;
+    tml_status status = residue_at(s, &residue);
+    if (status == TML_OK) status = text_at(s, 3, "atoms added or taken away, such as -HD1,+HE2", &residue->variant);
+    return status == TML_OK ? no_more(s, 4) : status;
+}
+
+static tml_status ends_statement(sheet *s) {
+    static const char *const WORDS[] = {"charged", "neutral", "open"};
+    tml_outline *outline = &s->draft->outline;
+    tml_outline_ends ends = {.place = here(s, 1)};
+    tml_status status = text_at(s, 1, "a chain", &ends.chain);
+    if (status != TML_OK) return status;
+    int kind = 0;
+    while (kind < 3 && !is_word(s, 2, WORDS[kind])) kind++;
+    if (kind == 3) return expected(s, 2, "charged, neutral or open");
+    ends.ends = kind == 0 ? TML_ENDS_CHARGED : kind == 1 ? TML_ENDS_NEUTRAL : TML_ENDS_OPEN;
+    if (!tml_grow(&outline->ends, &outline->ends_capacity, outline->ends_count + 1, sizeof *outline->ends)) return tml_no_memory(s->error);
+    outline->ends[outline->ends_count++] = ends;
+    return no_more(s, 3);
+}
+
+static tml_status peptide_statement(sheet *s) {
+    tml_outline_residue *residue = NULL;
+    tml_status status = residue_at(s, &residue);
+    if (status != TML_OK) return status;
+    if (!is_word(s, 3, "cis") && !is_word(s, 3, "trans")) return expected(s, 3, "cis or trans");
+    residue->cis = is_word(s, 3, "cis");
+    residue->trans = !residue->cis;
+    return no_more(s, 4);
+}
+
+static tml_status link_statement(sheet *s) {
+    tml_outline *outline = &s->draft->outline;
+    tml_outline_link link = {.place = here(s, 1)};
+    tml_status status = address_at(s, 1, &link.a);
+    if (status == TML_OK) status = address_at(s, 2, &link.b);
+    if (status != TML_OK) return status;
+    if (!tml_grow(&outline->links, &outline->link_capacity, outline->link_count + 1, sizeof *outline->links)) return tml_no_memory(s->error);
+    outline->links[outline->link_count++] = link;
+    return no_more(s, 3);
+}
+
+static tml_status chiral_statement(sheet *s) {
+    tml_outline *outline = &s->draft->outline;
+    tml_outline_chiral chiral = {.place = here(s, 1)};
+    tml_status status = address_at(s, 1, &chiral.centre);
+    for (int k = 0; status == TML_OK && k < 3; k++) status = address_at(s, 2 + k, &chiral.arm[k]);
+    if (status != TML_OK) return status;
+    if (!is_word(s, 5, "+") && !is_word(s, 5, "-")) return expected(s, 5, "+ or -");
+    chiral.sign = is_word(s, 5, "+") ? 1 : -1;
+    if (!tml_grow(&outline->chirals, &outline->chiral_capacity, outline->chiral_count + 1, sizeof *outline->chirals))
+        return tml_no_memory(s->error);
+    outline->chirals[outline->chiral_count++] = chiral;
+    return no_more(s, 6);
+}
+
+static tml_status plane_statement(sheet *s) {
+    static const double USUAL_WITHIN = 0.02;
+    tml_outline *outline = &s->draft->outline;
+    int count = 0;
+    while (1 + count < s->count && !is_word(s, 1 + count, "within")) count++;
+    if (count < 4) return expected(s, 1 + count, "a plane's atom; a plane needs at least four");
+    double within = USUAL_WITHIN;
+    tml_status status = TML_OK;
+    if (1 + count < s->count) status = number_at(s, 2 + count, "the largest distance from the plane in Å", &within);
+    if (status != TML_OK) return status;
+    if (!(within > 0 && within < 100)) return expected(s, 2 + count, "a distance of more than 0 Å");
+    if (!tml_grow(&outline->planes, &outline->plane_capacity, outline->plane_count + 1, sizeof *outline->planes)) return tml_no_memory(s->error);
+    tml_outline_plane *plane = &outline->planes[outline->plane_count];
+    *plane = (tml_outline_plane){.atoms = tml_alloc((size_t)count, sizeof *plane->atoms), .atom_count = (size_t)count, .within = within,
+                                 .place = here(s, 1)};
+    if (plane->atoms == NULL) return tml_no_memory(s->error);
+    outline->plane_count++;
+    for (int k = 0; status == TML_OK && k < count; k++) status = address_at(s, 1 + k, &plane->atoms[k]);
+    if (status != TML_OK) return status;
+    return no_more(s, 1 + count < s->count ? 3 + count : 1 + count);
+}
+
+/* What may follow the limits: `as ID`, `weight W`, `average`; in any order. */
+typedef struct endings { const char *id; double weight; bool average; } endings;
+
+static tml_status endings_from(sheet *s, int index, bool distance, const char *number_word, int number, endings *out) {
+    char own[32];
+    snprintf(own, sizeof own, "%s%d", number_word, number);
+    *out = (endings){.weight = 1.0};
+    tml_status status = pooled(s, own, strlen(own), &out->id);
+    while (status == TML_OK && index < s->count) {
+        if (is_word(s, index, "as")) {
+            status = text_at(s, index + 1, "an id", &out->id);
+            index += 2;
+        } else if (is_word(s, index, "weight")) {
+            status = number_at(s, index + 1, "a weight", &out->weight);
+            if (status == TML_OK && !(out->weight >= 0)) status = expected(s, index + 1, "a weight of 0 or more");
+            index += 2;
+        } else if (distance && is_word(s, index, "average")) {
+            out->average = true;
+            index++;
+        } else {
+            return expected(s, index, distance ? "as, weight, average or the end of the line" : "as, weight or the end of the line");
+        }
+    }
+    return status;
+}
+
+static tml_status limit_statement(sheet *s) {
+    tml_address addresses[2 * MOST_ALTERNATIVES];
+    int count_a = 0, count_b = 0;
+    endings end;
+    tml_distance_row row = {.place = here(s, 0)};
+    tml_status status = addresses_at(s, 1, addresses, MOST_ALTERNATIVES, &count_a);
+    if (status == TML_OK) status = addresses_at(s, 2, addresses + count_a, MOST_ALTERNATIVES, &count_b);
+    if (status == TML_OK) status = limit_at(s, 3, "a lower limit in Å, or -", &row.lower);
+    if (status == TML_OK) status = limit_at(s, 4, "an upper limit in Å, or -", &row.upper);
+    if (status == TML_OK) status = endings_from(s, 5, true, "limit", ++s->limits, &end);
+    if (status != TML_OK) return status;
+    if (row.lower < 0 || row.upper < 0) return expected(s, row.lower < 0 ? 3 : 4, "a distance, which is never negative,");
+    if (row.upper < row.lower) return expected(s, 4, "an upper limit that is not below the lower one");
+    row.list = "sheet";
+    status = pooled(s, "sheet", 5, &row.list);
+    if (status == TML_OK) status = pooled(s, "", 0, &row.combination);
+    if (status != TML_OK) return status;
+    row.id = end.id;
+    row.weight = end.weight;
+    row.average = end.average;
+    row.count_a = count_a;
+    row.count_b = count_b;
+    return tml_rows_add_distance(&s->draft->rows, &row, addresses) ? TML_OK : tml_no_memory(s->error);
+}
+
+static tml_status dihedral_statement(sheet *s) {
+    tml_dihedral_row row = {.place = here(s, 0)};
+    endings end;
+    tml_status status = TML_OK;
+    for (int k = 0; status == TML_OK && k < 4; k++) status = address_at(s, 1 + k, &row.atoms[k]);
+    if (status == TML_OK) status = number_at(s, 5, "the angle in degrees where the interval begins", &row.lower);
+    if (status == TML_OK) status = number_at(s, 6, "the angle in degrees where the interval ends", &row.upper);
+    if (status == TML_OK) status = endings_from(s, 7, false, "dihedral", ++s->dihedrals, &end);
+    if (status == TML_OK) status = pooled(s, "sheet", 5, &row.list);
+    if (status == TML_OK) status = pooled(s, "", 0, &row.combination);
+    if (status != TML_OK) return status;
+    row.id = end.id;
+    row.weight = end.weight;
+    return tml_rows_add_dihedral(&s->draft->rows, &row) ? TML_OK : tml_no_memory(s->error);
+}
+
+/* ---- lines ---- */
+
+static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
+    {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
+    {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
+    {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
+};
+
+static tml_status run_statement(sheet *s) {
+    char name[64] = "", near[160] = "";
+    if (!s->begun) {
+        if (!is_word(s, 0, "sheet")) return expected(s, 0, "'sheet 1', which begins every sheet,");
+        if (!is_word(s, 1, "1")) return expected(s, 1, "1, the grammar's version,");
+        s->begun = true;
+        return no_more(s, 2);
+    }
+    for (size_t i = 0; i < sizeof STATEMENTS / sizeof *STATEMENTS; i++)
+        if (is_word(s, 0, STATEMENTS[i].name)) return STATEMENTS[i].run(s);
+    snprintf(name, sizeof name, "%.*s", s->words[0].length > 40 ? 40 : s->words[0].length, s->words[0].text);
+    tml_nearest nearest;
+    tml_nearest_start(&nearest, name);
+    for (size_t i = 0; i < sizeof STATEMENTS / sizeof *STATEMENTS; i++) tml_nearest_offer(&nearest, STATEMENTS[i].name);
+    tml_nearest_append(&nearest, near, sizeof near);
+    return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, s->words[0].column, "no statement begins with '%s'; the nearest: %s", name, near);
+}
+
+/* Split one line; words point into it. */
+static tml_status split_line(sheet *s, const char *line, const char *end) {
+    s->count = 0;
+    for (const char *p = line; p < end;) {
+        if (*p == ' ' || *p == '\t' || *p == '\r') {
+            p++;
+            continue;
+        }
+        if (*p == '#') break;
+        if (s->count == MOST_WORDS)
+            return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, (long)(p - line) + 1, "more than %d words on one line", MOST_WORDS);
+        word *w = &s->words[s->count++];
+        *w = (word){.text = p, .column = (int)(p - line) + 1};
+        if (*p == '"') {
+            const char *close = memchr(p + 1, '"', (size_t)(end - p - 1));
+            if (close == NULL) return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, w->column, "the quote is not closed on its line");
+            *w = (word){.text = p + 1, .length = (int)(close - p - 1), .column = w->column, .quoted = true};
+            p = close + 1;
+        } else {
+            while (p < end && *p != ' ' && *p != '\t' && *p != '\r' && *p != '#') p++;
+            w->length = (int)(p - w->text);
+        }
+    }
+    return TML_OK;
+}
+
+bool tml_is_sheet(const char *text) {
+    for (;;) { /* the first word of the first line that is no comment */
+        text += strspn(text, " \t\r\n");
+        if (*text != '#') break;
+        text += strcspn(text, "\n");
+    }
+    return strncmp(text, "sheet", 5) == 0 && (text[5] == '\0' || strchr(" \t\r\n#", text[5]) != NULL);
+}
+
+tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_error *error) {
+    sheet s = {.draft = draft, .error = error, .path = draft->problem->files[file], .file = file};
+    s.words = tml_alloc(MOST_WORDS, sizeof *s.words);
+    tml_status status = s.words == NULL ? tml_no_memory(error) : TML_OK;
+    while (status == TML_OK && *text != '\0') {
+        const char *end = text + strcspn(text, "\n");
+        s.line++;
+        status = split_line(&s, text, end);
+        if (status == TML_OK && s.count > 0) status = run_statement(&s);
+        text = *end == '\0' ? end : end + 1;
+    }
+    free(s.words);
+    return status;
+}
