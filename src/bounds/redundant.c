@@ -13,7 +13,8 @@ static tml_status bare_bounds(const tml_problem *problem, int threads, const tml
     tml_problem bare = *problem;
     tml_givens givens = {0};
     bare.restraints = (tml_restraints){0};
-    tml_status status = tml_bounds_fill(&bare, bounds, &givens, error);
+    tml_status status = tml_givens_collect(&bare, &givens, error);
+    if (status == TML_OK) status = tml_bounds_from_givens(&bare, &givens, bounds, error);
     free(givens.items);
     if (status == TML_OK) status = tml_bounds_smooth(*bounds, threads, watch, error);
     return status;
