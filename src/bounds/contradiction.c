@@ -10,6 +10,7 @@
 #include "base/memory.h"
 #include "bounds/bounds.h"
 #include "bounds/graph.h"
+#include "bounds/radii.h"
 
 /* The excess from which a contradiction counts, Å. */
 static const double TOLERANCE = 0.001;
@@ -260,6 +261,35 @@ static tml_status smooth_round(const tml_problem *problem, const tml_givens *giv
     return finding == TML_OK ? TML_CONTRADICTED : finding;
 }
 
+static tml_status copy_givens(const tml_givens *from, tml_givens *to, tml_error *error) {
+    to->items = tml_alloc(from->count, sizeof *to->items);
+    if (to->items == NULL) return tml_no_memory(error);
+    memcpy(to->items, from->items, from->count * sizeof *to->items);
+    to->count = to->capacity = from->count;
+    return TML_OK;
+}
+
+/* Later rounds see loosened limits. Their proofs are told with the limits as given: these are no looser, so the chains fail by as
+ * much or more. */
+static void restate(const tml_problem *problem, const tml_givens *original, tml_contradictions *round) {
+    for (size_t i = 0; i < round->count; i++) {
+        tml_contradiction *proof = &round->items[i];
+        for (size_t k = 0; k < proof->step_count; k++) {
+            tml_given *step = &proof->steps[k].given;
+            if (step->reason == TML_REASON_RADIUS) step->value = fmax(step->value, tml_hard_floor(&problem->molecule, step->a, step->b));
+            for (size_t g = 0; g < original->count; g++) {
+                const tml_given *given = &original->items[g];
+                if (given->a != step->a || given->b != step->b || given->is_upper != step->is_upper ||
+                    given->reason != step->reason || given->source != step->source)
+                    continue;
+                step->value = step->is_upper ? fmin(step->value, given->value) : fmax(step->value, given->value);
+            }
+        }
+        proof->excess = proof->steps[0].given.value;
+        for (size_t k = 1; k < proof->step_count; k++) proof->excess -= proof->steps[k].given.value;
+    }
+}
+
 static tml_status append(tml_contradictions *all, tml_contradictions *round, tml_error *error) {
     if (!tml_grow(&all->items, &all->capacity, all->count + round->count, sizeof *all->items)) return tml_no_memory(error);
     if (round->count > 0) memcpy(&all->items[all->count], round->items, round->count * sizeof *round->items);
@@ -271,7 +301,7 @@ static tml_status append(tml_contradictions *all, tml_contradictions *round, tml
 
 tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml_watch *watch, tml_bounds **out, tml_contradictions *found,
                               tml_error *error) {
-    tml_givens givens = {0};
+    tml_givens givens = {0}, original = {0};
     tml_contradictions all = {0};
     tml_status status = tml_givens_collect(problem, &givens, error);
     *out = NULL;
@@ -283,12 +313,16 @@ tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml
         if (status != TML_CONTRADICTED) break;
         status = TML_OK;
         if (round.count == 0) break; /* within the tolerance */
+        if (turn == 0) status = copy_givens(&givens, &original, error);
         for (size_t i = 0; i < round.count; i++) loosen(&givens, &round.items[i], turn >= MOST_ROUNDS);
-        status = append(&all, &round, error);
+        if (status == TML_OK) {
+            restate(problem, &original, &round);
+            status = append(&all, &round, error);
+        }
         tml_contradictions_clear(&round);
     }
     free(givens.items);
-    /* Later rounds see loosened limits: what they blame counts only where it is independent of the first round's proofs. */
+    free(original.items);
     if (status == TML_OK && all.count > 0) status = keep_independent(problem, &all, 0, error);
     if (status == TML_OK) status = append(found, &all, error);
     tml_contradictions_clear(&all);
