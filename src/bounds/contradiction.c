@@ -310,7 +310,10 @@ tml_status tml_bounds_prepare(const tml_problem *problem, int threads, const tml
         tml_bounds_free(*out);
         *out = NULL;
         status = smooth_round(problem, &givens, &all, threads, watch, out, &round, error);
-        if (status != TML_CONTRADICTED) break;
+        if (status != TML_CONTRADICTED) {
+            tml_contradictions_clear(&round);
+            break;
+        }
         status = TML_OK;
         if (round.count == 0) break; /* within the tolerance */
         if (turn == 0) status = copy_givens(&givens, &original, error);

@@ -208,7 +208,7 @@ static bool all_hold(const tml_restraints *restraints, const tml_distance_restra
 
 static bool fill_restraints(filler *f) {
     const tml_restraints *restraints = &f->problem->restraints;
-    tml_graph covalent;
+    tml_graph covalent = {0};
     size_t covalent_count = f->givens->count;
     tml_given *covalent_givens = tml_alloc(covalent_count, sizeof *covalent_givens); /* the list grows and moves below */
     if (covalent_givens == NULL) return false;
@@ -223,7 +223,7 @@ static bool fill_restraints(filler *f) {
             room = fill_alternative(f, &covalent, i, alternative, certain && alternative->equivalent && !isinf(restraint->upper));
         }
     }
-    if (room) tml_graph_close(&covalent);
+    tml_graph_close(&covalent);
     free(covalent_givens);
     return room;
 }

@@ -76,11 +76,15 @@ static tml_status limit_at(sheet *s, int index, const char *what, double *out) {
 
 /* ---- addresses ---- */
 
+/* No name in use is longer; what is longer is a slip, and would not fit into reports. */
+enum { NAME_MOST = 40 };
+
 static tml_status address_from(sheet *s, int index, const char *text, size_t length, tml_address *out) {
     const char *first = memchr(text, ':', length), *second = first == NULL ? NULL : memchr(first + 1, ':', length - (size_t)(first + 1 - text));
     *out = (tml_address){.place = here(s, index)};
     out->place.column += (int32_t)(text - s->words[index].text);
     tml_status status = pooled(s, "", 0, &out->residue);
+    if (length > NAME_MOST) return expected(s, index, "an atom of at most 40 characters");
     if (first == NULL) {
         out->chain = out->number = out->residue;
         if (length == 0) return expected(s, index, "an atom");

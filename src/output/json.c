@@ -45,11 +45,11 @@ static json_t *text_of(const char *text) {
     if (text == NULL) return json_null();
     json_t *good = json_string(text);
     if (good != NULL) return good;
-    size_t length = strlen(text), at = 0;
+    size_t length = strlen(text);
     char *plain = tml_alloc(length + 1, 1);
     if (plain == NULL) return NULL;
-    for (; at < length; at++) plain[at] = (unsigned char)text[at] < 0x80 ? text[at] : '?';
-    good = json_string(plain);
+    for (size_t at = 0; at < length; at++) plain[at] = (unsigned char)text[at] < 0x80 ? text[at] : '?';
+    if (strcmp(plain, text) != 0) good = json_string(plain); /* otherwise it was no memory */
     free(plain);
     return good;
 }
