@@ -10,13 +10,14 @@
 
 /* Contents: build - its models - its worst restraints - what the models agree on - check - findings of both - table of limits */
 
-enum { WIDTH = 100, LINE = 512, NAMES = 700, MOST_LISTED = 40 };
+enum { WIDTH = 100, LINE = 512, NAMES = 700, MOST_LISTED = 40, FEW_LISTED = 10 };
 
 static void tell_models(tml_file *file, const tml_ensemble *ensemble);
 static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_error *error);
 static void tell_agreement(tml_file *file, const tml_ensemble *ensemble);
 static void tell_hands(tml_file *file, const tml_ensemble *ensemble);
-static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, const char *heading);
+static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, int32_t most,
+                     const char *what);
 static void tell_conflicts(tml_file *file, const tml_problem *problem, const tml_contradictions *found);
 static void tell_unmapped(tml_file *file, const tml_problem *problem);
 static void tell_notes(tml_file *file, const tml_problem *problem);
@@ -286,8 +287,8 @@ tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_cont
     tell_counts(file, problem);
     if (found->count == 0) heading(file, "No limits contradict each other by their distances.");
     tell_conflicts(file, problem, found);
-    tell_use(file, problem, uses, TML_USE_OUT_OF_RANGE, "out of range: no shape of the molecule can meet them");
-    tell_use(file, problem, uses, TML_USE_REDUNDANT, "redundant: every shape of the molecule meets them");
+    tell_use(file, problem, uses, TML_USE_OUT_OF_RANGE, MOST_LISTED, "out of range: no shape of the molecule can meet them");
+    tell_use(file, problem, uses, TML_USE_REDUNDANT, FEW_LISTED, "redundant: every shape of the molecule meets them");
     tell_unmapped(file, problem);
     tell_notes(file, problem);
     return tml_file_close(file, error);
@@ -302,13 +303,14 @@ static void tell_place(char *text, size_t size, const tml_problem *problem, tml_
         snprintf(text, size, "%s: ", problem->files[place.file]);
 }
 
-static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, const char *what) {
+static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, int32_t most,
+                     const char *what) {
     int32_t count = 0, shown = 0;
     if (uses == NULL) return;
     for (int32_t i = 0; i < problem->restraints.distance_count; i++) count += uses[i] == wanted;
     if (count == 0) return;
     tml_file_print(file, "\n%d distance%s %s\n", count, plural(count), what);
-    for (int32_t i = 0; i < problem->restraints.distance_count && shown < MOST_LISTED; i++) {
+    for (int32_t i = 0; i < problem->restraints.distance_count && shown < most; i++) {
         char place[LINE], atoms[NAMES];
         const tml_distance_restraint *at = &problem->restraints.distances[i];
         if (uses[i] != wanted) continue;
