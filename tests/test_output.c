@@ -103,7 +103,7 @@ Test(output, a_full_device_is_told) {
         tml_file *file;
         tml_error error = {0};
         cr_assert_eq(tml_file_open("/dev/full", compressed, &file, &error), TML_OK);
-        for (int i = 0; i < 100000; i++) tml_file_print(file, "%d some text that fills a buffer or two\n", i * i % 8191);
+        for (unsigned i = 0; i < 100000; i++) tml_file_print(file, "%u some text that fills a buffer or two\n", i * i % 8191);
         cr_assert_eq(tml_file_close(file, &error), TML_IO);
         cr_expect_not_null(strstr(error.message, "/dev/full"));
         if (!compressed) cr_expect_not_null(strstr(error.message, "space"), "%s", error.message);

@@ -98,13 +98,14 @@ static void tell_models(tml_file *file, const tml_ensemble *ensemble) {
 
 /* ---- its worst restraints ---- */
 
-typedef struct offence { int32_t restraint; int32_t models; double worst; bool dihedral; } offence;
+/* How often and how far a restraint is violated; worst is in Å or degrees, severity in units of what counts. */
+typedef struct offence { int32_t restraint; int32_t models; double worst, severity; bool dihedral; } offence;
 
-/* Most models first, then the worst. */
+/* Most models first, then the most severe. */
 static int compare_offences(const void *one, const void *two) {
     const offence *a = one, *b = two;
     if (a->models != b->models) return a->models > b->models ? -1 : 1;
-    if (a->worst != b->worst) return a->worst > b->worst ? -1 : 1;
+    if (a->severity != b->severity) return a->severity > b->severity ? -1 : 1;
     if (a->dihedral != b->dihedral) return a->dihedral ? 1 : -1;
     return (a->restraint > b->restraint) - (a->restraint < b->restraint);
 }
@@ -162,6 +163,7 @@ static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_e
             at.models += off > (dihedral ? OVER_ANGLE : OVER);
             at.worst = fmax(at.worst, off);
         }
+        at.severity = at.worst / (dihedral ? OVER_ANGLE : OVER);
         if (at.models > 0) list[count++] = at;
     }
     if (count > 0) {

@@ -101,8 +101,8 @@ int main(int argc, char **argv) {
     if (argc != 2) return 2;
     tml_error error = {0};
     tml_outline outline = {0};
-    tml_model models[MODELS];
-    tml_ensemble ensemble;
+    tml_model models[MODELS] = {0};
+    tml_ensemble ensemble = {0};
     tml_note note = {"a note with \xff bytes and a \"quote\"", {0, 3, 1}};
     const char *files[] = {"invented.sheet"};
     tml_problem problem = {.pool = tml_strings_new(), .files = files, .file_count = 1, .title = "Invented; it's \"nothing\" 5 Å wide",
@@ -137,5 +137,11 @@ int main(int argc, char **argv) {
     if (status == TML_OK) status = tml_print_check(report, &problem, &found, NULL, &error);
     fclose(report);
     if (status != TML_OK) fprintf(stderr, "write_models: %s\n", error.message);
+    for (int m = 0; m < MODELS; m++) free(models[m].xyz);
+    free(ensemble.spread);
+    free(ensemble.well_defined);
+    tml_molecule_clear(&problem.molecule);
+    tml_outline_clear(&outline);
+    tml_strings_free(problem.pool);
     return status == TML_OK ? 0 : 3;
 }
