@@ -17,13 +17,16 @@
 #include "base/memory.h"
 #include "embed/embed.h"
 #include "ensemble/cis.h"
+#include "ensemble/superpose.h"
 #include "refine/refine.h"
 #include "sample/metrize.h"
 
 extern void openblas_set_num_threads(int count);
 extern int openblas_get_num_threads(void);
 
-enum { MAJORIZE_STEPS = 10, SQUEEZE_STEPS = 20, MODELS_DEFAULT = 20, TRIALS_PER_MODEL = 5 };
+enum { MAJORIZE_STEPS = 10, SQUEEZE_STEPS = 20, MODELS_DEFAULT = 20, TRIALS_PER_MODEL = 5, PROBING_TRIALS = 4 };
+/* Two models whose backbones (or heavy atoms) superpose no better are different folds, Å. */
+static const double DIFFERENT_FOLD = 4.0;
 /* What is left of the fourth coordinate after one squeezing step. */
 static const double SQUEEZE = 0.8;
 /* Memory beside the matrices, bytes. */
@@ -36,8 +39,10 @@ typedef struct run {
     const tml_bounds *bounds;
     const tml_refiner *refiner;
     const tml_watch *watch;
-    int trial_limit, enough; /* trials at most; trials after which N that pass are enough */
+    int enough;              /* trials after which N that pass are enough */
+    bool both;               /* refine both images in every trial */
     /* -- */
+    int trial_limit;         /* trials at most */
     tml_model *models;       /* one for each trial */
     bool *ready;
     int next, judged, passed;
@@ -171,52 +176,81 @@ static tml_status place(const run *work, bench *tools, double *eigenvalues, tml_
     return status;
 }
 
-/* Refine one image of the embedding into xyz and measure it. */
-static tml_status improve(const run *work, tml_pcg *pcg, double *xyz, double *energy, tml_measures *measures, tml_error *error) {
-    tml_status status = tml_refine(work->refiner, work->options->effort, pcg, xyz, work->watch->stop, energy, error);
-    return status == TML_OK ? tml_measure(work->problem, xyz, measures, error) : status;
+/* How far two models are from each other after superposition of their backbone, or of all atoms where there is none, Å. */
+static double images_apart(const tml_problem *problem, const double *one, const double *other) {
+    const tml_molecule *molecule = &problem->molecule;
+    int32_t *alpha = tml_alloc((size_t)molecule->atom_count, sizeof *alpha), count = 0;
+    tml_motion motion;
+    for (int32_t i = 0; alpha != NULL && i < molecule->atom_count; i++)
+        if (molecule->residues[molecule->atoms[i].residue].amino_acid && strcmp(molecule->atoms[i].name, "CA") == 0) alpha[count++] = i;
+    double apart = count < 4 ? tml_superpose(one, other, NULL, molecule->atom_count, &motion) : tml_superpose(one, other, alpha, count, &motion);
+    free(alpha);
+    return apart;
+}
+
+/* One image of an embedding, refined and measured. */
+typedef struct image { double error; bool passed; tml_measures measures; } image;
+
+static tml_status improve(const run *work, tml_pcg *pcg, double *xyz, image *out, tml_error *error) {
+    tml_status status = tml_refine(work->refiner, work->options->effort, pcg, xyz, work->watch->stop, &out->error, error);
+    if (status == TML_OK) status = tml_measure(work->problem, xyz, &out->measures, error);
+    out->passed = tml_measures_pass(&out->measures);
+    return status;
 }
 
 static bool better(bool passed, double energy, bool other_passed, double other_energy) {
     return passed != other_passed ? passed : energy < other_energy;
 }
 
-static tml_status try_once(const run *work, bench *tools, int trial, tml_model *model, tml_error *error) {
+static void reflect(double *xyz, size_t count) {
+    for (size_t i = 0; i < count; i++) xyz[3 * i] = -xyz[3 * i];
+}
+
+/* Both images of an embedding obey the same distances. The drawn one, of random hand, is refined to the end; the other one, too,
+ * where the first does not pass, and in every trial as long as it is not known that the hand settles itself (see `both`). */
+static tml_status try_images(const run *work, bench *tools, tml_pcg *pcg, bool both, tml_model *model, tml_error *error) {
+    const size_t n = (size_t)work->bounds->n, bytes = 3 * n * sizeof *model->xyz;
+    image first = {0}, second = {0};
+    bool mirrored = tml_pcg_next(pcg) & 1;
+    if (mirrored) reflect(tools->start, n);
+    memcpy(model->xyz, tools->start, bytes);
+    tml_status status = improve(work, pcg, model->xyz, &first, error);
+    bool keep_first = true;
+    if (status == TML_OK && (both || !first.passed)) {
+        memcpy(tools->spare, tools->start, bytes);
+        reflect(tools->spare, n);
+        status = improve(work, pcg, tools->spare, &second, error);
+        keep_first = !better(second.passed, second.error, first.passed, first.error);
+        if (status == TML_OK && both) model->images_apart = images_apart(work->problem, model->xyz, tools->spare);
+        model->both_passed = first.passed && second.passed;
+        model->other_error = keep_first ? second.error : first.error;
+        if (!keep_first) memcpy(model->xyz, tools->spare, bytes);
+    }
+    const image *kept = keep_first ? &first : &second;
+    model->measures = kept->measures;
+    model->error = kept->error;
+    model->passed = kept->passed;
+    model->mirrored = mirrored == keep_first;
+    return status;
+}
+
+static tml_status try_once(const run *work, bench *tools, int trial, bool both, tml_model *model, tml_error *error) {
     const size_t n = (size_t)work->bounds->n;
     tml_pcg pcg;
     tml_pcg_seed_trial(&pcg, work->options->seed, (uint64_t)trial);
-    *model = (tml_model){.trial = trial, .xyz = tml_alloc(3 * n, sizeof *model->xyz), .other_error = NAN};
+    *model = (tml_model){.trial = trial, .xyz = tml_alloc(3 * n, sizeof *model->xyz), .other_error = NAN, .images_apart = NAN};
     if (model->xyz == NULL) return tml_no_memory(error);
-
     double t0 = tml_seconds();
     tml_status status = tml_metrize(work->bounds, work->options->metrize_roots > 0 ? work->options->metrize_roots : work->bounds->n,
                                     &pcg, tools->distance, tools->order, error);
     double t1 = tml_seconds();
     if (status == TML_OK) status = place(work, tools, model->eigenvalues, error);
     double t2 = tml_seconds();
+    if (status == TML_OK) status = try_images(work, tools, &pcg, both, model, error);
     tools->timing.metrize += t1 - t0;
     tools->timing.embed += t2 - t1;
-    if (status != TML_OK) return status;
-
-    memcpy(model->xyz, tools->start, 3 * n * sizeof *model->xyz);
-    for (size_t i = 0; i < 3 * n; i++) tools->spare[i] = i % 3 == 0 ? -tools->start[i] : tools->start[i];
-    status = improve(work, &pcg, model->xyz, &model->error, &model->measures, error);
-    double other = NAN;
-    tml_measures other_measures;
-    if (status == TML_OK) status = improve(work, &pcg, tools->spare, &other, &other_measures, error);
     tools->timing.refine += tml_seconds() - t2;
-    if (status != TML_OK) return status;
-    model->passed = tml_measures_pass(&model->measures);
-    model->other_error = other;
-    if (better(tml_measures_pass(&other_measures), other, model->passed, model->error)) {
-        memcpy(model->xyz, tools->spare, 3 * n * sizeof *model->xyz);
-        model->measures = other_measures;
-        model->other_error = model->error;
-        model->error = other;
-        model->passed = tml_measures_pass(&other_measures);
-        model->mirrored = true;
-    }
-    return TML_OK;
+    return status;
 }
 
 /* ---- trials ---- */
@@ -225,7 +259,7 @@ static tml_status try_once(const run *work, bench *tools, int trial, tml_model *
 static void judge(run *work) {
     while (!work->done && work->judged < work->trial_limit && work->ready[work->judged]) {
         work->passed += work->models[work->judged++].passed;
-        work->done = work->judged == work->trial_limit || (work->passed >= work->options->models && work->judged >= work->enough);
+        work->done = (work->passed >= work->options->models && work->judged >= work->enough);
     }
     if (work->watch->progress != NULL)
         work->watch->progress(work->watch->context, "trials", work->passed < work->options->models ? work->passed : work->options->models,
@@ -252,6 +286,14 @@ static void give_trial(run *work, int trial, const tml_model *model, tml_status 
     }
 }
 
+/* Whether the hand has to be settled by refining both images in every trial: in some probing trial both passed as different
+ * folds. Where they ended as one fold, or only one of them passed, the error function knows the hand by itself. */
+static bool hand_in_doubt(const run *work) {
+    for (int i = 0; i < work->next; i++)
+        if (work->ready[i] && work->models[i].both_passed && work->models[i].images_apart > DIFFERENT_FOLD) return true;
+    return false;
+}
+
 static void work_on_trials(run *work) {
     const size_t n = (size_t)work->bounds->n;
     tml_error error = {0};
@@ -266,7 +308,7 @@ static void work_on_trials(run *work) {
     } else {
         for (int trial; (trial = take_trial(work)) > 0;) {
             tml_model model = {0};
-            tml_status status = try_once(work, &tools, trial, &model, &error);
+            tml_status status = try_once(work, &tools, trial, work->both, &model, &error);
             give_trial(work, trial, &model, status, &error);
         }
     }
@@ -289,6 +331,14 @@ static tml_status run_trials(run *work, int threads, tml_error *error) {
     if (work->models == NULL || work->ready == NULL) return tml_no_memory(error);
     int blas_threads = openblas_get_num_threads();
     openblas_set_num_threads(1);
+    /* The first trials probe whether the images end as one fold; what they tell decides for all others, in any order. */
+    const int all = work->trial_limit;
+    work->both = true;
+    work->trial_limit = all < PROBING_TRIALS ? all : PROBING_TRIALS;
+#pragma omp parallel num_threads(threads)
+    work_on_trials(work);
+    work->both = hand_in_doubt(work);
+    work->trial_limit = all;
 #pragma omp parallel num_threads(threads)
     work_on_trials(work);
     openblas_set_num_threads(blas_threads);

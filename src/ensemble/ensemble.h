@@ -14,7 +14,9 @@ typedef struct tml_model {
     double error;         /* the refinement's error function */
     bool passed, mirrored; /* mirrored: from the reflected image of the embedding */
     double eigenvalues[5]; /* of the embedding, Å² */
-    double other_error;   /* the error of the embedding's other image, NAN where it was not refined */
+    double other_error;    /* the error of the embedding's other image, NAN where it was not refined */
+    bool both_passed;      /* that image passed, too */
+    double images_apart;   /* how far the two ended from each other after superposition, Å; NAN where it was not looked at */
     tml_measures measures;
 } tml_model;
 

@@ -265,7 +265,7 @@ static double choices(const tml_refiner *refiner, double k, double bend, const t
 
 /* ---- torsions ---- */
 
-typedef struct torsion_state { double angle; tml_v4 n1, n2, b1; double n1_square, n2_square, length; tml_v4 b0, b2; } torsion_state;
+typedef struct torsion_state { double cosine, sine; tml_v4 n1, n2, b1; double n1_square, n2_square, length; tml_v4 b0, b2; } torsion_state;
 
 INLINE int torsion_at(const int32_t atoms[4], const tml_v4 *x, torsion_state *s) {
     s->b0 = x[atoms[1]] - x[atoms[0]];
@@ -277,9 +277,9 @@ INLINE int torsion_at(const int32_t atoms[4], const tml_v4 *x, torsion_state *s)
     s->n2_square = DOT(s->n2, s->n2);
     s->length = sqrt(DOT(s->b1, s->b1));
     if (s->n1_square < 1e-8 || s->n2_square < 1e-8) return 0; /* three atoms in line: no angle, no force */
-    tml_v4 t;
-    CROSS(t, s->n1, s->n2);
-    s->angle = atan2(DOT(t, s->b1) / s->length, DOT(s->n1, s->n2));
+    double scale = 1 / sqrt(s->n1_square * s->n2_square);
+    s->cosine = DOT(s->n1, s->n2) * scale;
+    s->sine = s->length * DOT(s->b0, s->n2) * scale;
     return 1;
 }
 
@@ -314,7 +314,9 @@ static double torsions(const tml_refiner *refiner, double k, double bend, const 
         double least = INFINITY;
         for (int32_t j = term->first_interval; j < term->first_interval + term->interval_count; j++) {
             if (!torsion_at(intervals[j].atoms, x, &state)) continue;
-            double off = outside(state.angle, intervals[j].lower, intervals[j].upper);
+            const tml_torsion_arc *arc = &refiner->arcs[j];
+            bool inside = state.cosine * arc->cosine + state.sine * arc->sine >= arc->least;
+            double off = inside ? 0 : outside(atan2(state.sine, state.cosine), intervals[j].lower, intervals[j].upper);
             if (fabs(off) >= fabs(least)) continue;
             least = off;
             best = j;
@@ -329,14 +331,6 @@ static double torsions(const tml_refiner *refiner, double k, double bend, const 
 
 /* ---- backbones ---- */
 
-/* The basins in which folded proteins keep phi and psi: right-handed helix, its bridge, extended strand, polyproline II,
- * left-handed helix. Centres and widths (as the concentration of a von Mises distribution, 1/radians²) are round values for
- * the regions of Lovell et al., Proteins 50 (2003) 437, typed from memory. */
-typedef struct basin { double phi, psi, phi_sharp, psi_sharp, share; } basin;
-static const basin BASINS[] = {
-    {-65, -42, 6.0, 4.0, 1.0}, {-90, 0, 4.0, 3.0, 0.3}, {-120, 135, 3.0, 3.0, 1.0}, {-70, 145, 6.0, 4.0, 1.0}, {57, 42, 8.0, 6.0, 0.1},
-};
-enum { BASIN_COUNT = sizeof BASINS / sizeof *BASINS };
 /* What every other place gets, so that the preference is bounded: it is a slope, not a wall. */
 static const double ELSEWHERE = 0.01;
 
@@ -348,13 +342,14 @@ static double backbones(const tml_refiner *refiner, double height, const tml_v4 
         torsion_state phi, psi;
         if (term->glycine || !torsion_at(&term->atoms[0], x, &phi) || !torsion_at(&term->atoms[1], x, &psi)) continue;
         double total = ELSEWHERE, by_phi = 0, by_psi = 0;
-        for (int b = 0; b < BASIN_COUNT; b++) {
-            double off_phi = phi.angle - BASINS[b].phi * PI / 180, off_psi = psi.angle - BASINS[b].psi * PI / 180;
-            double part = BASINS[b].share *
-                          exp(BASINS[b].phi_sharp * (cos(off_phi) - 1) + BASINS[b].psi_sharp * (cos(off_psi) - 1));
+        for (int b = 0; b < TML_BASINS; b++) {
+            const tml_basin *basin = &refiner->basins[b];
+            double off_phi = phi.cosine * basin->cos_phi + phi.sine * basin->sin_phi; /* cosine of the way to the basin */
+            double off_psi = psi.cosine * basin->cos_psi + psi.sine * basin->sin_psi;
+            double part = basin->share * exp(basin->phi_sharp * (off_phi - 1) + basin->psi_sharp * (off_psi - 1));
             total += part;
-            by_phi += part * BASINS[b].phi_sharp * sin(off_phi);
-            by_psi += part * BASINS[b].psi_sharp * sin(off_psi);
+            by_phi += part * basin->phi_sharp * (phi.sine * basin->cos_phi - phi.cosine * basin->sin_phi);
+            by_psi += part * basin->psi_sharp * (psi.sine * basin->cos_psi - psi.cosine * basin->sin_psi);
         }
         energy -= height * log(total);
         torsion_push(&term->atoms[0], &phi, height * by_phi / total, f);

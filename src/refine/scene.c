@@ -186,13 +186,23 @@ static bool list_run(tml_scene *scene, int32_t slot, int32_t begin, int32_t end,
         if (!tml_grow(&scene->near_contact, &scene->contact_capacity, need, sizeof *scene->near_contact)) return false;
     }
     const float *contact = &refiner->contacts.soft[class_a * refiner->contacts.class_count];
+    /* Again without a branch: of the hits, those within their own contact distance and the skin. */
+    tml_pair *near = &scene->near[scene->near_count];
+    float *touch = &scene->near_contact[scene->near_count];
+    int32_t close = 0, kept = 0;
     for (int32_t k = 0; k < hits; k++) {
         int32_t b = cells->order[cells->hits[k]];
-        float touch = contact[refiner->contacts.class_of[b]], reach = touch + skin;
-        if (touch <= 0 || cells->square[cells->hits[k] - begin] >= reach * reach || silent(refiner, a, b)) continue;
-        scene->near[scene->near_count] = (tml_pair){a, b};
-        scene->near_contact[scene->near_count++] = touch;
+        float own = contact[refiner->contacts.class_of[b]], reach = own + skin;
+        near[close] = (tml_pair){a, b};
+        touch[close] = own;
+        close += (own > 0) & (cells->square[cells->hits[k] - begin] < reach * reach);
     }
+    for (int32_t k = 0; k < close; k++) {
+        near[kept] = near[k];
+        touch[kept] = touch[k];
+        kept += !silent(refiner, a, near[k].b);
+    }
+    scene->near_count += kept;
     return true;
 }
 

@@ -61,6 +61,7 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->sum_pairs);
     free(refiner->choices);
     free(refiner->torsions);
+    free(refiner->arcs);
     free(refiner->backbones);
     tml_contacts_clear(&refiner->contacts);
     free(refiner->near_mask);
@@ -256,7 +257,12 @@ static tml_status make_sums(tml_refiner *refiner, tml_error *error) {
 static tml_status make_torsions(tml_refiner *refiner, tml_error *error) {
     const tml_restraints *restraints = &refiner->problem->restraints;
     refiner->torsions = tml_alloc((size_t)restraints->dihedral_count, sizeof *refiner->torsions);
-    if (refiner->torsions == NULL) return tml_no_memory(error);
+    refiner->arcs = tml_alloc((size_t)restraints->interval_count, sizeof *refiner->arcs);
+    if (refiner->torsions == NULL || refiner->arcs == NULL) return tml_no_memory(error);
+    for (int32_t i = 0; i < restraints->interval_count; i++) {
+        double lower = restraints->intervals[i].lower, upper = restraints->intervals[i].upper, middle = (lower + upper) / 2;
+        refiner->arcs[i] = (tml_torsion_arc){cos(middle), sin(middle), cos(fmin((upper - lower) / 2, PI))};
+    }
     for (int32_t i = 0; i < restraints->dihedral_count; i++) {
         const tml_dihedral_restraint *dihedral = &restraints->dihedrals[i];
         refiner->torsions[refiner->torsion_count++] =
@@ -267,6 +273,13 @@ static tml_status make_torsions(tml_refiner *refiner, tml_error *error) {
 
 /* ---- backbones ---- */
 
+/* The basins in which folded proteins keep phi and psi: right-handed helix, its bridge, extended strand, polyproline II,
+ * left-handed helix. Centres, degrees, and widths (as the concentration of a von Mises distribution, 1/radians²) are round values
+ * for the regions of Lovell et al., Proteins 50 (2003) 437, typed from memory. */
+static const struct { double phi, psi, phi_sharp, psi_sharp, share; } BASINS[TML_BASINS] = {
+    {-65, -42, 6.0, 4.0, 1.0}, {-90, 0, 4.0, 3.0, 0.3}, {-120, 135, 3.0, 3.0, 1.0}, {-70, 145, 6.0, 4.0, 1.0}, {57, 42, 8.0, 6.0, 0.1},
+};
+
 static tml_status make_backbones(tml_refiner *refiner, tml_error *error) {
     const tml_molecule *molecule = &refiner->problem->molecule;
     refiner->backbones = tml_alloc((size_t)molecule->peptide_count, sizeof *refiner->backbones);
@@ -274,6 +287,10 @@ static tml_status make_backbones(tml_refiner *refiner, tml_error *error) {
     if (refiner->backbones == NULL || into == NULL) {
         free(into);
         return tml_no_memory(error);
+    }
+    for (int b = 0; b < TML_BASINS; b++) {
+        double phi = BASINS[b].phi * PI / 180, psi = BASINS[b].psi * PI / 180;
+        refiner->basins[b] = (tml_basin){cos(phi), sin(phi), cos(psi), sin(psi), BASINS[b].phi_sharp, BASINS[b].psi_sharp, BASINS[b].share};
     }
     for (int32_t i = 0; i < molecule->residue_count; i++) into[i] = -1;
     for (int32_t i = 0; i < molecule->peptide_count; i++) into[molecule->peptides[i].residue2] = i;

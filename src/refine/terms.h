@@ -34,6 +34,13 @@ typedef struct tml_torsion_term { int32_t first_interval, interval_count; double
 /* A backbone's phi and psi: atoms C N CA C N; for the preference of usual regions. */
 typedef struct tml_backbone_term { int32_t atoms[5]; bool glycine, proline; } tml_backbone_term;
 
+/* The middle of a dihedral interval and the cosine of half its width: a torsion is inside where cos(angle - middle) >= least. */
+typedef struct tml_torsion_arc { double cosine, sine, least; } tml_torsion_arc;
+
+/* One usual region of phi and psi: a product of two von Mises hills. */
+enum { TML_BASINS = 5 };
+typedef struct tml_basin { double cos_phi, sin_phi, cos_psi, sin_psi, phi_sharp, psi_sharp, share; } tml_basin;
+
 struct tml_refiner {
     const tml_problem *problem;
     int32_t atom_count;
@@ -45,6 +52,8 @@ struct tml_refiner {
     tml_pair *sum_pairs;       int32_t sum_pair_count;
     tml_choice_term *choices;   int32_t choice_count;
     tml_torsion_term *torsions; int32_t torsion_count;
+    tml_torsion_arc *arcs;             /* per dihedral interval */
+    tml_basin basins[TML_BASINS];
     tml_backbone_term *backbones; int32_t backbone_count;
     tml_contacts contacts;             /* what repels whom, and from how near */
     uint64_t (*near_mask)[2];  /* bit d-1 of atom i: atom i+d is not repelled */
