@@ -109,11 +109,12 @@ static int run_derive(const tml_command *self, int argc, char **argv) {
     if (!tml_cli_inputs_good(self, inputs, count)) return TML_EXIT_USAGE;
     if (count > 1) return tml_cli_usage(self, "One file of models is taken, not %d.", count);
     if (!tml_cli_output_good(self, set.output, inputs, count, &exit_status)) return exit_status;
+    tml_watch watch = tml_cli_watch(false);
     tml_error error = {0};
     tml_coordinates coordinates;
     tml_derived derived;
     tml_status status = tml_coordinates_read(inputs[0], &coordinates, &error);
-    if (status == TML_OK) status = tml_sheet_derive(&coordinates, &set.derive, set.output, &derived, &error);
+    if (status == TML_OK) status = tml_sheet_derive(&coordinates, &set.derive, set.output, watch.stop, &derived, &error);
     tml_coordinates_clear(&coordinates);
     return tml_cli_finish(status == TML_OK ? TML_EXIT_DONE : tml_cli_failed(&error));
 }

@@ -34,7 +34,7 @@ typedef struct deriving {
 
 static tml_status lay_out_sequence(deriving *d);
 static tml_status choose_atoms(deriving *d);
-static tml_status find_pairs(deriving *d);
+static tml_status find_pairs(deriving *d, const volatile int *stop);
 static tml_status write_sheet(const deriving *d, const char *path);
 
 /* ---- the steps ---- */
@@ -50,7 +50,7 @@ static void release(deriving *d) {
 }
 
 tml_status tml_sheet_derive(const tml_coordinates *coordinates, const tml_derive_options *options, const char *path,
-                            tml_derived *derived, tml_error *error) {
+                            const volatile int *stop, tml_derived *derived, tml_error *error) {
     deriving d = {.from = coordinates, .options = options, .error = error, .pool = tml_strings_new()};
     d.chains = tml_alloc(coordinates->residue_count, sizeof *d.chains);
     d.chosen = tml_alloc(coordinates->atom_count, sizeof *d.chosen);
@@ -61,7 +61,7 @@ tml_status tml_sheet_derive(const tml_coordinates *coordinates, const tml_derive
         status = tml_fail(error, TML_BAD_INPUT, "model %d is asked for; there are %d", options->model + 1, coordinates->model_count);
     if (status == TML_OK && options->covalent) status = lay_out_sequence(&d);
     if (status == TML_OK) status = choose_atoms(&d);
-    if (status == TML_OK) status = find_pairs(&d);
+    if (status == TML_OK) status = find_pairs(&d, stop);
     if (status == TML_OK) status = write_sheet(&d, path);
     *derived = (tml_derived){d.chosen_count, (int32_t)d.pair_count, d.left_out};
     release(&d);
@@ -363,10 +363,11 @@ static tml_status add_pair(deriving *d, int32_t a, int32_t b, double least, doub
     return TML_OK;
 }
 
-static tml_status find_pairs(deriving *d) {
+static tml_status find_pairs(deriving *d, const volatile int *stop) {
     tml_pcg pcg;
     tml_pcg_seed_trial(&pcg, d->options->seed, 0);
-    for (int32_t i = 0; i < d->chosen_count; i++)
+    for (int32_t i = 0; i < d->chosen_count; i++) {
+        if (stop != NULL && *stop != 0) return tml_fail(d->error, TML_INTERRUPTED, "interrupted");
         for (int32_t j = i + 1; j < d->chosen_count; j++) {
             double least, greatest;
             if (!range_of(d, d->chosen[i], d->chosen[j], &least, &greatest) || least > d->options->cutoff) continue;
@@ -375,6 +376,7 @@ static tml_status find_pairs(deriving *d) {
             tml_status status = add_pair(d, i, j, least, greatest, &pcg);
             if (status != TML_OK) return status;
         }
+    }
     return TML_OK;
 }
 

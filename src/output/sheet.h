@@ -26,9 +26,11 @@ tml_status tml_selection_check(const char *atoms, tml_error *error);
  *
  * Waters never take part. With `covalent`, only the built-in amino acids do, atoms that these do not have are left out and counted,
  * and pairs that bonds and angles fix are not listed; a chain that is broken goes on under a code of its own.
- * Returns TML_OK, TML_BAD_INPUT (nothing selected, names that a sheet cannot hold), TML_TOO_LARGE, TML_NO_MEMORY or TML_IO.
+ * stop   once nonzero, ends the work; may be NULL
+ * Returns TML_OK, TML_BAD_INPUT (nothing selected, names that a sheet cannot hold), TML_TOO_LARGE, TML_NO_MEMORY, TML_IO or
+ * TML_INTERRUPTED.
  */
 tml_status tml_sheet_derive(const tml_coordinates *coordinates, const tml_derive_options *options, const char *path,
-                            tml_derived *derived, tml_error *error);
+                            const volatile int *stop, tml_derived *derived, tml_error *error);
 
 #endif

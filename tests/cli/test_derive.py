@@ -1,6 +1,7 @@
 """trammel derive: sheets from coordinates that read back, and limits measured on the coordinates' own columns."""
 import math
 import random
+import subprocess
 
 import harness
 
@@ -108,6 +109,15 @@ class Derive(harness.CommandTest):
         self.assertNotIn('left out', one)
         self.write('m.sheet', one)
         self.trammel('check', 'm.sheet')
+
+    def test_a_reader_that_goes_away(self):
+        self.write('m.pdb', pdb())
+        with subprocess.Popen([harness.PROGRAM, 'derive', self.path('m.pdb')], stdout=subprocess.PIPE,
+                              stderr=subprocess.PIPE) as process:
+            process.stdout.close()
+            err = process.stderr.read().decode()
+            self.assertEqual(process.wait(timeout=20 * harness.SLOWER), 3)
+            self.assertIn('trammel: ', err)
 
     def test_bad_files_are_told_with_their_line(self):
         good = pdb()

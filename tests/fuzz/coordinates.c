@@ -14,7 +14,7 @@ static void derive(const tml_coordinates *coordinates, bool covalent) {
     tml_derive_options options = {.cutoff = 4, .atoms = "all", .error = 0.2, .noise = 0.1, .keep = 0.9, .seed = 1, .model = -1,
                                   .covalent = covalent};
     if (coordinates->atom_count > ATOMS_MOST) return;
-    tml_status status = tml_sheet_derive(coordinates, &options, "/dev/null", &derived, &error);
+    tml_status status = tml_sheet_derive(coordinates, &options, "/dev/null", NULL, &derived, &error);
     if (status != TML_OK && status != TML_BAD_INPUT && status != TML_TOO_LARGE) abort();
     if (status != TML_OK && error.message[0] == '\0') abort();
 }
