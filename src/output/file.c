@@ -198,6 +198,15 @@ static size_t character_length(const char *text) {
     return length > 1 && (overlong || beyond) ? 0 : length;
 }
 
+bool tml_text_is_utf8(const char *text) {
+    while (*text != '\0') {
+        size_t length = character_length(text);
+        if (length == 0) return false;
+        text += length;
+    }
+    return true;
+}
+
 /* Inputs may hold anything, and terminals act on control characters: those and what is no UTF-8 become '?'. */
 static void make_printable(char *text) {
     while (*text != '\0') {

@@ -35,6 +35,8 @@ tml_status tml_file_close(tml_file *file, tml_error *error);
 /* Take it back: nothing is left behind. NULL is fine. */
 void tml_file_discard(tml_file *file);
 
+bool tml_text_is_utf8(const char *text);
+
 /* Columns that a text takes. */
 int tml_text_width(const char *text);
 

@@ -43,13 +43,12 @@ static json_t *rounded(double value) {
 /* Text of any input; what is no UTF-8 is told byte by byte. */
 static json_t *text_of(const char *text) {
     if (text == NULL) return json_null();
-    json_t *good = json_string(text);
-    if (good != NULL) return good;
+    if (tml_text_is_utf8(text)) return json_string(text);
     size_t length = strlen(text);
     char *plain = tml_alloc(length + 1, 1);
     if (plain == NULL) return NULL;
     for (size_t at = 0; at < length; at++) plain[at] = (unsigned char)text[at] < 0x80 ? text[at] : '?';
-    if (strcmp(plain, text) != 0) good = json_string(plain); /* otherwise it was no memory */
+    json_t *good = json_string(plain);
     free(plain);
     return good;
 }

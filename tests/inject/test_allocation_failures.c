@@ -14,6 +14,7 @@
 #include "bounds/bounds.h"
 #include "ensemble/build.h"
 #include "output/output.h"
+#include "output/sheet.h"
 
 /* ---- allocations, counted and kept in a set of pointers ---- */
 
@@ -107,15 +108,18 @@ static tml_status check_way(const char *const *paths, size_t count) {
     tml_error error = {0};
     tml_problem *problem = NULL;
     tml_bounds *bounds = NULL;
+    tml_use *uses = NULL;
     tml_contradictions found = {0};
     FILE *nowhere = fopen("/dev/null", "w");
     tml_status status = tml_problem_read(paths, count, &problem, &error);
     if (status == TML_OK) status = tml_bounds_prepare(problem, 1, NULL, &bounds, &found, &error);
     if (status == TML_CONTRADICTED) status = TML_OK;
-    if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, NULL, &error);
-    if (status == TML_OK) status = tml_write_check_json(problem, &found, NULL, in_folder("check.json"), &error);
+    if (status == TML_OK) status = tml_restraints_judge(problem, 1, NULL, &uses, &error);
+    if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, uses, &error);
+    if (status == TML_OK) status = tml_write_check_json(problem, &found, uses, in_folder("check.json"), &error);
     if (status == TML_OK) status = tml_write_bounds(problem, bounds, in_folder("bounds.gz"), &error);
     fclose(nowhere);
+    free(uses);
     tml_contradictions_clear(&found);
     tml_bounds_free(bounds);
     tml_problem_free(problem);
@@ -145,6 +149,19 @@ static tml_status build_way(const char *const *paths, size_t count) {
     tml_ensemble_free(ensemble);
     tml_contradictions_clear(&found);
     tml_problem_free(problem);
+    return status;
+}
+
+static tml_status derive_way(const char *const *paths, size_t count) {
+    tml_error error = {0};
+    tml_coordinates coordinates;
+    tml_derived derived;
+    const tml_derive_options options = {.cutoff = 6, .atoms = "all", .error = 0.5, .keep = 1, .seed = 1, .model = -1,
+                                        .covalent = true};
+    (void)count;
+    tml_status status = tml_coordinates_read(paths[0], &coordinates, &error);
+    if (status == TML_OK) status = tml_sheet_derive(&coordinates, &options, in_folder("derived.sheet"), NULL, &derived, &error);
+    tml_coordinates_clear(&coordinates);
     return status;
 }
 
@@ -190,7 +207,9 @@ int main(void) {
     fail_each(check_way, "tests/cli/contradicted.sheet", 400);
     fail_each(build_way, "tests/cli/five-ring.sheet", 200);
     fail_each(build_way, "tests/cli/peptide.sheet", 60);
-    const char *const names[] = {"check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json"};
+    fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.pdb", 300);
+    fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.cif", 300);
+    const char *const names[] = {"derived.sheet", "check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json"};
     for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) unlink(in_folder(names[i]));
     if (rmdir(folder) != 0) expect(false, "partial files are left", folder, 0, TML_OK);
     printf("%d passed, %d failed\n", passed, failed);
