@@ -15,7 +15,7 @@ static tml_status record(tml_error *error, tml_status status, const char *file, 
     return status;
 }
 
-tml_status tml_fail(tml_error *error, tml_status status, const char *format, ...) {
+tml_status(tml_fail)(tml_error *error, tml_status status, const char *format, ...) {
     va_list arguments;
     va_start(arguments, format);
     record(error, status, NULL, 0, 0, format, arguments);
@@ -23,7 +23,7 @@ tml_status tml_fail(tml_error *error, tml_status status, const char *format, ...
     return status;
 }
 
-tml_status tml_fail_at(tml_error *error, tml_status status, const char *file, long line, long column, const char *format, ...) {
+tml_status(tml_fail_at)(tml_error *error, tml_status status, const char *file, long line, long column, const char *format, ...) {
     va_list arguments;
     va_start(arguments, format);
     record(error, status, file, line, column, format, arguments);

@@ -21,4 +21,10 @@ static inline tml_status tml_no_memory(tml_error *error) {
     return TML_NO_MEMORY;
 }
 
+/* Static analysis does not look into other files; this tells it that a failure is not TML_OK. */
+#ifdef __clang_analyzer__
+#define tml_fail(error, status, ...) ((tml_fail)(error, status, __VA_ARGS__), (status))
+#define tml_fail_at(error, status, ...) ((tml_fail_at)(error, status, __VA_ARGS__), (status))
+#endif
+
 #endif

@@ -1,13 +1,15 @@
 /* target.h: vectors of four doubles, and functions compiled for more than the baseline processor.
  *
- * A function marked TML_WIDE is compiled for AVX2 and the baseline; the loader takes the wider one where the processor has it. Sums keep their written order (no contraction, no reassociation), so all of them give the same bits.
+ * A function marked TML_WIDE is compiled for AVX2 and the baseline; the loader takes the wider one where the processor has it. Sums
+ * keep their written order (no contraction, no reassociation), so all of them give the same bits. gcc only: clang 14 names such
+ * clones so that other files cannot call them.
  */
 #ifndef TML_TARGET_H
 #define TML_TARGET_H
 
 #include <math.h>
 
-#if defined(__x86_64__) && !defined(TML_ONE_TARGET)
+#if defined(__x86_64__) && !defined(__clang__) && !defined(TML_ONE_TARGET)
 #define TML_WIDE __attribute__((target_clones("avx2", "default")))
 #else
 #define TML_WIDE

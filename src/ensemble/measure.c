@@ -162,12 +162,12 @@ static int compare_cells(const void *left, const void *right) {
     return l->atom < r->atom ? -1 : l->atom > r->atom;
 }
 
-enum { CELL_SPAN = 1 << 20 };
+enum { CELL_HALF = 1 << 19, CELL_SPAN = 2 * CELL_HALF };
 static const double CELL = 4.0; /* Å; more than any two radii less what is let off */
 
 static int64_t cell_along(double at) {
     double cell = floor(at / CELL);
-    return cell > -CELL_SPAN / 2 && cell < CELL_SPAN / 2 ? (int64_t)cell + CELL_SPAN / 2 : 0;
+    return cell > -CELL_HALF && cell < CELL_HALF ? (int64_t)cell + CELL_HALF : 0;
 }
 
 static int64_t key_of(const double *xyz, int dx, int dy, int dz) {
