@@ -1,5 +1,5 @@
 /* build.c: `trammel build`: the main job, an ensemble of models. */
-#include "ensemble/build.h"
+#include "ensemble/ensemble.h"
 
 #include <limits.h>
 #include <stdio.h>

@@ -5,7 +5,7 @@
  *   one trial       metrize, embed, refine both images
  *   selection       the best first
  */
-#include "ensemble/build.h"
+#include "ensemble/ensemble.h"
 
 #include <cblas.h>
 #include <math.h>

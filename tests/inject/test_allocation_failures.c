@@ -12,7 +12,7 @@
 #include <unistd.h>
 
 #include "bounds/bounds.h"
-#include "ensemble/build.h"
+#include "ensemble/ensemble.h"
 #include "output/output.h"
 #include "output/sheet.h"
 
