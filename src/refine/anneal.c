@@ -5,39 +5,45 @@
 
 #include "refine/minimise.h"
 
-/* A stretch of dynamics in which temperature changes linearly and every weight geometrically from its start to its end.
- * Energies in kcal/mol by the weights' scale, lengths in Å, masses 1. */
-typedef struct phase {
-    int steps;
-    double hot, cold;        /* kT at its start and end */
-    tml_weights from, to;
-    double skin;             /* Å, of the neighbour list */
-    int list_every;          /* steps between looks at whether an atom has moved by half the skin */
-} phase;
+#define DEGREES *(3.14159265358979323846 / 180.0)
 
-
-#define SOFT                                                                                                                  \
-    {                                                                                                                         \
-        .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 15, .restraint_bend = 1.0,               \
-        .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8                                  \
-    }
-#define DEGREE_ (3.14159265358979323846 / 180.0)
-
-static const phase SCHEDULE[] = {
-    {.steps = 3000, .hot = 12, .cold = 12, .skin = 1.5, .list_every = 8,
-     .from = SOFT,
-     .to = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 1.0,
-            .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8}},
-    {.steps = 6000, .hot = 12, .cold = 0.02, .skin = 1.2, .list_every = 8,
-     .from = {.bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8, .restraint = 30, .restraint_bend = 0.5,
-              .dihedral = 60, .dihedral_bend = 20 * DEGREE_, .repulsion = 0.5, .radius_scale = 0.8},
-     .to = {.bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40, .restraint = 30, .restraint_bend = 0.5,
-            .dihedral = 200, .dihedral_bend = 20 * DEGREE_, .repulsion = 20, .radius_scale = 1.0, .backbone = 1}},
+/* Energies in kcal/mol, lengths in Å. Soft weights let chains pass through each other while the fold is found; firm ones end the
+ * cooling; with the final ones a model is brought to its minimum and judged. */
+static const tml_weights SOFT = {
+    .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
+    .restraint = 15, .restraint_bend = 1.0, .dihedral = 60, .dihedral_bend = 20 DEGREES,
+    .repulsion = 0.5, .radius_scale = 0.8,
+};
+static const tml_weights SOFT_END = {
+    .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
+    .restraint = 30, .restraint_bend = 1.0, .dihedral = 60, .dihedral_bend = 20 DEGREES,
+    .repulsion = 0.5, .radius_scale = 0.8,
+};
+static const tml_weights FIRM = {
+    .bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40,
+    .restraint = 30, .restraint_bend = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .repulsion = 20, .radius_scale = 1.0, .backbone = 1,
+};
+const tml_weights TML_FINAL_WEIGHTS = {
+    .bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
+    .restraint = 60, .restraint_bend = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .repulsion = 30, .radius_scale = 1.0, .backbone = 1,
 };
 
-const tml_weights TML_FINAL_WEIGHTS = {.bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
-                                       .restraint = 60, .restraint_bend = 0.5, .dihedral = 200,
-                                       .dihedral_bend = 20 * DEGREE_, .repulsion = 30, .radius_scale = 1.0, .backbone = 1};
+/* A stretch of dynamics in which temperature changes linearly and every weight geometrically from its start to its end. */
+typedef struct phase {
+    int steps;
+    double hot, cold;          /* kT at its start and end, kcal/mol; masses are 1 */
+    const tml_weights *from, *to;
+    double skin;               /* Å, of the neighbour list */
+    int look_every;            /* steps between looks at whether an atom has moved by half the skin */
+    bool heavy_only;           /* hydrogens do not repel: while hot they only cost time */
+} phase;
+
+static const phase SCHEDULE[] = {
+    {.steps = 3000, .hot = 12, .cold = 12, .from = &SOFT, .to = &SOFT_END, .skin = 1.5, .look_every = 8, .heavy_only = true},
+    {.steps = 6000, .hot = 12, .cold = 0.02, .from = &SOFT_END, .to = &FIRM, .skin = 1.2, .look_every = 8},
+};
 
 /* Step with bonds of k = 1000; it grows as bonds soften. */
 static const double STEP_AT_1000 = 0.012;
@@ -86,13 +92,14 @@ TML_WIDE static void step_once(tml_scene *scene, double dt, double kt) {
 
 static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, const volatile int *stop) {
     int steps = (int)ceil(plan->steps * effort);
-    tml_weights weights = plan->from;
+    tml_weights weights = *plan->from;
+    tml_scene_repel_hydrogens(scene, !plan->heavy_only);
     for (int step = 0; step < steps; step++) {
         if (stop != NULL && *stop) return TML_INTERRUPTED;
         double share = (double)step / steps;
-        if (step % 20 == 0) weights = between(&plan->from, &plan->to, share);
+        if (step % 20 == 0) weights = between(plan->from, plan->to, share);
         tml_status status = TML_OK;
-        if (step % plan->list_every == 0) status = tml_scene_relist(scene, plan->skin);
+        if (step % plan->look_every == 0) status = tml_scene_relist(scene, plan->skin);
         if (status != TML_OK) return status;
         tml_energy(scene, &weights);
         step_once(scene, STEP_AT_1000 / sqrt(weights.bond / 1000), plan->hot + share * (plan->cold - plan->hot));
@@ -102,7 +109,7 @@ static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, 
 
 tml_status tml_anneal(tml_scene *scene, double effort, tml_pcg *pcg, const volatile int *stop) {
     double energy;
-    tml_status status = tml_minimise(scene, &SCHEDULE[0].from, SETTLE_STEPS, 0.0, stop, &energy);
+    tml_status status = tml_minimise(scene, SCHEDULE[0].from, SETTLE_STEPS, 0.0, stop, &energy);
     heat(scene, SCHEDULE[0].hot, pcg);
     for (size_t i = 0; status == TML_OK && i < sizeof SCHEDULE / sizeof *SCHEDULE; i++)
         status = run_phase(scene, &SCHEDULE[i], effort, stop);

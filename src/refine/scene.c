@@ -90,6 +90,11 @@ void tml_scene_store(const tml_scene *scene, double *xyz) {
         for (int k = 0; k < 3; k++) xyz[3 * i + k] = scene->x[i][k];
 }
 
+void tml_scene_repel_hydrogens(tml_scene *scene, bool repel) {
+    if (scene->heavy_only == repel) scene->skin = -1;
+    scene->heavy_only = !repel;
+}
+
 /* ---- the neighbour list ---- */
 
 typedef struct grid { double low[3], size; int32_t cells[3]; } grid;
@@ -123,7 +128,7 @@ static int32_t cell_along(const grid *g, int axis, double at) {
     return cell < g->cells[axis] ? (int32_t)cell : g->cells[axis] - 1;
 }
 
-/* Counting sort of the atoms by cell. */
+/* Counting sort of the listed atoms by cell; the others' cell is -1. */
 static bool sort_atoms(tml_scene *scene, const grid *g) {
     struct tml_cells *cells = scene->cells;
     int32_t count = scene->refiner->atom_count;
@@ -133,11 +138,13 @@ static bool sort_atoms(tml_scene *scene, const grid *g) {
     for (int32_t i = 0; i < count; i++) {
         const tml_v4 *at = &scene->x[i];
         int32_t cell = (cell_along(g, 2, (*at)[2]) * g->cells[1] + cell_along(g, 1, (*at)[1])) * g->cells[0] + cell_along(g, 0, (*at)[0]);
-        cells->cell_of[i] = cell;
-        cells->first[cell + 2]++;
+        bool left_out = scene->heavy_only && scene->refiner->problem->molecule.atoms[i].element == 1;
+        cells->cell_of[i] = left_out ? -1 : cell;
+        if (!left_out) cells->first[cell + 2]++;
     }
     for (size_t c = 2; c < total + 2; c++) cells->first[c] += cells->first[c - 1];
     for (int32_t i = 0; i < count; i++) {
+        if (cells->cell_of[i] < 0) continue;
         int32_t slot = cells->first[cells->cell_of[i] + 1]++;
         cells->order[slot] = i;
         cells->x[slot] = (float)scene->x[i][0];

@@ -16,7 +16,8 @@ typedef struct tml_scene {
     float *near_contact;     /* their contact distances, Å */
     int32_t near_count;      /* with padding */
     size_t near_capacity, contact_capacity;
-    double skin;             /* how much farther than contact the list reaches, Å */
+    double skin;             /* how much farther than contact the list reaches, Å; negative: no list */
+    bool heavy_only;         /* hydrogens are left out of the list */
     struct tml_cells *cells; /* work space of neighbour.c */
 } tml_scene;
 
@@ -25,6 +26,9 @@ void tml_scene_free(tml_scene *scene);
 
 void tml_scene_load(tml_scene *scene, const double *xyz);       /* positions from atom_count*3 doubles */
 void tml_scene_store(const tml_scene *scene, double *xyz);
+
+/* Whether hydrogens repel; a change calls for a new list. */
+void tml_scene_repel_hydrogens(tml_scene *scene, bool repel);
 
 /* Make the neighbour list for the present positions, reaching `skin` Å beyond contact. TML_OK or TML_NO_MEMORY. */
 tml_status tml_scene_list(tml_scene *scene, double skin);
