@@ -176,16 +176,17 @@ static tml_status place(const run *work, bench *tools, double *eigenvalues, tml_
     return status;
 }
 
-/* How far two models are from each other after superposition of their backbone, or of all atoms where there is none, Å. */
-static double images_apart(const tml_problem *problem, const double *one, const double *other) {
+/* How far two models are from each other after superposition of their alpha carbons, or of all atoms where there are few, Å. */
+static tml_status images_apart(const tml_problem *problem, const double *one, const double *other, double *apart, tml_error *error) {
     const tml_molecule *molecule = &problem->molecule;
     int32_t *alpha = tml_alloc((size_t)molecule->atom_count, sizeof *alpha), count = 0;
     tml_motion motion;
-    for (int32_t i = 0; alpha != NULL && i < molecule->atom_count; i++)
+    if (alpha == NULL) return tml_no_memory(error);
+    for (int32_t i = 0; i < molecule->atom_count; i++)
         if (molecule->residues[molecule->atoms[i].residue].amino_acid && strcmp(molecule->atoms[i].name, "CA") == 0) alpha[count++] = i;
-    double apart = count < 4 ? tml_superpose(one, other, NULL, molecule->atom_count, &motion) : tml_superpose(one, other, alpha, count, &motion);
+    *apart = count < 4 ? tml_superpose(one, other, NULL, molecule->atom_count, &motion) : tml_superpose(one, other, alpha, count, &motion);
     free(alpha);
-    return apart;
+    return TML_OK;
 }
 
 /* One image of an embedding, refined and measured. */
@@ -221,7 +222,7 @@ static tml_status try_images(const run *work, bench *tools, tml_pcg *pcg, bool b
         reflect(tools->spare, n);
         status = improve(work, pcg, tools->spare, &second, error);
         keep_first = !better(second.passed, second.error, first.passed, first.error);
-        if (status == TML_OK && both) model->images_apart = images_apart(work->problem, model->xyz, tools->spare);
+        if (status == TML_OK && both) status = images_apart(work->problem, model->xyz, tools->spare, &model->images_apart, error);
         model->both_passed = first.passed && second.passed;
         model->other_error = keep_first ? second.error : first.error;
         if (!keep_first) memcpy(model->xyz, tools->spare, bytes);
