@@ -25,8 +25,6 @@ extern void openblas_set_num_threads(int count);
 extern int openblas_get_num_threads(void);
 
 enum { MAJORIZE_STEPS = 10, SQUEEZE_STEPS = 20, MODELS_DEFAULT = 20, TRIALS_PER_MODEL = 5, PROBING_TRIALS = 4 };
-/* Two models whose backbones (or heavy atoms) superpose no better are different folds, Å. */
-static const double DIFFERENT_FOLD = 4.0;
 /* What is left of the fourth coordinate after one squeezing step. */
 static const double SQUEEZE = 0.8;
 /* Memory beside the matrices, bytes. */
@@ -291,7 +289,7 @@ static void give_trial(run *work, int trial, const tml_model *model, tml_status 
  * folds. Where they ended as one fold, or only one of them passed, the error function knows the hand by itself. */
 static bool hand_in_doubt(const run *work) {
     for (int i = 0; i < work->next; i++)
-        if (work->ready[i] && work->models[i].both_passed && work->models[i].images_apart > DIFFERENT_FOLD) return true;
+        if (work->ready[i] && tml_model_hand_in_doubt(&work->models[i])) return true;
     return false;
 }
 

@@ -20,6 +20,14 @@ typedef struct tml_model {
     tml_measures measures;
 } tml_model;
 
+/* Two models that superpose no better are different folds, Å. */
+#define TML_DIFFERENT_FOLD 4.0
+
+/* Whether both images of the model's embedding passed and ended as different folds: the limits do not tell the hand. */
+static inline bool tml_model_hand_in_doubt(const tml_model *model) {
+    return model->both_passed && model->images_apart > TML_DIFFERENT_FOLD;
+}
+
 typedef struct tml_timing { double read, smooth, metrize, embed, refine, write, total; } tml_timing;
 
 struct tml_ensemble {

@@ -112,19 +112,17 @@ static json_t *cis_peptides(const tml_molecule *molecule) {
     return list;
 }
 
-/* How often each image of the embedding won, and how often the other came within a tenth of its error. */
+/* How often each image of the embedding won, and how often the other one, refined as well, passed as a different fold. */
 static json_t *handedness(const tml_ensemble *ensemble) {
-    static const double CLOSE = 1.1;
-    int mirrored = 0, close = 0, compared = 0;
+    int mirrored = 0, doubtful = 0, compared = 0;
     for (int32_t m = 0; m < ensemble->model_count; m++) {
         const tml_model *model = &ensemble->models[m];
         mirrored += model->mirrored;
-        if (!isfinite(model->other_error)) continue;
-        compared++;
-        close += model->other_error <= model->error * CLOSE;
+        compared += isfinite(model->other_error);
+        doubtful += tml_model_hand_in_doubt(model);
     }
     return json_pack("{s:i, s:i, s:i, s:i}", "as_embedded", ensemble->model_count - mirrored, "mirrored", mirrored, "both_refined",
-                     compared, "both_close", close);
+                     compared, "in_doubt", doubtful);
 }
 
 tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error) {

@@ -247,22 +247,20 @@ static void tell_cis(tml_file *file, const tml_molecule *molecule) {
 }
 
 static void tell_hands(tml_file *file, const tml_ensemble *ensemble) {
-    static const double CLOSE = 1.1; /* errors within a tenth: the limits hardly tell the images apart */
-    int32_t mirrored = 0, close = 0;
+    int32_t mirrored = 0, doubtful = 0;
     for (int32_t m = 0; m < ensemble->model_count; m++) {
-        const tml_model *model = &ensemble->models[m];
-        mirrored += model->mirrored;
-        close += isfinite(model->other_error) && model->other_error <= model->error * CLOSE;
+        mirrored += ensemble->models[m].mirrored;
+        doubtful += tml_model_hand_in_doubt(&ensemble->models[m]);
     }
     heading(file, "Handedness");
     tml_file_print(file, "%d model%s come%s from the embedding as it was, %d from its mirror image.\n",
                    ensemble->model_count - mirrored, plural(ensemble->model_count - mirrored),
                    ensemble->model_count - mirrored == 1 ? "s" : "", mirrored);
-    if (close > 0)
+    if (doubtful > 0)
         tml_file_paragraph(file, WIDTH, "", "  ",
-                           "In %d of them the other image refined to an error within a tenth of the chosen one's: the limits "
-                           "hardly tell the fold from its mirror image.",
-                           close);
+                           "For %d of them the other image passed, too, as a different fold: the limits do not tell the fold from its "
+                           "mirror image.",
+                           doubtful);
     tell_cis(file, &ensemble->problem->molecule);
 }
 
