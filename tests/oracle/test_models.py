@@ -134,7 +134,7 @@ class WrittenFiles(unittest.TestCase):
         self.assertEqual(summary['models'][1]['other_image_error'], 21.5)
         self.assertIsNone(summary['models'][0]['other_image_error'])
         self.assertEqual(summary['models'][0]['eigenvalues'], [9, 8, 7, 1, -2])
-        self.assertEqual(summary['handedness'], {'as_embedded': 2, 'mirrored': 1, 'both_refined': 1, 'both_close': 1})
+        self.assertEqual(summary['handedness'], {'as_embedded': 2, 'mirrored': 1, 'both_refined': 1, 'in_doubt': 1})
         self.assertEqual(summary['well_defined'], ['A:2', 'A:3'])
         self.assertEqual(summary['notes'][0]['line'], 3)
 

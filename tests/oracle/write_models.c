@@ -66,7 +66,8 @@ static void invent(tml_problem *problem, tml_model *models, tml_ensemble *ensemb
     ensemble->spread[0] = 5000;
     for (int m = 0; m < MODELS; m++) {
         models[m] = (tml_model){.xyz = malloc(3 * n * sizeof(double)), .trial = m + 2, .error = 10.5 * (m + 1), .passed = m < 2,
-                                .mirrored = m == 1, .other_error = m == 1 ? 21.5 : 1.0 / 0.0, .eigenvalues = {9, 8, 7, 1, -2}};
+                                .mirrored = m == 1, .other_error = m == 1 ? 21.5 : 1.0 / 0.0, .both_passed = m == 1, .images_apart = m == 1 ? 9 : 0,
+                                .eigenvalues = {9, 8, 7, 1, -2}};
         models[m].measures = (tml_measures){.distance_over_01 = m, .distance_max = 0.2 * m, .backbone_usual = 0.0 / 0.0};
         if (models[m].xyz == NULL) exit(3);
         for (size_t k = 0; k < 3 * n; k++) models[m].xyz[k] = tml_pcg_normal(&pcg) * 100;
