@@ -81,8 +81,8 @@ tml_status tml_bounds_smooth(tml_bounds *bounds, int threads, const tml_watch *w
 /* The same with vectors of a given width, for tests and benchmarks. */
 tml_status tml_bounds_smooth_with(tml_bounds *bounds, int threads, tml_width width, const tml_watch *watch, tml_error *error);
 
-/* Contradictions with their proofs, found in double from the given limits, shortest proofs first; of proofs that share a
- * restraint of the user's only the shortest is kept.
+/* Contradictions with their proofs, found in double from the given limits: those that lean on no assumption first, then by length;
+ * of proofs that share a restraint of the user's only the first is kept.
  *
  * closed       the limits after tml_bounds_smooth returned TML_CONTRADICTED: its uppers are closed, its lowers as given
  * tolerance    the excess, Å, from which it counts

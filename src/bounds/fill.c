@@ -127,7 +127,8 @@ static bool add_across(filler *f, int32_t a, int32_t b, int32_t c, int32_t d, do
     double least, most;
     widest(from, to, &least, &most);
     double near = tml_geometry_across(&f->geometry, a, b, c, d, least), far = tml_geometry_across(&f->geometry, a, b, c, d, most);
-    if (isnan(near) || isnan(far)) return true;
+    /* Not known: nothing is said but that the two are too near in the bonds for the radii to count. */
+    if (isnan(near) || isnan(far)) return add(f, a, d, 0, false, reason, conditional, source);
     return add_range(f, a, d, near - TORSION_SLACK, far + TORSION_SLACK, reason, conditional, source);
 }
 
@@ -180,7 +181,8 @@ static double diameter(tml_graph *covalent, const int32_t *atoms, int32_t count)
 }
 
 /* The rule: with N pairs in the sum, its upper limit binds the nearest pair to u·N^(1/6); any pair is farther by no more than
- * the two groups' diameters. A lower limit of a sum holds for every pair; of an average, for none but a single one. */
+ * the two groups' diameters. A lower limit l of a sum holds for every pair; of an average of N
+ * pairs, l·N^(-1/6) does. */
 static bool fill_alternative(filler *f, tml_graph *covalent, int32_t index, const tml_alternative *alternative, bool upper) {
     const tml_restraints *restraints = &f->problem->restraints;
     const tml_distance_restraint *restraint = &restraints->distances[index];
