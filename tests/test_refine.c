@@ -105,7 +105,7 @@ static void check_gradient(const tml_weights *weights, const char *name) {
     make_model(&m);
     tml_refiner *refiner;
     tml_scene *scene;
-    cr_assert_eq(tml_refiner_new(&m.problem, &refiner, NULL), TML_OK);
+    cr_assert_eq(tml_refiner_new(&m.problem, false, &refiner, NULL), TML_OK);
     cr_assert_eq(tml_scene_new(refiner, &scene, NULL), TML_OK);
     double moved = 0;
     for (uint64_t seed = 1; seed <= 20; seed++) {
@@ -159,7 +159,7 @@ Test(gradient, flat_centres_agree_with_finite_differences) {
     m.problem.molecule.neighbours = neighbours;
     tml_refiner *refiner;
     tml_scene *scene;
-    cr_assert_eq(tml_refiner_new(&m.problem, &refiner, NULL), TML_OK);
+    cr_assert_eq(tml_refiner_new(&m.problem, false, &refiner, NULL), TML_OK);
     cr_assert_eq(refiner->flat_count, 1);
     cr_assert_eq(tml_scene_new(refiner, &scene, NULL), TML_OK);
     double xyz[3 * ATOMS];
@@ -185,7 +185,7 @@ Test(neighbours, list_holds_every_touching_pair_that_brute_force_finds) {
                                         .neighbour_first = none, .neighbours = none}};
     tml_refiner *refiner;
     tml_scene *scene;
-    cr_assert_eq(tml_refiner_new(&problem, &refiner, NULL), TML_OK);
+    cr_assert_eq(tml_refiner_new(&problem, false, &refiner, NULL), TML_OK);
     cr_assert_eq(tml_scene_new(refiner, &scene, NULL), TML_OK);
     tml_pcg pcg;
     tml_pcg_seed(&pcg, 5, 5);
@@ -221,7 +221,7 @@ Test(minimise, four_bonded_points_become_a_regular_tetrahedron) {
     tml_refiner *refiner;
     tml_scene *scene;
     double xyz[12] = {0, 0, 0, 1, 0.1, 0, 0.2, 1.2, 0.1, 0.3, 0.2, 0.4}, energy;
-    cr_assert_eq(tml_refiner_new(&problem, &refiner, NULL), TML_OK);
+    cr_assert_eq(tml_refiner_new(&problem, false, &refiner, NULL), TML_OK);
     cr_assert_eq(tml_scene_new(refiner, &scene, NULL), TML_OK);
     tml_scene_load(scene, xyz);
     cr_assert_eq(tml_minimise(scene, &TML_FINAL_WEIGHTS, 500, 1e-6, NULL, &energy), TML_OK);

@@ -141,6 +141,7 @@ typedef struct tml_build_options {
     int dimensions;     /* of the embedding: 3 (default) or 4 */
     int metrize_roots;  /* atoms metrized; 0 for all */
     double effort;      /* scales the annealing; 1 is usual */
+    bool free_backbone; /* do not draw phi and psi to the regions that are usual in folded proteins */
 } tml_build_options;
 
 void tml_build_defaults(tml_build_options *options);

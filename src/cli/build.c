@@ -26,6 +26,7 @@ static const char HELP[] =
     "      --strict             stop at the first finding: limits that contradict each other, restraints that name\n"
     "                           unknown atoms\n"
     "      --effort X           scale the length of the annealing by X, 0.01 to 100 (default 1)\n"
+    "      --backbone usual|free  draw phi and psi of proteins gently to their usual regions (default), or not at all\n"
     "      --dimensions 3|4     embed in 3 dimensions (default) or 4\n"
     "      --roots K            metrize the rows of K atoms only (default: all)\n"
     "      --progress           tell the progress on standard error even if that is no terminal\n"
@@ -47,7 +48,7 @@ const tml_command tml_command_build = {"build", "an ensemble of models that meet
 /* The option `got`: false after a message. */
 static bool take_option(const tml_command *self, int got, const char *value, settings *set);
 
-enum { FORMAT = TML_OPTION_OWN, SUMMARY, TRIALS, SEED, SELECT, STRICT, EFFORT, DIMENSIONS, ROOTS, PROGRESS };
+enum { FORMAT = TML_OPTION_OWN, SUMMARY, TRIALS, SEED, SELECT, STRICT, EFFORT, BACKBONE, DIMENSIONS, ROOTS, PROGRESS };
 
 static const struct option OPTIONS[] = {{"output", required_argument, NULL, 'o'},
                                         {"format", required_argument, NULL, FORMAT},
@@ -59,6 +60,7 @@ static const struct option OPTIONS[] = {{"output", required_argument, NULL, 'o'}
                                         {"select", required_argument, NULL, SELECT},
                                         {"strict", no_argument, NULL, STRICT},
                                         {"effort", required_argument, NULL, EFFORT},
+                                        {"backbone", required_argument, NULL, BACKBONE},
                                         {"dimensions", required_argument, NULL, DIMENSIONS},
                                         {"roots", required_argument, NULL, ROOTS},
                                         {"progress", no_argument, NULL, PROGRESS},
@@ -96,6 +98,13 @@ static bool take_selection(const tml_command *self, const char *value, bool *low
     return false;
 }
 
+static bool take_backbone(const tml_command *self, const char *value, bool *is_free) {
+    *is_free = strcmp(value, "free") == 0;
+    if (*is_free || strcmp(value, "usual") == 0) return true;
+    tml_cli_usage(self, "--backbone takes usual or free, not '%s'.", value);
+    return false;
+}
+
 static bool take_option(const tml_command *self, int got, const char *value, settings *set) {
     enum { MODELS_MOST = 9999, TRIALS_MOST = 1000000 };
     tml_build_options *build = &set->build;
@@ -110,6 +119,7 @@ static bool take_option(const tml_command *self, int got, const char *value, set
     case SELECT: return take_selection(self, value, &build->select_lowest);
     case STRICT: build->strict = true; return true;
     case EFFORT: return tml_cli_real(self, "--effort", value, 0.01, 100.0, &build->effort);
+    case BACKBONE: return take_backbone(self, value, &build->free_backbone);
     case DIMENSIONS: return take_count(self, "--dimensions", value, 3, 4, &build->dimensions);
     case ROOTS: return take_count(self, "--roots", value, 1, INT_MAX, &build->metrize_roots);
     default: set->progress = true; return true; /* PROGRESS, the last in the table */

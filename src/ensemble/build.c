@@ -83,7 +83,7 @@ tml_status tml_build(tml_problem *problem, const tml_build_options *options, con
         status = options->strict ? tml_fail(error, TML_CONTRADICTED, "the limits contradict each other") : TML_OK;
     }
     if (status == TML_OK) tml_bounds_cap(bounds);
-    if (status == TML_OK) status = tml_refiner_new(problem, &refiner, error);
+    if (status == TML_OK) status = tml_refiner_new(problem, options->free_backbone, &refiner, error);
     if (status == TML_OK) {
         run work = {.problem = problem, .options = options, .bounds = bounds, .refiner = refiner, .watch = watch,
                     .trial_limit = options->trials > 0 ? options->trials : TRIALS_PER_MODEL * options->models,

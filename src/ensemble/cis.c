@@ -86,7 +86,7 @@ static tml_status fold(const tml_problem *fragment, uint64_t seed, const volatil
     int32_t n = fragment->molecule.atom_count;
     tml_refiner *refiner = NULL;
     double *xyz = tml_alloc((size_t)n * 3, sizeof *xyz);
-    tml_status status = xyz == NULL ? tml_no_memory(error) : tml_refiner_new(fragment, &refiner, error);
+    tml_status status = xyz == NULL ? tml_no_memory(error) : tml_refiner_new(fragment, false, &refiner, error);
     *best = (outcome){.error = INFINITY, .restraint = -1};
     for (int start = 0; status == TML_OK && start < STARTS; start++) {
         double energy;

@@ -9,7 +9,8 @@
 
 typedef struct tml_refiner tml_refiner;
 
-tml_status tml_refiner_new(const tml_problem *problem, tml_refiner **out, tml_error *error);
+/* The terms of a problem. With `free_backbone` nothing draws phi and psi to the regions that are usual in folded proteins. */
+tml_status tml_refiner_new(const tml_problem *problem, bool free_backbone, tml_refiner **out, tml_error *error);
 void tml_refiner_free(tml_refiner *refiner);
 
 /* Refine one model in place.

@@ -25,7 +25,7 @@ static tml_status make_torsions(tml_refiner *refiner, tml_error *error);
 static tml_status make_backbones(tml_refiner *refiner, tml_error *error);
 static tml_status make_contacts(tml_refiner *refiner, const tml_geometry *table, tml_error *error);
 
-tml_status tml_refiner_new(const tml_problem *problem, tml_refiner **out, tml_error *error) {
+tml_status tml_refiner_new(const tml_problem *problem, bool free_backbone, tml_refiner **out, tml_error *error) {
     *out = NULL;
     tml_refiner *refiner = tml_alloc(1, sizeof *refiner);
     if (refiner == NULL) return tml_no_memory(error);
@@ -37,7 +37,7 @@ tml_status tml_refiner_new(const tml_problem *problem, tml_refiner **out, tml_er
     if (status == TML_OK) status = make_volumes(refiner, &table, error);
     if (status == TML_OK) status = make_sums(refiner, error);
     if (status == TML_OK) status = make_torsions(refiner, error);
-    if (status == TML_OK) status = make_backbones(refiner, error);
+    if (status == TML_OK && !free_backbone) status = make_backbones(refiner, error);
     if (status == TML_OK) status = make_contacts(refiner, &table, error);
     tml_geometry_clear(&table);
     if (status != TML_OK) {
