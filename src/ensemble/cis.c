@@ -13,8 +13,8 @@
 
 /* Random starts of each form. */
 enum { STARTS = 12, REACH_BEFORE = 2, REACH_AFTER = 1 };
-/* Trans must violate some restraint by at least this much more than cis does, in its best model, Å. */
-static const double CLEAR = 0.3;
+/* In its best model, trans must violate some restraint by at least so many Å more than cis does, and have so much more error. */
+static const double CLEAR = 0.2, CLEAR_ERROR = 10.0;
 /* Share of the usual annealing: a fragment of four residues folds fast. */
 static const double EFFORT = 0.25;
 /* Edge of the box of random starts, Å. */
@@ -45,7 +45,7 @@ tml_status tml_find_cis(tml_problem *problem, uint64_t seed, int threads, const 
                 tml_molecule_set_peptide(molecule, i, true);
                 status = cut_about(problem, peptide, &cis, error);
                 if (status == TML_OK) status = fold(cis, seed, stop, &as_cis, error);
-                bool needed = status == TML_OK && as_trans.worst >= as_cis.worst + CLEAR && as_cis.error < as_trans.error;
+                bool needed = status == TML_OK && as_trans.worst >= as_cis.worst + CLEAR && as_trans.error >= as_cis.error + CLEAR_ERROR;
                 if (needed)
                     status = note_cis(problem, peptide, trans, &as_trans, &as_cis, error);
                 else

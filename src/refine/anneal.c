@@ -8,7 +8,8 @@
 #define DEGREES *(3.14159265358979323846 / 180.0)
 
 /* Energies in kcal/mol, lengths in Å. Soft weights let chains pass through each other while the fold is found; firm ones end the
- * cooling; with the final ones a model is brought to its minimum and judged. */
+ * cooling; with the final ones a model is brought to its minimum and judged. A restraint pulls hard near its limit and with a
+ * bounded force far from it, so that one that cannot be met bends no bond. */
 static const tml_weights SOFT = {
     .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
     .restraint = 15, .restraint_bend = 1.0, .dihedral = 60, .dihedral_bend = 20 DEGREES,
@@ -21,12 +22,12 @@ static const tml_weights SOFT_END = {
 };
 static const tml_weights FIRM = {
     .bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40,
-    .restraint = 30, .restraint_bend = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .restraint = 60, .restraint_bend = 0.3, .dihedral = 200, .dihedral_bend = 20 DEGREES,
     .repulsion = 20, .radius_scale = 1.0, .backbone = 1,
 };
 const tml_weights TML_FINAL_WEIGHTS = {
     .bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
-    .restraint = 60, .restraint_bend = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .restraint = 150, .restraint_bend = 0.2, .dihedral = 200, .dihedral_bend = 20 DEGREES,
     .repulsion = 30, .radius_scale = 1.0, .backbone = 1,
 };
 
