@@ -91,6 +91,7 @@ static bool cut_terms(cut *c) {
     for (int32_t i = 0; i < to->peptide_count; i++) {
         to->peptides[i].residue1 = c->new_residue[to->peptides[i].residue1];
         to->peptides[i].residue2 = c->new_residue[to->peptides[i].residue2];
+        to->peptides[i].bond = to->peptides[i].plane = -1;
     }
     return true;
 }
