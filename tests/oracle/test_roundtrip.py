@@ -1,7 +1,7 @@
 """Known structures, there and back: limits derived from PDB entries (open data) through `derive`, models through `build`, compared
 with the entries by SciPy's superposition (scipy.spatial.transform.Rotation.align_vectors).
 
-2SDF and 1ADZ are NMR ensembles with hydrogens; 1ZAA (its first finger) and 1SP1 are zinc fingers. Distances tell nothing of the
+1ADZ is an NMR ensemble with hydrogens; 1ZAA (its first finger) and 1SP1 are zinc fingers. Distances tell nothing of the
 hand: it is the chemistry's, so models must be near the entry and far from its mirror image.
 """
 import gzip
@@ -20,8 +20,7 @@ ENSEMBLES, FINGERS = '/usr/share/doc/theseus/examples', '/usr/share/doc/mustang-
 
 # Entry, options of derive, and the largest backbone r.m.s.d. (N, CA, C; Å) of the best model of some trials.
 PROTONS = ('--atoms', 'hydrogens', '--cutoff', '6', '--error', '1', '--keep', '0.3')
-CASES = {'2sdf': (f'{ENSEMBLES}/2sdf.pdb.gz', PROTONS, 2, 2.0),
-         '1adz': (f'{ENSEMBLES}/1adz.pdb.gz', PROTONS, 2, 1.5),
+CASES = {'1adz': (f'{ENSEMBLES}/1adz.pdb.gz', PROTONS, 2, 1.5),
          '1zaa, a tenth of all heavy pairs': (f'{FINGERS}/1zaa1.pdb', ('--cutoff', '10', '--keep', '0.1'), 4, 0.6),
          '1zaa, near heavy pairs': (f'{FINGERS}/1zaa1.pdb', ('--cutoff', '6', '--error', '1', '--keep', '0.3'), 4, 1.0),
          '1sp1, near heavy pairs': (f'{FINGERS}/1sp1.pdb', ('--cutoff', '6', '--error', '1', '--keep', '0.3'), 4, 1.2)}
