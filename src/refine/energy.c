@@ -107,7 +107,7 @@ INLINE double volumes(const tml_volume_term *terms, int32_t count, double k, con
 /* ---- planes ---- */
 
 /* Least eigenvalue of a symmetric 3×3 matrix and its unit vector, by the trigonometric solution of the cubic. */
-static double least_eigenpair(const double m[6], double vector[3]) {
+INLINE double least_eigenpair(const double m[6], double vector[3]) {
     double a = m[0], b = m[1], c = m[2], d = m[3], e = m[4], g = m[5]; /* xx yy zz xy xz yz */
     double third = (a + b + c) / 3;
     double p2 = (a - third) * (a - third) + (b - third) * (b - third) + (c - third) * (c - third) + 2 * (d * d + e * e + g * g);
@@ -133,7 +133,7 @@ static double least_eigenpair(const double m[6], double vector[3]) {
     return value;
 }
 
-static double planes(const tml_molecule *molecule, double k, const tml_v4 *x, tml_v4 *f) {
+INLINE double planes(const tml_molecule *molecule, double k, const tml_v4 *x, tml_v4 *f) {
     double energy = 0;
     for (int32_t i = 0; i < molecule->plane_count; i++) {
         const tml_plane *plane = &molecule->planes[i];
@@ -304,7 +304,7 @@ INLINE double outside(double angle, double lower, double upper) {
     return off - width <= 2 * PI - off ? off - width : off - 2 * PI;
 }
 
-static double torsions(const tml_refiner *refiner, double k, double bend, const tml_v4 *x, tml_v4 *f) {
+INLINE double torsions(const tml_refiner *refiner, double k, double bend, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, slope;
     const tml_dihedral_interval *intervals = refiner->problem->restraints.intervals;
     for (int32_t i = 0; i < refiner->torsion_count; i++) {
@@ -335,7 +335,7 @@ static double torsions(const tml_refiner *refiner, double k, double bend, const 
 static const double ELSEWHERE = 0.01;
 
 /* E = -h·ln(ELSEWHERE + Σ share·exp(κ(cos(φ-φ0)-1) + κ'(cos(ψ-ψ0)-1))). Glycine, which has no side chain, is left free. */
-static double backbones(const tml_refiner *refiner, double height, const tml_v4 *x, tml_v4 *f) {
+INLINE double backbones(const tml_refiner *refiner, double height, const tml_v4 *x, tml_v4 *f) {
     double energy = 0;
     for (int32_t i = 0; i < refiner->backbone_count; i++) {
         const tml_backbone_term *term = &refiner->backbones[i];
