@@ -350,6 +350,9 @@ static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
 };
 
+/* Words of the grammar that this version cannot carry out. */
+static const char *const LATER[] = {"molecule", "component", "alike"};
+
 static tml_status run_statement(sheet *s) {
     char name[64] = "", near[160] = "";
     if (!s->begun) {
@@ -360,6 +363,10 @@ static tml_status run_statement(sheet *s) {
     }
     for (size_t i = 0; i < sizeof STATEMENTS / sizeof *STATEMENTS; i++)
         if (is_word(s, 0, STATEMENTS[i].name)) return STATEMENTS[i].run(s);
+    for (size_t i = 0; i < sizeof LATER / sizeof *LATER; i++)
+        if (is_word(s, 0, LATER[i]))
+            return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, s->words[0].column,
+                               "'%s' is not yet understood; this version builds from sequence, atom, link, chiral and plane", LATER[i]);
     snprintf(name, sizeof name, "%.*s", s->words[0].length > 40 ? 40 : s->words[0].length, s->words[0].text);
     tml_nearest nearest;
     tml_nearest_start(&nearest, name);
