@@ -122,6 +122,9 @@ static void read_bare(lexer *lex) {
         lex->kind = TOKEN_DATA;
         token->text += 5;
         token->length -= 5;
+    } else if (token->length == 7 && starts(token, "global_")) { /* STAR; a block of its own without a name */
+        lex->kind = TOKEN_DATA;
+        token->length = 0;
     } else if (starts(token, "save_")) {
         lex->kind = token->length == 5 ? TOKEN_SAVE_END : TOKEN_SAVE;
         token->text += 5;
