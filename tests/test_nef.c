@@ -56,6 +56,27 @@ Test(nef, rows_of_one_combination_hold_together) {
     tml_problem_free(problem);
 }
 
+Test(nef, a_combination_goes_as_a_whole_wherever_its_missing_atom_stands) {
+    static const char *const ROWS[] = {
+        "1 A 1 MET HA A 2 VAL NO a 1 3\n1 A 1 MET HA A 3 PHE H a 1 3\n1 A 1 MET HA A 4 SER H b 1 3\n",
+        "1 A 1 MET HA A 3 PHE H a 1 3\n1 A 1 MET HA A 2 VAL NO a 1 3\n1 A 1 MET HA A 4 SER H b 1 3\n",
+        "1 A 1 MET HA A 4 SER H b 1 3\n1 A 1 MET HA A 3 PHE H a 1 3\n1 A 1 MET HA A 2 VAL NO a 1 3\n",
+    };
+    for (size_t i = 0; i < sizeof ROWS / sizeof *ROWS; i++) {
+        char text[4096];
+        snprintf(text, sizeof text, SEQUENCE DISTANCES("_nef_distance_restraint.restraint_combination_id\n" LIMITS, "%s"), ROWS[i]);
+        tml_problem *problem = read_good(text);
+        cr_assert_eq(problem->restraints.distance_count, 1);
+        const tml_distance_restraint *restraint = &problem->restraints.distances[0];
+        cr_assert_eq(restraint->alternative_count, 1);
+        const tml_alternative *kept = &problem->restraints.alternatives[restraint->first_alternative];
+        cr_assert_eq(problem->restraints.group_atoms[kept->first_b], atom_at(problem, "A", "4", "H"));
+        cr_assert_eq(problem->note_count, 1);
+        cr_assert_not_null(strstr(problem->notes[0].text, "2 of its 3 alternatives"), "%s", problem->notes[0].text);
+        tml_problem_free(problem);
+    }
+}
+
 Test(nef, linear_limits_and_targets_stand_in_for_missing_limits) {
     tml_problem *problem = read_good(SEQUENCE DISTANCES(
         LIMITS "_nef_distance_restraint.lower_linear_limit\n_nef_distance_restraint.upper_linear_limit\n_nef_distance_restraint.target_value\n"

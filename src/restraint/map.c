@@ -158,12 +158,15 @@ static tml_status check_distance(map *m, const tml_distance_row *row) {
     return *text == '\0' ? TML_OK : fail_at(m, row->place, text);
 }
 
+/* A combination of one restraint; broken where a row of it names nothing. */
+typedef struct together { const char *name; bool broken; } together;
+
 /* Number of a combination within its restraint, by its name. */
-static int32_t combination_of(const char **known, int32_t *count, const char *name) {
+static int32_t combination_of(together *known, int32_t *count, const char *name) {
     if (*name == '\0') return -1;
     for (int32_t k = 0; k < *count; k++)
-        if (known[k] == name) return k;
-    known[*count] = name;
+        if (known[k].name == name) return k;
+    known[*count] = (together){.name = name};
     return (*count)++;
 }
 
@@ -228,13 +231,15 @@ static tml_range range_of(const map *m, const tml_distance_restraint *restraint)
     return nearest;
 }
 
-/* A combination with a row that names nothing cannot hold as a whole: its other rows go, too. */
-static void drop_combination(map *m, tml_distance_restraint *restraint, int32_t combination) {
-    tml_alternative *alternatives = &m->out->alternatives[restraint->first_alternative];
-    int32_t kept = 0, count = m->out->alternative_count - restraint->first_alternative;
-    for (int32_t k = 0; k < count; k++)
-        if (alternatives[k].combination != combination) alternatives[kept++] = alternatives[k];
-    m->out->alternative_count = restraint->first_alternative + kept;
+/* A combination with a row that names nothing cannot hold as a whole: its other rows go, too. Returns how many went. */
+static int32_t drop_broken(map *m, const tml_distance_restraint *restraint, const together *known) {
+    int32_t kept = restraint->first_alternative, count = m->out->alternative_count;
+    for (int32_t k = kept; k < count; k++) {
+        int32_t of = m->out->alternatives[k].combination;
+        if (of < 0 || !known[of].broken) m->out->alternatives[kept++] = m->out->alternatives[k];
+    }
+    m->out->alternative_count = kept;
+    return count - kept;
 }
 
 /* Limits as the rows write them: NAN, an open limit, equals itself. */
@@ -242,7 +247,7 @@ static bool same_limit(double a, double b) {
     return a == b || (isnan(a) && isnan(b));
 }
 
-static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, const char **known) {
+static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, together *known) {
     const tml_distance_row *first = &m->rows->distances[order[0]];
     tml_restraints *out = m->out;
     if (!tml_grow(&out->distances, &m->distances, (size_t)out->distance_count + 1, sizeof *out->distances)) return tml_no_memory(m->error);
@@ -260,13 +265,14 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
         const tml_distance_row *row = &m->rows->distances[order[k]];
         bool whole = true;
         tml_status status = check_distance(m, row);
-        int32_t combination = combination_of(known, &combinations, row->combination);
-        if (status == TML_OK) status = add_row(m, row, combination, &whole);
+        int32_t which = combination_of(known, &combinations, row->combination);
+        if (status == TML_OK) status = add_row(m, row, which, &whole);
         if (status != TML_OK) return status == TML_NO_MEMORY ? tml_no_memory(m->error) : status;
         lost += !whole;
-        if (!whole && combination >= 0) drop_combination(m, restraint, combination);
+        if (!whole && which >= 0) known[which].broken = true;
         differing += !same_limit(row->lower, first->lower) || !same_limit(row->upper, first->upper);
     }
+    lost += drop_broken(m, restraint, known);
     restraint->alternative_count = out->alternative_count - restraint->first_alternative;
     if (restraint->alternative_count == 0) return add_unmapped(m, first->list, first->id, first->place, false);
     if (isnan(first->lower) && isnan(first->upper)) {
@@ -291,7 +297,7 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
 
 static tml_status map_distances(map *m) {
     gathering g = {0};
-    const char **known = tml_alloc(m->rows->distance_count + 1, sizeof *known);
+    together *known = tml_alloc(m->rows->distance_count + 1, sizeof *known);
     tml_status status = known != NULL && gather(m->rows->distance_count, m->rows->distances, sizeof *m->rows->distances, &g)
                             ? TML_OK
                             : tml_no_memory(m->error);
