@@ -202,3 +202,16 @@ Test(source, binary_data_are_refused) {
     cr_assert_eq(read_bytes("sheet 1\n\0atom", 13, &problem, &error), TML_BAD_INPUT);
     cr_assert_not_null(strstr(error.message, "binary"));
 }
+
+Test(nef, no_prefix_is_ever_more_than_refused) {
+    static const char TEXT[] = SEQUENCE DISTANCES(LIMITS, "1 A 1 MET HA A 2 VAL HG% 1.8 5\n2 A 1 MET 'HB*' A 3 PHE QD . 5\n");
+    for (size_t length = 0; length < sizeof TEXT; length++) {
+        tml_problem *problem = NULL;
+        tml_error error;
+        tml_status status = read_bytes(TEXT, length, &problem, &error);
+        cr_assert(status == TML_OK || status == TML_BAD_INPUT, "status %d after %zu bytes", status, length);
+        cr_assert_eq(status == TML_OK, problem != NULL);
+        cr_assert(status == TML_OK || error.message[0] != '\0');
+        tml_problem_free(problem);
+    }
+}
