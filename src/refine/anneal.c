@@ -12,22 +12,22 @@
  * bounded force far from it, so that one that cannot be met bends no bond. */
 static const tml_weights SOFT = {
     .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
-    .restraint = 15, .restraint_bend = 1.0, .dihedral = 60, .dihedral_bend = 20 DEGREES,
+    .restraint = 15, .restraint_bend = 1.0, .restraint_fade = 1000, .dihedral = 60, .dihedral_bend = 20 DEGREES,
     .repulsion = 0.5, .radius_scale = 0.8,
 };
 static const tml_weights SOFT_END = {
     .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
-    .restraint = 30, .restraint_bend = 1.0, .dihedral = 60, .dihedral_bend = 20 DEGREES,
+    .restraint = 30, .restraint_bend = 1.0, .restraint_fade = 1000, .dihedral = 60, .dihedral_bend = 20 DEGREES,
     .repulsion = 0.5, .radius_scale = 0.8,
 };
 static const tml_weights FIRM = {
     .bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40,
-    .restraint = 60, .restraint_bend = 0.3, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .restraint = 60, .restraint_bend = 0.3, .restraint_fade = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
     .repulsion = 20, .radius_scale = 1.0, .backbone = 1,
 };
 const tml_weights TML_FINAL_WEIGHTS = {
     .bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
-    .restraint = 150, .restraint_bend = 0.2, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .restraint = 150, .restraint_bend = 0.2, .restraint_fade = 0.3, .dihedral = 200, .dihedral_bend = 20 DEGREES,
     .repulsion = 30, .radius_scale = 1.0, .backbone = 1,
 };
 

@@ -165,14 +165,16 @@ INLINE double planes(const tml_molecule *molecule, double k, const tml_v4 *x, tm
 
 /* ---- sums ---- */
 
-/* Quadratic up to `bend`, linear beyond with the same slope; *slope is dE/dδ. */
-INLINE double bent(double delta, double k, double bend, double *slope) {
+/* Quadratic up to `bend`; beyond, the slope it has there fades: t Å farther on it is 1/(1 + t/fade) of that.
+ * *slope is dE/dδ. */
+INLINE double bent(double delta, double k, double bend, double fade, double *slope) {
     if (delta <= bend) {
         *slope = 2 * k * delta;
         return k * delta * delta;
     }
-    *slope = 2 * k * bend;
-    return k * bend * (2 * delta - bend);
+    double far = 1 + (delta - bend) / fade;
+    *slope = 2 * k * bend / far;
+    return k * bend * (bend + 2 * fade * log(far));
 }
 
 /* Σ r⁻⁶ over the pairs of one sum, without the padding. */
@@ -193,16 +195,17 @@ INLINE double sum_of(const tml_sum_term *sum, const tml_pair *pairs, const tml_v
 }
 
 /* Energy of one sum; *slope gets dE/dr of the effective distance, *effective the distance itself. */
-INLINE double sum_energy(const tml_sum_term *sum, double total, double k, double bend, double *effective, double *slope) {
+INLINE double sum_energy(const tml_sum_term *sum, double total, const tml_weights *weights, double *effective, double *slope) {
+    const double k = weights->restraint, bend = weights->restraint_bend, fade = weights->restraint_fade;
     *slope = 0;
     *effective = 0;
     if (sum->pair_count == 0 || total <= 0) return 0;
     double r = 1.0 / sqrt(cbrt(total * sum->share)), energy = 0;
     *effective = r;
     if (r > sum->upper) {
-        energy = bent(r - sum->upper, k * sum->weight, bend, slope);
+        energy = bent(r - sum->upper, k * sum->weight, bend, fade, slope);
     } else if (r < sum->lower) {
-        energy = bent(sum->lower - r, k * sum->weight, bend, slope);
+        energy = bent(sum->lower - r, k * sum->weight, bend, fade, slope);
         *slope = -*slope;
     }
     return energy;
@@ -221,13 +224,13 @@ INLINE void sum_push(const tml_sum_term *sum, const tml_pair *pairs, double effe
     }
 }
 
-INLINE double sums(const tml_refiner *refiner, double k, double bend, const tml_v4 *x, tml_v4 *f) {
+INLINE double sums(const tml_refiner *refiner, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, effective, slope;
     for (int32_t i = 0; i < refiner->single_count; i++) {
         const tml_sum_term *sum = &refiner->sums[i];
         double total = sum_of(sum, refiner->sum_pairs, x);
         if (total >= sum->least && total <= sum->most) continue;
-        double e = sum_energy(sum, total, k, bend, &effective, &slope);
+        double e = sum_energy(sum, total, weights, &effective, &slope);
         if (slope == 0) continue;
         energy += e;
         sum_push(sum, refiner->sum_pairs, effective, slope, x, f);
@@ -236,7 +239,7 @@ INLINE double sums(const tml_refiner *refiner, double k, double bend, const tml_
 }
 
 /* The combination of least error counts, and only it pulls. */
-static double choices(const tml_refiner *refiner, double k, double bend, const tml_v4 *x, tml_v4 *f) {
+static double choices(const tml_refiner *refiner, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, effective, slope;
     for (int32_t i = 0; i < refiner->choice_count; i++) {
         const tml_sum_term *first = &refiner->sums[refiner->choices[i].first_sum];
@@ -246,7 +249,7 @@ static double choices(const tml_refiner *refiner, double k, double bend, const t
             double whole = 0;
             for (int32_t l = 0; l < count; l++)
                 if (first[l].combination == first[j].combination)
-                    whole += sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), k, bend, &effective, &slope);
+                    whole += sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), weights, &effective, &slope);
             if (whole < least) {
                 least = whole;
                 best = first[j].combination;
@@ -256,7 +259,7 @@ static double choices(const tml_refiner *refiner, double k, double bend, const t
         energy += least;
         for (int32_t l = 0; l < count; l++) {
             if (first[l].combination != best) continue;
-            sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), k, bend, &effective, &slope);
+            sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), weights, &effective, &slope);
             if (slope != 0) sum_push(&first[l], refiner->sum_pairs, effective, slope, x, f);
         }
     }
@@ -304,6 +307,9 @@ INLINE double outside(double angle, double lower, double upper) {
     return off - width <= 2 * PI - off ? off - width : off - 2 * PI;
 }
 
+/* A torsion is never far: its pull keeps its strength. */
+static const double NO_FADE = 1e6;
+
 INLINE double torsions(const tml_refiner *refiner, double k, double bend, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, slope;
     const tml_dihedral_interval *intervals = refiner->problem->restraints.intervals;
@@ -323,7 +329,7 @@ INLINE double torsions(const tml_refiner *refiner, double k, double bend, const 
             best_state = state;
         }
         if (best < 0 || least == 0) continue;
-        energy += bent(fabs(least), k * term->weight, bend, &slope);
+        energy += bent(fabs(least), k * term->weight, bend, NO_FADE, &slope);
         torsion_push(intervals[best].atoms, &best_state, least > 0 ? slope : -slope, f);
     }
     return energy;
@@ -396,8 +402,8 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     energy += volumes(refiner->volumes, refiner->volume_count, weights->volume, x, f);
     energy += volumes(refiner->flats, refiner->flat_count, weights->flat, x, f);
     if (weights->plane > 0) energy += planes(&refiner->problem->molecule, weights->plane, x, f);
-    energy += sums(refiner, weights->restraint, weights->restraint_bend, x, f);
-    if (refiner->choice_count > 0) energy += choices(refiner, weights->restraint, weights->restraint_bend, x, f);
+    energy += sums(refiner, weights, x, f);
+    if (refiner->choice_count > 0) energy += choices(refiner, weights, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
     if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);
     if (weights->repulsion > 0) energy += repulsion(scene, weights->repulsion, weights->radius_scale, f);

@@ -41,7 +41,8 @@ typedef struct tml_weights {
     double bond, angle, planar;              /* k of k·(d - d0)² */
     double volume, flat;                     /* k of k·(V - V0)², V in Å³ */
     double plane;                            /* k of k·Σ (distance from the best plane)²; 0 leaves the term out */
-    double restraint, restraint_bend;        /* k·δ², linear beyond bend Å */
+    double restraint, restraint_bend;        /* k·δ² up to bend Å; then with a slope that fades over `restraint_fade` Å */
+    double restraint_fade;
     double dihedral, dihedral_bend;          /* k·δ², linear beyond bend radians */
     double repulsion, radius_scale;          /* k·(scale·contact - d)² where closer */
     double backbone;                         /* height of the preference for usual phi and psi; 0 leaves it out */
