@@ -22,7 +22,7 @@ static const tml_weights SOFT_END = {
 };
 static const tml_weights FIRM = {
     .bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40,
-    .restraint = 60, .restraint_bend = 0.3, .restraint_fade = 0.5, .dihedral = 200, .dihedral_bend = 20 DEGREES,
+    .restraint = 60, .restraint_bend = 0.3, .restraint_fade = 1.0, .dihedral = 200, .dihedral_bend = 20 DEGREES,
     .repulsion = 20, .radius_scale = 1.0, .backbone = 1,
 };
 const tml_weights TML_FINAL_WEIGHTS = {
@@ -63,6 +63,15 @@ static tml_weights between(const tml_weights *from, const tml_weights *to, doubl
     return out;
 }
 
+/* Dense sets freeze a chain that is still to fold: their restraints share, while annealing, what a set of this many for each atom
+ * would have together. */
+static const double USUAL_CROWD = 0.8;
+
+static double crowd_share(const tml_refiner *refiner) {
+    double crowd = (double)refiner->sum_count / refiner->atom_count;
+    return crowd > USUAL_CROWD ? USUAL_CROWD / crowd : 1.0;
+}
+
 static void heat(tml_scene *scene, double kt, tml_pcg *pcg) {
     double spread = sqrt(kt);
     for (int32_t i = 0; i < scene->refiner->atom_count; i++)
@@ -93,12 +102,16 @@ TML_WIDE static void step_once(tml_scene *scene, double dt, double kt) {
 
 static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, const volatile int *stop) {
     int steps = (int)ceil(plan->steps * effort);
+    const double crowd = crowd_share(scene->refiner);
     tml_weights weights = *plan->from;
     tml_scene_repel_hydrogens(scene, !plan->heavy_only);
     for (int step = 0; step < steps; step++) {
         if (stop != NULL && *stop) return TML_INTERRUPTED;
         double share = (double)step / steps;
-        if (step % 20 == 0) weights = between(plan->from, plan->to, share);
+        if (step % 20 == 0) {
+            weights = between(plan->from, plan->to, share);
+            weights.restraint *= crowd;
+        }
         tml_status status = TML_OK;
         if (step % plan->look_every == 0) status = tml_scene_relist(scene, plan->skin);
         if (status != TML_OK) return status;
