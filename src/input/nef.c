@@ -203,6 +203,9 @@ static tml_status read_limits(nef *in, const tml_star_frame *frame, const tml_st
     double lower_linear = NAN, upper_linear = NAN, target = NAN, uncertainty = NAN;
     const tml_star_value *id = tml_star_at(star, loop, row, columns->id);
     *out = (limits){.place = place_of(in, id)};
+    if (tml_star_is_null(id)) /* rows without an id would all be alternatives of each other */
+        return tml_fail_at(in->error, TML_BAD_INPUT, in->draft->problem->files[in->file], id->line, id->column,
+                           "found '.' where a restraint_id is expected");
     tml_status status = text_of(in, &frame->name, "", &out->list);
     if (status == TML_OK) status = text_of(in, id, ".", &out->id);
     if (status == TML_OK) status = text_of(in, tml_star_at(star, loop, row, columns->combination), "", &out->combination);
@@ -249,6 +252,7 @@ static tml_status read_distances(nef *in, const tml_star_frame *frame, const tml
         if (status == TML_OK) status = read_address(in, loop, row, &second, &addresses[1]);
         if (status != TML_OK) break;
         from_targets += row_limits.from_target;
+        if (row_limits.from_target && row_limits.lower < 0) row_limits.lower = 0; /* an uncertainty wider than the distance */
         tml_distance_row made = {.list = row_limits.list, .id = row_limits.id, .combination = row_limits.combination, .count_a = 1,
                                  .count_b = 1, .lower = row_limits.lower, .upper = row_limits.upper, .weight = row_limits.weight,
                                  .place = row_limits.place};

@@ -11,6 +11,7 @@
 
 #include "input/draft.h"
 #include "molecule/elements.h"
+#include "molecule/index.h"
 #include "molecule/nearest.h"
 
 enum { MOST_WORDS = 4096, MOST_ALTERNATIVES = 256 };
@@ -25,6 +26,9 @@ typedef struct sheet {
     word *words;
     int count;
     int limits, dihedrals; /* statements so far, for the ids of those that have none */
+    tml_index *residues;   /* chain (owner -1) to its number; number within a chain to the residue in the outline */
+    size_t *last;          /* of each chain: its residue that came last */
+    size_t chain_count, chain_capacity;
     bool begun;
 } sheet;
 
@@ -141,6 +145,23 @@ static tml_status atom_statement(sheet *s) {
     return no_more(s, 3);
 }
 
+/* Enter a residue of the outline; of two with the same number, which is an error told later, the first stays. */
+static tml_status index_residue(sheet *s, size_t at) {
+    const tml_outline_residue *residue = &s->draft->outline.residues[at];
+    if (at > INT32_MAX) return tml_fail_at(s->error, TML_TOO_LARGE, s->path, s->line, 0, "too many residues");
+    int32_t chain = tml_index_find(s->residues, -1, residue->chain);
+    if (chain < 0) {
+        chain = (int32_t)s->chain_count;
+        if (!tml_grow(&s->last, &s->chain_capacity, s->chain_count + 1, sizeof *s->last) ||
+            !tml_index_add(s->residues, -1, residue->chain, chain))
+            return tml_no_memory(s->error);
+        s->chain_count++;
+    }
+    s->last[chain] = at;
+    if (tml_index_find(s->residues, chain, residue->number) >= 0) return TML_OK;
+    return tml_index_add(s->residues, chain, residue->number, (int32_t)at) ? TML_OK : tml_no_memory(s->error);
+}
+
 /* The number of the residue after `number`, where a sequence goes on. */
 static tml_status next_number(sheet *s, int index, long number, const char **out) {
     char text[24];
@@ -160,12 +181,11 @@ static tml_status sequence_statement(sheet *s) {
     int index = 2;
     if (s->count > 2) number = strtol(s->words[2].text, &end, 10);
     bool given = s->count > 2 && end == s->words[2].text + s->words[2].length;
-    size_t last = outline->residue_count;
-    while (last > 0 && outline->residues[last - 1].chain != chain) last--;
+    int32_t known = tml_index_find(s->residues, -1, chain);
     if (given)
         index++;
-    else if (last > 0)
-        number = strtol(outline->residues[last - 1].number, NULL, 10) + 1;
+    else if (known >= 0)
+        number = strtol(outline->residues[s->last[known]].number, NULL, 10) + 1;
     else
         return expected(s, 2, "the number of the first residue");
     if (index >= s->count) return expected(s, index, "a residue");
@@ -177,6 +197,7 @@ static tml_status sequence_statement(sheet *s) {
         status = next_number(s, index, number, &residue->number);
         if (status == TML_OK) status = text_at(s, index, "a residue", &residue->name);
         if (status == TML_OK) status = pooled(s, "", 0, &residue->variant);
+        if (status == TML_OK) status = index_residue(s, outline->residue_count - 1);
     }
     return status;
 }
@@ -188,12 +209,11 @@ static tml_status residue_at(sheet *s, tml_outline_residue **out) {
     tml_status status = text_at(s, 1, "a chain", &chain);
     if (status == TML_OK) status = text_at(s, 2, "a residue number", &number);
     if (status != TML_OK) return status;
-    for (size_t i = outline->residue_count; i-- > 0;)
-        if (outline->residues[i].chain == chain && outline->residues[i].number == number) {
-            *out = &outline->residues[i];
-            return TML_OK;
-        }
-    return expected(s, 2, "a residue of a sequence above");
+    int32_t owner = tml_index_find(s->residues, -1, chain);
+    int32_t found = owner < 0 ? -1 : tml_index_find(s->residues, owner, number);
+    if (found < 0) return expected(s, 2, "a residue of a sequence above");
+    *out = &outline->residues[found];
+    return TML_OK;
 }
 
 static tml_status variant_statement(sheet *s) {
@@ -276,16 +296,17 @@ static tml_status plane_statement(sheet *s) {
 }
 
 /* What may follow the limits: `as ID`, `weight W`, `average`; in any order. */
-typedef struct endings { const char *id; double weight; bool average; } endings;
+typedef struct endings { const char *id; double weight; bool average, alone; } endings;
 
 static tml_status endings_from(sheet *s, int index, bool distance, const char *number_word, int number, endings *out) {
     char own[32];
     snprintf(own, sizeof own, "%s%d", number_word, number);
-    *out = (endings){.weight = 1.0};
+    *out = (endings){.weight = 1.0, .alone = true};
     tml_status status = pooled(s, own, strlen(own), &out->id);
     while (status == TML_OK && index < s->count) {
         if (is_word(s, index, "as")) {
             status = text_at(s, index + 1, "an id", &out->id);
+            out->alone = false;
             index += 2;
         } else if (is_word(s, index, "weight")) {
             status = number_at(s, index + 1, "a weight", &out->weight);
@@ -314,13 +335,13 @@ static tml_status limit_statement(sheet *s) {
     if (status != TML_OK) return status;
     if (row.lower < 0 || row.upper < 0) return expected(s, row.lower < 0 ? 3 : 4, "a distance, which is never negative,");
     if (row.upper < row.lower) return expected(s, 4, "an upper limit that is not below the lower one");
-    row.list = "sheet";
     status = pooled(s, "sheet", 5, &row.list);
     if (status == TML_OK) status = pooled(s, "", 0, &row.combination);
     if (status != TML_OK) return status;
     row.id = end.id;
     row.weight = end.weight;
     row.average = end.average;
+    row.alone = end.alone;
     row.count_a = count_a;
     row.count_b = count_b;
     return tml_rows_add_distance(&s->draft->rows, &row, addresses) ? TML_OK : tml_no_memory(s->error);
@@ -339,7 +360,15 @@ static tml_status dihedral_statement(sheet *s) {
     if (status != TML_OK) return status;
     row.id = end.id;
     row.weight = end.weight;
+    row.alone = end.alone;
     return tml_rows_add_dihedral(&s->draft->rows, &row) ? TML_OK : tml_no_memory(s->error);
+}
+
+/* Part of the sheet's grammar, but this version has nothing to do it with. */
+static tml_status later_statement(sheet *s) {
+    return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, s->words[0].column,
+                       "'%.*s' is not understood by this version; give the molecule as sequence, atom and link statements", s->words[0].length,
+                       s->words[0].text);
 }
 
 /* ---- lines ---- */
@@ -347,7 +376,8 @@ static tml_status dihedral_statement(sheet *s) {
 static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
     {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
-    {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
+    {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},       {"molecule", later_statement},
+    {"component", later_statement}, {"alike", later_statement},
 };
 
 /* Words of the grammar that this version cannot carry out. */
@@ -413,7 +443,9 @@ bool tml_is_sheet(const char *text) {
 tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_error *error) {
     sheet s = {.draft = draft, .error = error, .path = draft->problem->files[file], .file = file};
     s.words = tml_alloc(MOST_WORDS, sizeof *s.words);
-    tml_status status = s.words == NULL ? tml_no_memory(error) : TML_OK;
+    s.residues = tml_index_new();
+    tml_status status = s.words == NULL || s.residues == NULL ? tml_no_memory(error) : TML_OK;
+    for (size_t i = 0; status == TML_OK && i < draft->outline.residue_count; i++) status = index_residue(&s, i); /* of other inputs */
     while (status == TML_OK && *text != '\0') {
         const char *end = text + strcspn(text, "\n");
         s.line++;
@@ -422,5 +454,7 @@ tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_
         text = *end == '\0' ? end : end + 1;
     }
     free(s.words);
+    free(s.last);
+    tml_index_free(s.residues);
     return status;
 }

@@ -17,6 +17,8 @@ enum { CHUNK = 1 << 18 };
 static tml_status open_source(const char *path, gzFile *file, tml_error *error);
 static tml_status read_all(gzFile file, const char *path, char **text, size_t *length, tml_error *error);
 
+static void tidy(char *text, size_t *length);
+
 tml_status tml_source_read(const char *path, char **text, size_t *length, tml_error *error) {
     gzFile file = NULL;
     *text = NULL;
@@ -32,8 +34,10 @@ tml_status tml_source_read(const char *path, char **text, size_t *length, tml_er
     if (status != TML_OK) {
         free(*text);
         *text = NULL;
+        return status;
     }
-    return status;
+    tidy(*text, length);
+    return TML_OK;
 }
 
 static tml_status open_source(const char *path, gzFile *file, tml_error *error) {
@@ -74,4 +78,14 @@ static tml_status read_all(gzFile file, const char *path, char **text, size_t *l
     }
     (*text)[*length] = '\0';
     return TML_OK;
+}
+
+/* Without a byte order mark; where lines end in carriage returns alone (as once on the Macintosh), in line feeds instead. */
+static void tidy(char *text, size_t *length) {
+    if (*length >= 3 && memcmp(text, "\xef\xbb\xbf", 3) == 0) {
+        *length -= 3;
+        memmove(text, text + 3, *length + 1);
+    }
+    if (memchr(text, '\n', *length) != NULL) return;
+    for (char *at = text; (at = memchr(at, '\r', *length - (size_t)(at - text))) != NULL;) *at = '\n';
 }

@@ -187,6 +187,12 @@ static tml_status parse_item(lexer *lex, tml_star *star) {
     return next_token(lex);
 }
 
+/* A small packed file can hold a billion values; ask before so much is taken that the system ends the program. */
+static bool has_memory(size_t value_count) {
+    static const size_t MANY = 1 << 22;
+    return value_count < MANY || value_count * 2 * sizeof(tml_star_value) < tml_memory_available();
+}
+
 static tml_status parse_loop(lexer *lex, tml_star *star) {
     tml_star_loop loop = {.first_tag = star->tag_count, .first_value = star->value_count};
     int32_t line = lex->token.line, column = lex->token.column;
@@ -200,6 +206,9 @@ static tml_status parse_loop(lexer *lex, tml_star *star) {
     loop.tag_count = star->tag_count - loop.first_tag;
     if (loop.tag_count == 0) return wrong(lex, "a loop's first tag");
     while (status == TML_OK && lex->kind == TOKEN_VALUE) {
+        if (star->value_count == star->value_capacity && !has_memory(star->value_count))
+            return tml_fail_at(lex->error, TML_TOO_LARGE, lex->path, lex->token.line, lex->token.column,
+                               "more values than memory has room for: %zu up to here", star->value_count);
         if (!tml_grow(&star->values, &star->value_capacity, star->value_count + 1, sizeof *star->values)) return tml_no_memory(lex->error);
         star->values[star->value_count++] = lex->token;
         status = next_token(lex);

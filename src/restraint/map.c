@@ -18,7 +18,8 @@
 static const double PI = 3.14159265358979323846;
 /* A limit beyond this is as good as none, Å. */
 static const double MOST_DISTANCE = 1e6;
-enum { GROUP_ROOM = 4096, MOST_PAIRS = 1 << 24 };
+/* Pairs over all restraints: beyond this, one evaluation takes seconds. */
+enum { MOST_PAIRS = 1 << 25 };
 
 typedef struct map {
     const tml_rows *rows;
@@ -26,13 +27,17 @@ typedef struct map {
     tml_restraints *out;
     tml_error *error;
     size_t distances, alternatives, groups, dihedrals, intervals, unmapped; /* capacities */
+    int64_t pairs;          /* so far */
+    int32_t *atoms_a, *atoms_b; /* room for the largest residue each */
     bool pseudo_noted, amide_noted;
-    char why[512];
+    char why[512];    /* why the latest row names nothing */
+    char reason[512]; /* the same of the restraint's first such row, "" for none */
 } map;
 
 /* Rows of one restraint stand together: order[first[k] … first[k+1]-1] are row numbers of restraint k. */
 typedef struct gathering { int32_t *order, *first; int32_t count; } gathering;
 
+static bool make_room(map *m);
 static tml_status map_distances(map *m);
 static tml_status map_dihedrals(map *m);
 
@@ -40,49 +45,97 @@ tml_status tml_restraints_map(const tml_rows *rows, tml_problem *problem, tml_er
     map m = {.rows = rows, .problem = problem, .out = &problem->restraints, .error = error};
     if (rows->distance_count > INT32_MAX / 2 || rows->dihedral_count > INT32_MAX / 2)
         return tml_fail(error, TML_TOO_LARGE, "too many restraint rows");
-    tml_status status = map_distances(&m);
-    return status == TML_OK ? map_dihedrals(&m) : status;
+    tml_status status = make_room(&m) ? TML_OK : tml_no_memory(error);
+    if (status == TML_OK) status = map_distances(&m);
+    if (status == TML_OK) status = map_dihedrals(&m);
+    free(m.atoms_a);
+    free(m.atoms_b);
+    return status;
 }
 
-static tml_status fail_at(map *m, tml_place place, const char *text) {
+static bool make_room(map *m) {
+    const tml_molecule *molecule = &m->problem->molecule;
+    int32_t most = 1;
+    for (int32_t i = 0; i < molecule->residue_count; i++)
+        if (molecule->residues[i].atom_count > most) most = molecule->residues[i].atom_count;
+    m->atoms_a = tml_alloc((size_t)most, sizeof *m->atoms_a);
+    m->atoms_b = tml_alloc((size_t)most, sizeof *m->atoms_b);
+    return m->atoms_a != NULL && m->atoms_b != NULL;
+}
+
+static tml_status fail_at(map *m, tml_status status, tml_place place, const char *text) {
     const char *file = place.file >= 0 && (size_t)place.file < m->problem->file_count ? m->problem->files[place.file] : "";
-    return tml_fail_at(m->error, TML_BAD_INPUT, file, place.line, place.column, "%s", text);
+    return tml_fail_at(m->error, status, file, place.line, place.column, "%s", text);
+}
+
+static void keep_reason(map *m) {
+    if (*m->reason == '\0') memcpy(m->reason, m->why, sizeof m->reason);
 }
 
 /* ---- gathering ---- */
 
-/* list and id are pooled, so their pointers are their identities. */
-static size_t slot_of(const void *const (*keys)[2], size_t slots, const char *list, const char *id) {
-    size_t at = (((size_t)list >> 3) * 31 + ((size_t)id >> 3)) * 0x9e3779b97f4a7c15u >> 16 & (slots - 1);
-    while (keys[at][1] != NULL && (keys[at][0] != list || keys[at][1] != id)) at = (at + 1) & (slots - 1);
-    return at;
+/* What makes two rows alternatives of one restraint: file, list and id; and two rows of a restraint one combination. Strings are
+ * pooled, so that their pointers are their identities. */
+typedef struct key { const void *owner; const char *name; int64_t which; } key;
+
+/* Numbers for keys, by open hashing. */
+typedef struct numbering { key *keys; int32_t *numbers; size_t slots; } numbering;
+
+static bool numbering_new(numbering *n, size_t most) {
+    n->slots = 64;
+    while (n->slots < 2 * most) n->slots *= 2;
+    n->keys = tml_alloc(n->slots, sizeof *n->keys);
+    n->numbers = tml_alloc(n->slots, sizeof *n->numbers);
+    return n->keys != NULL && n->numbers != NULL;
 }
 
-/* list_id gives row number i's list and id. */
-static bool gather(size_t row_count, const void *rows, size_t row_size, gathering *out) {
-    size_t slots = 64;
-    while (slots < 2 * row_count) slots *= 2;
-    const void *(*keys)[2] = tml_alloc(slots, sizeof *keys);
-    int32_t *number = tml_alloc(slots, sizeof *number), *of_row = tml_alloc(row_count, sizeof *of_row);
+static void numbering_clear(numbering *n) {
+    free(n->keys);
+    free(n->numbers);
+}
+
+/* The number of a key; a new one gets *next, which goes up. */
+static int32_t number_of(numbering *n, key wanted, int32_t *next) {
+    uint64_t hash = ((uintptr_t)wanted.owner >> 3) * 31 + ((uintptr_t)wanted.name >> 3) + (uint64_t)wanted.which * 0x2545f4914f6cdd1du;
+    size_t at = (hash * 0x9e3779b97f4a7c15u >> 16) & (n->slots - 1);
+    while (n->keys[at].name != NULL &&
+           (n->keys[at].owner != wanted.owner || n->keys[at].name != wanted.name || n->keys[at].which != wanted.which))
+        at = (at + 1) & (n->slots - 1);
+    if (n->keys[at].name == NULL) {
+        n->keys[at] = wanted;
+        n->numbers[at] = (*next)++;
+    }
+    return n->numbers[at];
+}
+
+/* A row without an id of its own is alone: its number takes the place of the file's. */
+static key row_key(const char *list, const char *id, bool alone, tml_place place, size_t row) {
+    return (key){list, id, alone ? -2 - (int64_t)row : place.file};
+}
+
+static key distance_key(const tml_rows *rows, size_t i) {
+    const tml_distance_row *row = &rows->distances[i];
+    return row_key(row->list, row->id, row->alone, row->place, i);
+}
+
+static key dihedral_key(const tml_rows *rows, size_t i) {
+    const tml_dihedral_row *row = &rows->dihedrals[i];
+    return row_key(row->list, row->id, row->alone, row->place, i);
+}
+
+static bool gather(const tml_rows *rows, size_t row_count, key (*key_of)(const tml_rows *, size_t), gathering *out) {
+    numbering numbers = {0};
+    int32_t *of_row = tml_alloc(row_count, sizeof *of_row);
     out->order = tml_alloc(row_count, sizeof *out->order);
     out->first = tml_alloc(row_count + 2, sizeof *out->first);
-    bool room = keys != NULL && number != NULL && of_row != NULL && out->order != NULL && out->first != NULL;
+    bool room = numbering_new(&numbers, row_count) && of_row != NULL && out->order != NULL && out->first != NULL;
     for (size_t i = 0; room && i < row_count; i++) {
-        /* Both kinds of row begin with list and id. */
-        const char *const *names = (const char *const *)((const char *)rows + i * row_size);
-        size_t at = slot_of((const void *const (*)[2])keys, slots, names[0], names[1]);
-        if (keys[at][1] == NULL) {
-            keys[at][0] = names[0];
-            keys[at][1] = names[1];
-            number[at] = out->count++;
-        }
-        of_row[i] = number[at];
+        of_row[i] = number_of(&numbers, key_of(rows, i), &out->count);
         out->first[of_row[i] + 2]++;
     }
     for (int32_t k = 0; room && k < out->count; k++) out->first[k + 2] += out->first[k + 1];
     for (size_t i = 0; room && i < row_count; i++) out->order[out->first[of_row[i] + 1]++] = (int32_t)i;
-    free(keys);
-    free(number);
+    numbering_clear(&numbers);
     free(of_row);
     return room;
 }
@@ -94,35 +147,31 @@ static void gathering_clear(gathering *g) {
 
 /* ---- addresses ---- */
 
-/* Atoms of one address into `atoms`; 0 with the reason in m->why where there are none. */
-static int32_t resolve(map *m, const tml_address *address, int32_t *atoms) {
+/* Atoms of one address into `atoms`; none with the reason in m->why. */
+static tml_status resolve(map *m, const tml_address *address, int32_t *atoms, int32_t *count) {
     const tml_molecule *molecule = &m->problem->molecule;
     int32_t residue = tml_molecule_locate_residue(molecule, address->chain, address->number, m->why, sizeof m->why);
-    if (residue < 0) return 0;
+    *count = 0;
+    if (residue < 0) return TML_OK;
     if (*address->residue != '\0' && strcmp(address->residue, molecule->residues[residue].name) != 0) {
-        snprintf(m->why, sizeof m->why, "%s:%s is %s in the sequence, %s in the restraint", address->chain, address->number,
+        snprintf(m->why, sizeof m->why, "%.32s:%.32s is %.32s in the sequence, %.32s in the restraint", address->chain, address->number,
                  molecule->residues[residue].name, address->residue);
-        return 0;
+        return TML_OK;
     }
     tml_name_kind kind;
-    int32_t count = tml_names_match(molecule, residue, address->atom, atoms, GROUP_ROOM, &kind);
-    if (count == 0) {
-        tml_molecule_suggest(molecule, residue, address->atom, m->why, sizeof m->why);
-        return 0;
-    }
-    if (kind == TML_NAME_PSEUDO && !m->pseudo_noted) {
+    *count = tml_names_match(molecule, residue, address->atom, atoms, &kind);
+    if (*count == 0) tml_molecule_suggest(molecule, residue, address->atom, m->why, sizeof m->why);
+    if (*count > 0 && kind == TML_NAME_PSEUDO && !m->pseudo_noted) {
         m->pseudo_noted = true;
-        if (tml_problem_add_note(m->problem, address->place, m->error,
-                                 "pseudo-atoms (%s …) count as the sum over their group; limits are not corrected", address->atom) != TML_OK)
-            return -1;
+        return tml_problem_add_note(m->problem, address->place, m->error,
+                                    "pseudo-atoms (%s …) count as the sum over their group; limits are not corrected", address->atom);
     }
-    if (kind == TML_NAME_AMIDE && !m->amide_noted) {
+    if (*count > 0 && kind == TML_NAME_AMIDE && !m->amide_noted) {
         m->amide_noted = true;
-        if (tml_problem_add_note(m->problem, address->place, m->error, "%s of %s:%s is taken as %s", address->atom, address->chain,
-                                 address->number, molecule->atoms[atoms[0]].name) != TML_OK)
-            return -1;
+        return tml_problem_add_note(m->problem, address->place, m->error, "%s of %s:%s is taken as %s", address->atom, address->chain,
+                                    address->number, molecule->atoms[atoms[0]].name);
     }
-    return count;
+    return TML_OK;
 }
 
 /* Append atoms to the group array; -1 without memory. */
@@ -136,7 +185,7 @@ static int32_t add_group(map *m, const int32_t *atoms, int32_t count) {
 }
 
 static tml_status add_unmapped(map *m, const char *list, const char *id, tml_place place, bool dihedral) {
-    const char *reason = tml_strings_add(m->problem->pool, m->why);
+    const char *reason = tml_strings_add(m->problem->pool, m->reason);
     if (reason == NULL || !tml_grow(&m->out->unmapped, &m->unmapped, (size_t)m->out->unmapped_count + 1, sizeof *m->out->unmapped))
         return tml_no_memory(m->error);
     m->out->unmapped[m->out->unmapped_count++] = (tml_unmapped){list, id, reason, place, dihedral};
@@ -155,61 +204,62 @@ static tml_status check_distance(map *m, const tml_distance_row *row) {
         snprintf(text, sizeof text, "restraint %s: the lower limit is infinite", row->id);
     else if (!(row->weight >= 0) || isinf(row->weight))
         snprintf(text, sizeof text, "restraint %s: a weight of %g; it must be 0 or more", row->id, row->weight);
-    return *text == '\0' ? TML_OK : fail_at(m, row->place, text);
+    return *text == '\0' ? TML_OK : fail_at(m, TML_BAD_INPUT, row->place, text);
 }
 
-/* A combination of one restraint; broken where a row of it names nothing. */
-typedef struct together { const char *name; bool broken; } together;
-
-/* Number of a combination within its restraint, by its name. */
-static int32_t combination_of(together *known, int32_t *count, const char *name) {
-    if (*name == '\0') return -1;
-    for (int32_t k = 0; k < *count; k++)
-        if (known[k].name == name) return k;
-    known[*count] = (together){.name = name};
-    return (*count)++;
+/* Atoms that both groups hold; each is in the molecule's order. */
+static int32_t shared_atoms(const int32_t *a, int32_t count_a, const int32_t *b, int32_t count_b) {
+    int32_t shared = 0;
+    for (int32_t i = 0, j = 0; i < count_a && j < count_b;) {
+        shared += a[i] == b[j];
+        if (a[i] <= b[j])
+            i++;
+        else
+            j++;
+    }
+    return shared;
 }
 
-static tml_status add_alternative(map *m, const int32_t *a, int32_t count_a, const int32_t *b, int32_t count_b, int32_t combination,
-                                  bool *added) {
-    int32_t same = 0;
-    for (int32_t i = 0; i < count_a; i++)
-        for (int32_t j = 0; j < count_b; j++) same += a[i] == b[j];
-    *added = false;
-    if ((int64_t)count_a * count_b - same == 0) {
+/* The pairs of the two groups in m->atoms_a and m->atoms_b. *whole turns false where there is none. */
+static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t count_a, int32_t count_b, int32_t combination, bool *whole) {
+    int32_t same = shared_atoms(m->atoms_a, count_a, m->atoms_b, count_b);
+    int64_t pairs = (int64_t)count_a * count_b - same;
+    if (pairs == 0) {
         char address[128];
-        tml_molecule_address(&m->problem->molecule, a[0], address, sizeof address);
+        tml_molecule_address(&m->problem->molecule, m->atoms_a[0], address, sizeof address);
         snprintf(m->why, sizeof m->why, "%s: both sides name the same atom", address);
+        *whole = false;
         return TML_OK;
     }
-    if ((int64_t)count_a * count_b > MOST_PAIRS) return tml_fail(m->error, TML_TOO_LARGE, "a restraint over more than %d pairs", MOST_PAIRS);
+    m->pairs += pairs;
+    if (m->pairs > MOST_PAIRS) return fail_at(m, TML_TOO_LARGE, row->place, "up to here the restraints run over more than 33 million pairs of atoms");
     if (!tml_grow(&m->out->alternatives, &m->alternatives, (size_t)m->out->alternative_count + 1, sizeof *m->out->alternatives))
         return tml_no_memory(m->error);
-    int32_t first_a = add_group(m, a, count_a), first_b = first_a < 0 ? -1 : add_group(m, b, count_b);
+    int32_t first_a = add_group(m, m->atoms_a, count_a), first_b = first_a < 0 ? -1 : add_group(m, m->atoms_b, count_b);
     if (first_b < 0) return tml_no_memory(m->error);
     m->out->alternatives[m->out->alternative_count++] =
-        (tml_alternative){first_a, count_a, first_b, count_b, count_a * count_b - same, combination, true};
-    *added = true;
+        (tml_alternative){first_a, count_a, first_b, count_b, (int32_t)pairs, combination, true};
     return TML_OK;
 }
 
 /* All alternatives of one row: every address of one side with every address of the other. *whole turns false where an address
  * names nothing. */
 static tml_status add_row(map *m, const tml_distance_row *row, int32_t combination, bool *whole) {
-    int32_t *atoms = malloc(2 * GROUP_ROOM * sizeof *atoms);
-    if (atoms == NULL) return tml_no_memory(m->error);
+    const tml_address *addresses = m->rows->addresses;
     tml_status status = TML_OK;
+    *whole = true;
     for (int32_t i = 0; status == TML_OK && i < row->count_a; i++) {
-        int32_t count_a = resolve(m, &m->rows->addresses[row->first_a + i], atoms);
-        for (int32_t j = 0; status == TML_OK && j < row->count_b; j++) {
-            int32_t count_b = count_a <= 0 ? count_a : resolve(m, &m->rows->addresses[row->first_b + j], atoms + GROUP_ROOM);
-            bool added = false;
-            if (count_b < 0) status = TML_NO_MEMORY;
-            if (count_b > 0) status = add_alternative(m, atoms, count_a, atoms + GROUP_ROOM, count_b, combination, &added);
-            if (!added) *whole = false;
+        int32_t count_a, count_b;
+        status = resolve(m, &addresses[row->first_a + i], m->atoms_a, &count_a);
+        if (count_a == 0) *whole = false;
+        for (int32_t j = 0; status == TML_OK && count_a > 0 && j < row->count_b; j++) {
+            status = resolve(m, &addresses[row->first_b + j], m->atoms_b, &count_b);
+            if (count_b == 0) *whole = false;
+            if (status == TML_OK && count_b > 0) status = add_alternative(m, row, count_a, count_b, combination, whole);
+            if (!*whole) keep_reason(m);
         }
+        if (!*whole) keep_reason(m);
     }
-    free(atoms);
     return status;
 }
 
@@ -231,15 +281,21 @@ static tml_range range_of(const map *m, const tml_distance_restraint *restraint)
     return nearest;
 }
 
-/* A combination with a row that names nothing cannot hold as a whole: its other rows go, too. Returns how many went. */
-static int32_t drop_broken(map *m, const tml_distance_restraint *restraint, const together *known) {
-    int32_t kept = restraint->first_alternative, count = m->out->alternative_count;
-    for (int32_t k = kept; k < count; k++) {
-        int32_t of = m->out->alternatives[k].combination;
-        if (of < 0 || !known[of].broken) m->out->alternatives[kept++] = m->out->alternatives[k];
-    }
-    m->out->alternative_count = kept;
-    return count - kept;
+static int by_combination(const void *a, const void *b) {
+    const tml_alternative *x = a, *y = b;
+    if (x->combination != y->combination) return x->combination < y->combination ? -1 : 1;
+    return x->first_a < y->first_a ? -1 : x->first_a > y->first_a;
+}
+
+/* A combination with a row that names nothing cannot hold as a whole: its other rows go, too. Those of one combination then stand
+ * together. */
+static void settle_combinations(map *m, tml_distance_restraint *restraint, const bool *broken) {
+    tml_alternative *alternatives = &m->out->alternatives[restraint->first_alternative];
+    int32_t kept = 0, count = m->out->alternative_count - restraint->first_alternative;
+    for (int32_t k = 0; k < count; k++)
+        if (alternatives[k].combination < 0 || !broken[alternatives[k].combination]) alternatives[kept++] = alternatives[k];
+    if (kept > 0) qsort(alternatives, (size_t)kept, sizeof *alternatives, by_combination);
+    m->out->alternative_count = restraint->first_alternative + kept;
 }
 
 /* Limits as the rows write them: NAN, an open limit, equals itself. */
@@ -247,7 +303,11 @@ static bool same_limit(double a, double b) {
     return a == b || (isnan(a) && isnan(b));
 }
 
-static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, together *known) {
+static bool same_terms(const tml_distance_row *a, const tml_distance_row *b) {
+    return same_limit(a->lower, b->lower) && same_limit(a->upper, b->upper) && same_limit(a->weight, b->weight) && a->average == b->average;
+}
+
+static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, numbering *combinations, bool *broken) {
     const tml_distance_row *first = &m->rows->distances[order[0]];
     tml_restraints *out = m->out;
     if (!tml_grow(&out->distances, &m->distances, (size_t)out->distance_count + 1, sizeof *out->distances)) return tml_no_memory(m->error);
@@ -260,19 +320,22 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
                                           .first_alternative = out->alternative_count,
                                           .average = first->average,
                                           .place = first->place};
-    int32_t combinations = 0, lost = 0, differing = 0;
+    int32_t combination_count = 0, lost = 0, differing = 0;
+    *m->reason = '\0';
+    memset(broken, 0, (size_t)row_count * sizeof *broken);
     for (int32_t k = 0; k < row_count; k++) {
         const tml_distance_row *row = &m->rows->distances[order[k]];
         bool whole = true;
+        int32_t combination = -1;
+        if (*row->combination != '\0') combination = number_of(combinations, (key){first, row->combination, 0}, &combination_count);
         tml_status status = check_distance(m, row);
-        int32_t which = combination_of(known, &combinations, row->combination);
-        if (status == TML_OK) status = add_row(m, row, which, &whole);
-        if (status != TML_OK) return status == TML_NO_MEMORY ? tml_no_memory(m->error) : status;
+        if (status == TML_OK) status = add_row(m, row, combination, &whole);
+        if (status != TML_OK) return status;
         lost += !whole;
-        if (!whole && which >= 0) known[which].broken = true;
-        differing += !same_limit(row->lower, first->lower) || !same_limit(row->upper, first->upper);
+        if (!whole && combination >= 0) broken[combination] = true;
+        differing += !same_terms(row, first);
     }
-    lost += drop_broken(m, restraint, known);
+    if (combination_count > 0) settle_combinations(m, restraint, broken);
     restraint->alternative_count = out->alternative_count - restraint->first_alternative;
     if (restraint->alternative_count == 0) return add_unmapped(m, first->list, first->id, first->place, false);
     if (isnan(first->lower) && isnan(first->upper)) {
@@ -287,24 +350,26 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
     restraint->range = range_of(m, restraint);
     tml_status status = TML_OK;
     if (lost > 0)
-        status = tml_problem_add_note(m->problem, first->place, m->error, "restraint %s: %d of its %d alternatives are left out: %s",
-                                      first->id, lost, row_count, m->why);
+        status = tml_problem_add_note(m->problem, first->place, m->error, "restraint %s: %d of its %d rows name what is not there and are left out%s: %s",
+                                      first->id, lost, row_count, combination_count > 0 ? ", their combinations with them" : "", m->reason);
     if (status == TML_OK && differing > 0)
-        status = tml_problem_add_note(m->problem, first->place, m->error, "restraint %s: its rows differ in limits; the first row's count",
+        status = tml_problem_add_note(m->problem, first->place, m->error, "restraint %s: its rows differ in limits or weight; the first row's count",
                                       first->id);
     return status;
 }
 
 static tml_status map_distances(map *m) {
     gathering g = {0};
-    together *known = tml_alloc(m->rows->distance_count + 1, sizeof *known);
-    tml_status status = known != NULL && gather(m->rows->distance_count, m->rows->distances, sizeof *m->rows->distances, &g)
-                            ? TML_OK
-                            : tml_no_memory(m->error);
+    numbering combinations = {0};
+    size_t row_count = m->rows->distance_count;
+    bool *broken = tml_alloc(row_count, sizeof *broken);
+    bool room = broken != NULL && numbering_new(&combinations, row_count) && gather(m->rows, row_count, distance_key, &g);
+    tml_status status = room ? TML_OK : tml_no_memory(m->error);
     for (int32_t k = 0; status == TML_OK && k < g.count; k++)
-        status = map_distance(m, &g.order[g.first[k]], g.first[k + 1] - g.first[k], known);
+        status = map_distance(m, &g.order[g.first[k]], g.first[k + 1] - g.first[k], &combinations, broken);
     gathering_clear(&g);
-    free(known);
+    numbering_clear(&combinations);
+    free(broken);
     return status;
 }
 
@@ -315,27 +380,30 @@ static tml_status add_interval(map *m, const tml_dihedral_row *row, bool *whole,
     tml_dihedral_interval made = {0};
     *whole = true;
     *open = isnan(row->lower) || isnan(row->upper) || row->upper - row->lower >= 360;
-    if (!(row->weight >= 0) || isinf(row->weight)) return fail_at(m, row->place, "a weight must be 0 or more");
-    if (fabs(row->lower) > 1e6 || fabs(row->upper) > 1e6) return fail_at(m, row->place, "a dihedral limit beyond 1,000,000°");
+    if (!(row->weight >= 0) || isinf(row->weight)) return fail_at(m, TML_BAD_INPUT, row->place, "a weight must be 0 or more");
+    if (fabs(row->lower) > 1e6 || fabs(row->upper) > 1e6) return fail_at(m, TML_BAD_INPUT, row->place, "a dihedral limit beyond 1,000,000°");
     for (int k = 0; k < 4; k++) {
-        int32_t atoms[GROUP_ROOM];
-        int32_t count = resolve(m, &row->atoms[k], atoms);
-        if (count < 0) return TML_NO_MEMORY;
-        if (count > 1) snprintf(m->why, sizeof m->why, "%s means %d atoms; a dihedral needs one", row->atoms[k].atom, count);
+        const int32_t *atoms = m->atoms_a;
+        int32_t count;
+        tml_status status = resolve(m, &row->atoms[k], m->atoms_a, &count);
+        if (status != TML_OK) return status;
+        if (count > 1) snprintf(m->why, sizeof m->why, "%.32s means %d atoms; a dihedral needs one", row->atoms[k].atom, count);
         if (count != 1) {
             *whole = false;
+            keep_reason(m);
             return TML_OK;
         }
         made.atoms[k] = atoms[0];
         for (int l = 0; l < k; l++)
-            if (made.atoms[l] == atoms[0]) return fail_at(m, row->atoms[k].place, "the same atom twice in one dihedral");
+            if (made.atoms[l] == atoms[0]) return fail_at(m, TML_BAD_INPUT, row->atoms[k].place, "the same atom twice in one dihedral");
     }
     if (*open) return TML_OK;
     double width = fmod(row->upper - row->lower, 360.0);
     if (width < 0) width += 360.0;
     made.lower = row->lower * PI / 180.0;
     made.upper = made.lower + width * PI / 180.0;
-    if (!tml_grow(&m->out->intervals, &m->intervals, (size_t)m->out->interval_count + 1, sizeof *m->out->intervals)) return TML_NO_MEMORY;
+    if (!tml_grow(&m->out->intervals, &m->intervals, (size_t)m->out->interval_count + 1, sizeof *m->out->intervals))
+        return tml_no_memory(m->error);
     m->out->intervals[m->out->interval_count++] = made;
     return TML_OK;
 }
@@ -345,15 +413,19 @@ static tml_status map_dihedral(map *m, const int32_t *order, int32_t row_count) 
     tml_restraints *out = m->out;
     int32_t first_interval = out->interval_count;
     bool any_open = false;
+    int32_t lost = 0;
+    *m->reason = '\0';
     for (int32_t k = 0; k < row_count; k++) {
         bool whole, open;
         tml_status status = add_interval(m, &m->rows->dihedrals[order[k]], &whole, &open);
-        if (status != TML_OK) return status == TML_NO_MEMORY ? tml_no_memory(m->error) : status;
+        if (status != TML_OK) return status;
         any_open = any_open || (whole && open);
+        lost += !whole;
     }
     if (any_open) {
         out->interval_count = first_interval;
-        return tml_problem_add_note(m->problem, first->place, m->error, "dihedral %s allows every angle and is left out", first->id);
+        return tml_problem_add_note(m->problem, first->place, m->error, "dihedral %s leaves a limit open or allows every angle and is left out",
+                                    first->id);
     }
     if (out->interval_count == first_interval) return add_unmapped(m, first->list, first->id, first->place, true);
     if (!tml_grow(&out->dihedrals, &m->dihedrals, (size_t)out->dihedral_count + 1, sizeof *out->dihedrals)) return tml_no_memory(m->error);
@@ -363,12 +435,14 @@ static tml_status map_dihedral(map *m, const int32_t *order, int32_t row_count) 
                                                                      .first_interval = first_interval,
                                                                      .interval_count = out->interval_count - first_interval,
                                                                      .place = first->place};
-    return TML_OK;
+    if (lost == 0) return TML_OK;
+    return tml_problem_add_note(m->problem, first->place, m->error, "dihedral %s: %d of its %d rows name what is not there and are left out: %s",
+                                first->id, lost, row_count, m->reason);
 }
 
 static tml_status map_dihedrals(map *m) {
     gathering g = {0};
-    tml_status status = gather(m->rows->dihedral_count, m->rows->dihedrals, sizeof *m->rows->dihedrals, &g) ? TML_OK : tml_no_memory(m->error);
+    tml_status status = gather(m->rows, m->rows->dihedral_count, dihedral_key, &g) ? TML_OK : tml_no_memory(m->error);
     for (int32_t k = 0; status == TML_OK && k < g.count; k++) status = map_dihedral(m, &g.order[g.first[k]], g.first[k + 1] - g.first[k]);
     gathering_clear(&g);
     return status;

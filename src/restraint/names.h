@@ -10,9 +10,8 @@
 
 typedef enum tml_name_kind { TML_NAME_EXACT, TML_NAME_WILD, TML_NAME_PSEUDO, TML_NAME_AMIDE } tml_name_kind;
 
-/* Atoms of a residue that `name` means, in atom order, up to `room`; returns their number, 0 for none. *kind tells by which
- * rule; TML_NAME_AMIDE is H or HN for the first hydrogen of a charged N terminus, or HN for H. */
-int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, int32_t room,
-                        tml_name_kind *kind);
+/* Atoms of a residue that `name` means, in atom order; returns their number, 0 for none. `atoms` has room for all atoms of the
+ * residue. *kind tells by which rule; TML_NAME_AMIDE is H or HN for the first hydrogen of a charged N terminus, or HN for H. */
+int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, tml_name_kind *kind);
 
 #endif

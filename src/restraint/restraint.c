@@ -48,25 +48,18 @@ static double beyond(const tml_distance_restraint *restraint, double distance) {
     return distance > restraint->upper ? distance - restraint->upper : distance < restraint->lower ? distance - restraint->lower : 0;
 }
 
-/* The largest violation of the alternatives that stand together with number `which` of a combined restraint. */
-static double combination_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, int32_t which,
-                                    const double *xyz) {
-    const tml_alternative *alternatives = &restraints->alternatives[restraint->first_alternative];
-    double worst = 0;
-    for (int32_t k = 0; k < restraint->alternative_count; k++) {
-        if (k != which && (alternatives[k].combination < 0 || alternatives[k].combination != alternatives[which].combination)) continue;
-        double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k], restraint->average, xyz));
-        if (fabs(off) > fabs(worst)) worst = off;
-    }
-    return worst;
-}
-
 double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz) {
     if (!restraint->combined) return beyond(restraint, tml_restraint_distance(restraints, restraint, xyz));
+    const tml_alternative *alternatives = &restraints->alternatives[restraint->first_alternative];
     double least = INFINITY;
-    for (int32_t k = 0; k < restraint->alternative_count; k++) {
-        double off = combination_violation(restraints, restraint, k, xyz);
-        if (fabs(off) < fabs(least)) least = off;
+    for (int32_t k = 0, count = restraint->alternative_count; k < count;) {
+        int32_t combination = alternatives[k].combination;
+        double worst = 0; /* of the alternatives that must hold together */
+        do {
+            double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k++], restraint->average, xyz));
+            if (fabs(off) > fabs(worst)) worst = off;
+        } while (combination >= 0 && k < count && alternatives[k].combination == combination);
+        if (fabs(worst) < fabs(least)) least = worst;
     }
     return least;
 }

@@ -17,7 +17,7 @@ enum { TML_RANGE_COUNT = 5 };
 typedef struct tml_alternative {
     int32_t first_a, count_a, first_b, count_b; /* into group_atoms */
     int32_t pair_count;                         /* pairs (a, b) with a != b */
-    int32_t combination;                        /* within its restraint, 0-based; -1 where it stands alone */
+    int32_t combination;                        /* within its restraint; one's alternatives stand together. -1: alone */
     bool equivalent;                            /* each side is one atom or one group of equivalent atoms */
 } tml_alternative;
 

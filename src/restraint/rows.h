@@ -8,14 +8,16 @@
 
 #include "molecule/outline.h"
 
-/* One row of a distance restraint. Rows with the same list and id are alternatives (OR); rows that share, within an id, a
- * combination other than "" hold together (AND). Several addresses on one side are alternatives that multiply out. */
+/* One row of a distance restraint. Rows of one file with the same list and id are alternatives (OR), but for those that are
+ * `alone`, whose ids are not the user's; rows that share, within an id, a combination other than "" hold together (AND).
+ * Several addresses on one side are alternatives that multiply out. */
 typedef struct tml_distance_row {
     const char *list, *id, *combination;
     int32_t first_a, count_a, first_b, count_b; /* into tml_rows.addresses */
     double lower, upper;                        /* Å; NAN where the input leaves a limit open */
     double weight;
     bool average;                               /* divide the sum of r^-6 by the number of pairs */
+    bool alone;
     tml_place place;
 } tml_distance_row;
 
@@ -25,6 +27,7 @@ typedef struct tml_dihedral_row {
     tml_address atoms[4];
     double lower, upper;
     double weight;
+    bool alone;
     tml_place place;
 } tml_dihedral_row;
 
