@@ -122,8 +122,9 @@ static void read_bare(lexer *lex) {
         lex->kind = TOKEN_DATA;
         token->text += 5;
         token->length -= 5;
-    } else if (token->length == 7 && starts(token, "global_")) { /* STAR; a block of its own without a name */
+    } else if (token->length == 7 && starts(token, "global_")) { /* a block without a name, in dictionaries */
         lex->kind = TOKEN_DATA;
+        token->text += 7;
         token->length = 0;
     } else if (starts(token, "save_")) {
         lex->kind = token->length == 5 ? TOKEN_SAVE_END : TOKEN_SAVE;
@@ -305,7 +306,7 @@ bool tml_star_number(const tml_star_value *value, double *out) {
     text[value->length] = '\0';
     if (text[strspn(text, "+-.0123456789eE()")] != '\0') return false; /* no "nan", "inf", "0x…" */
     double number = strtod(text, &end);
-    if (*end == '(') {
+    if (end != text && *end == '(') {
         end += 1 + strspn(end + 1, "0123456789");
         end = *end == ')' ? end + 1 : text;
     }

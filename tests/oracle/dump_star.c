@@ -1,44 +1,55 @@
-/* Prints the tags and values of a STAR or CIF text from standard input, each as length:text (length negative for a null): items
- * and then loops of each frame, loops by column; or "refused" and the line. */
+/* Prints a STAR or CIF document as JSON, for the oracle scripts:
+ *
+ *   dump_star FILE
+ *
+ * a list of frames {"name", "save", "items": [[tag, value], …], "loops": [{"tags": […], "values": […]}, …]}; a value is null for a
+ * bare `.` or `?`, else its text.
+ */
+#include <jansson.h>
 #include <stdio.h>
 #include <stdlib.h>
 
+#include "input/source.h"
 #include "input/star.h"
 
-static void put(const tml_star_value *value) {
-    printf("%d:%.*s\n", tml_star_is_null(value) ? -value->length : value->length, value->length, value->text);
+static json_t *text_of(const tml_star_value *value) {
+    return tml_star_is_null(value) ? json_null() : json_stringn(value->text, (size_t)value->length);
 }
 
-static void print(const tml_star *star) {
-    for (size_t f = 0; f < star->frame_count; f++) {
-        const tml_star_frame *frame = &star->frames[f];
-        for (size_t i = frame->first_item; i < frame->first_item + frame->item_count; i++) {
-            put(&star->items[i].tag);
-            put(&star->items[i].value);
-        }
-        for (size_t l = frame->first_loop; l < frame->first_loop + frame->loop_count; l++) {
-            const tml_star_loop *loop = &star->loops[l];
-            for (size_t k = 0; k < loop->tag_count; k++) {
-                put(&star->tags[loop->first_tag + k]);
-                for (size_t row = 0; row < loop->row_count; row++) put(tml_star_at(star, loop, row, (int)k));
-            }
-        }
-    }
+static json_t *loop_of(const tml_star *star, const tml_star_loop *loop) {
+    json_t *tags = json_array(), *values = json_array();
+    for (size_t i = 0; i < loop->tag_count; i++) json_array_append_new(tags, text_of(&star->tags[loop->first_tag + i]));
+    for (size_t i = 0; i < loop->tag_count * loop->row_count; i++) json_array_append_new(values, text_of(&star->values[loop->first_value + i]));
+    return json_pack("{s:o, s:o}", "tags", tags, "values", values);
 }
 
-int main(void) {
-    enum { MOST = 1 << 24 };
-    char *text = malloc(MOST);
-    if (text == NULL) return 3;
-    size_t length = fread(text, 1, MOST, stdin);
-    tml_star star;
+static json_t *frame_of(const tml_star *star, const tml_star_frame *frame) {
+    json_t *items = json_array(), *loops = json_array();
+    for (size_t i = frame->first_item; i < frame->first_item + frame->item_count; i++)
+        json_array_append_new(items, json_pack("[o, o]", text_of(&star->items[i].tag), text_of(&star->items[i].value)));
+    for (size_t i = frame->first_loop; i < frame->first_loop + frame->loop_count; i++)
+        json_array_append_new(loops, loop_of(star, &star->loops[i]));
+    return json_pack("{s:s%, s:b, s:o, s:o}", "name", frame->name.text, (size_t)frame->name.length, "save", frame->is_save, "items", items,
+                     "loops", loops);
+}
+
+int main(int argc, char **argv) {
     tml_error error = {0};
-    tml_status status = tml_star_parse(text, length, "standard input", &star, &error);
-    if (status == TML_OK)
-        print(&star);
-    else
-        printf("refused %ld\n", error.line);
+    tml_star star = {0};
+    char *text = NULL;
+    size_t length = 0;
+    if (argc != 2) return 2;
+    tml_status status = tml_source_read(argv[1], &text, &length, &error);
+    if (status == TML_OK) status = tml_star_parse(text, length, argv[1], &star, &error);
+    if (status == TML_OK) {
+        json_t *frames = json_array();
+        for (size_t i = 0; i < star.frame_count; i++) json_array_append_new(frames, frame_of(&star, &star.frames[i]));
+        json_dumpf(frames, stdout, 0);
+        json_decref(frames);
+    } else {
+        fprintf(stderr, "%s:%ld:%ld: %s\n", error.file, error.line, error.column, error.message);
+    }
     tml_star_clear(&star);
     free(text);
-    return 0;
+    return status == TML_OK ? 0 : 2;
 }
