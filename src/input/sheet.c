@@ -151,12 +151,10 @@ static tml_status index_residue(sheet *s, size_t at) {
     if (at > INT32_MAX) return tml_fail_at(s->error, TML_TOO_LARGE, s->path, s->line, 0, "too many residues");
     int32_t chain = tml_index_find(s->residues, -1, residue->chain);
     if (chain < 0) {
-        chain = (int32_t)s->chain_count;
-        if (!tml_grow(&s->last, &s->chain_capacity, s->chain_count + 1, sizeof *s->last) ||
-            !tml_index_add(s->residues, -1, residue->chain, chain))
-            return tml_no_memory(s->error);
-        s->chain_count++;
+        chain = (int32_t)s->chain_count++;
+        if (!tml_index_add(s->residues, -1, residue->chain, chain)) return tml_no_memory(s->error);
     }
+    if (!tml_grow(&s->last, &s->chain_capacity, s->chain_count, sizeof *s->last)) return tml_no_memory(s->error);
     s->last[chain] = at;
     if (tml_index_find(s->residues, chain, residue->number) >= 0) return TML_OK;
     return tml_index_add(s->residues, chain, residue->number, (int32_t)at) ? TML_OK : tml_no_memory(s->error);
@@ -184,7 +182,7 @@ static tml_status sequence_statement(sheet *s) {
     int32_t known = tml_index_find(s->residues, -1, chain);
     if (given)
         index++;
-    else if (known >= 0)
+    else if (s->last != NULL && known >= 0)
         number = strtol(outline->residues[s->last[known]].number, NULL, 10) + 1;
     else
         return expected(s, 2, "the number of the first residue");
@@ -364,20 +362,12 @@ static tml_status dihedral_statement(sheet *s) {
     return tml_rows_add_dihedral(&s->draft->rows, &row) ? TML_OK : tml_no_memory(s->error);
 }
 
-/* Part of the sheet's grammar, but this version has nothing to do it with. */
-static tml_status later_statement(sheet *s) {
-    return tml_fail_at(s->error, TML_BAD_INPUT, s->path, s->line, s->words[0].column,
-                       "'%.*s' is not understood by this version; give the molecule as sequence, atom and link statements", s->words[0].length,
-                       s->words[0].text);
-}
-
 /* ---- lines ---- */
 
 static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
     {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
-    {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},       {"molecule", later_statement},
-    {"component", later_statement}, {"alike", later_statement},
+    {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
 };
 
 /* Words of the grammar that this version cannot carry out. */

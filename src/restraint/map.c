@@ -290,8 +290,9 @@ static int by_combination(const void *a, const void *b) {
 /* A combination with a row that names nothing cannot hold as a whole: its other rows go, too. Those of one combination then stand
  * together. */
 static void settle_combinations(map *m, tml_distance_restraint *restraint, const bool *broken) {
-    tml_alternative *alternatives = &m->out->alternatives[restraint->first_alternative];
     int32_t kept = 0, count = m->out->alternative_count - restraint->first_alternative;
+    if (count == 0) return;
+    tml_alternative *alternatives = &m->out->alternatives[restraint->first_alternative];
     for (int32_t k = 0; k < count; k++)
         if (alternatives[k].combination < 0 || !broken[alternatives[k].combination]) alternatives[kept++] = alternatives[k];
     if (kept > 0) qsort(alternatives, (size_t)kept, sizeof *alternatives, by_combination);

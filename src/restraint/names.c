@@ -11,10 +11,10 @@ static bool is_digit(char c) {
     return c >= '0' && c <= '9';
 }
 
-/* Whether x and y in a name can stand for a stereo pair: "HBx", "HG1y", "H5'x", not "proxy": all else is written as atoms are. */
+/* Whether x and y in a name can stand for a stereo pair: "HBx", "HG1y", "H5x", not "proxy": all else is written as atoms are. */
 static bool has_pair_letter(const char *name) {
     bool found = false;
-    if (!isupper((unsigned char)*name)) return false;
+    if (!isupper((unsigned char)*name) && *name != '*' && *name != '%') return false;
     for (; *name != '\0'; name++) {
         if (*name == 'x' || *name == 'y')
             found = true;
