@@ -6,9 +6,9 @@
 
 static int32_t matches(const char *name) {
     tml_problem *problem = read_good("sheet 1\natom A:1:H1A2 H\natom A:1:H11 H\natom A:1:H2'' H\natom A:1:Hx H\natom A:1:C C\n");
-    int32_t atoms[8];
+    int32_t atoms[64];
     tml_name_kind kind;
-    int32_t count = tml_names_match(&problem->molecule, 0, name, atoms, 8, &kind);
+    int32_t count = tml_names_match(&problem->molecule, 0, name, atoms, &kind);
     tml_problem_free(problem);
     return count;
 }
@@ -35,5 +35,5 @@ Test(names, a_pattern_of_any_length_is_answered) {
     char name[4096];
     memset(name, '*', sizeof name - 1);
     name[sizeof name - 1] = '\0';
-    cr_assert_eq(matches(name), 0);
+    cr_assert_eq(matches(name), 5); /* a row of stars means anything */
 }

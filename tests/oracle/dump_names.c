@@ -12,7 +12,7 @@ static void print_names(const tml_molecule *molecule, int count, char **names) {
     for (int k = 0; k < count; k++) {
         int32_t atoms[ROOM];
         tml_name_kind kind;
-        int32_t found = tml_names_match(molecule, MIDDLE, names[k], atoms, ROOM, &kind);
+        int32_t found = tml_names_match(molecule, MIDDLE, names[k], atoms, &kind);
         for (int32_t i = 0; i < found; i++) printf("%s ", molecule->atoms[atoms[i]].name);
         printf("\n");
     }
