@@ -215,6 +215,24 @@ Test(output, coordinates_beyond_the_columns_of_the_pdb_format_are_refused) {
     clear(&molecule);
 }
 
+Test(output, the_rule_of_selection_claims_no_more_than_was_so) {
+    const struct { int model_count, passed; const char *words; } CASES[] = {
+        {4, 5, "those with the lowest error among the passed"}, {4, 4, "those with the lowest error among the passed"},
+        {4, 3, "all 3 that passed were chosen and, being too few, those with the lowest error of the others"},
+        {4, 0, "none of which passed, those with the lowest error were chosen"}};
+    for (size_t i = 0; i < sizeof CASES / sizeof CASES[0]; i++) {
+        char text[512];
+        tml_ensemble ensemble = {.model_count = CASES[i].model_count, .passed = CASES[i].passed, .trials = 20, .select_lowest = true};
+        tml_say_selection(&ensemble, text, sizeof text);
+        cr_expect_not_null(strstr(text, CASES[i].words), "%s", text);
+        cr_expect_not_null(strstr(text, "20 trials"), "%s", text);
+        ensemble.select_lowest = false;
+        tml_say_selection(&ensemble, text, sizeof text);
+        cr_expect_not_null(strstr(text, "first"), "%s", text);
+        cr_expect_null(strstr(text, "lowest"), "%s", text);
+    }
+}
+
 Test(output, the_least_repair_counts_levers_and_repeats) {
     /* an upper limit on a sum over 64 pairs moves the pair's bound by 64^(1/6) = 2 */
     tml_distance_restraint distances[] = {{.id = "wide", .pair_count = 64}, {.id = "low", .pair_count = 64}};

@@ -80,6 +80,26 @@ Test(star, loops_end_at_stop_at_a_tag_at_a_loop_and_at_a_frame) {
     tml_star_clear(&star);
 }
 
+/* As the Protein Data Bank writes a table of one row, such as a single disulfide. */
+Test(star, items_of_a_category_are_a_table_of_one_row) {
+    tml_star star = parse_good("data_a _p.a 1 _pq.a 2 _P.b '3 4' loop_ _q.a 5 6 data_b _p.a 7");
+    tml_star_loop table;
+    bool found;
+    tml_error error = {0};
+    cr_assert_eq(tml_star_find_table(&star, &star.frames[0], "_p", &table, &found, &error), TML_OK);
+    cr_assert(found);
+    cr_assert_eq(table.tag_count, 2);
+    cr_assert_eq(table.row_count, 1);
+    expect(tml_star_at(&star, &table, 0, tml_star_column(&star, &table, "a")), "1");
+    expect(tml_star_at(&star, &table, 0, tml_star_column(&star, &table, "b")), "3 4");
+    cr_assert_eq(tml_star_find_table(&star, &star.frames[0], "_q", &table, &found, &error), TML_OK);
+    cr_assert(found);
+    cr_assert_eq(table.row_count, 2);
+    cr_assert_eq(tml_star_find_table(&star, &star.frames[1], "_q", &table, &found, &error), TML_OK);
+    cr_assert_not(found);
+    tml_star_clear(&star);
+}
+
 Test(star, comments_line_ends_and_a_byte_order_mark_do_not_matter) {
     tml_star star = parse_good("\xef\xbb\xbf# head\r\ndata_a # block\r\n_x.a 1#2 # comment\r\n_x.b\r\n;text\r\n;\r\n# end without a newline");
     expect(&star.items[0].value, "1#2");

@@ -432,13 +432,15 @@ static tml_status read_connections(gathering *g, const tml_star *star, const tml
 static tml_status read_cif(gathering *g, const char *text, size_t length) {
     tml_star star;
     tml_status status = tml_star_parse(text, length, g->path, &star, g->error);
-    for (size_t f = 0; f < star.frame_count && status == TML_OK; f++) {
-        const tml_star_loop *sites = tml_star_find_loop(&star, &star.frames[f], "_atom_site");
-        if (sites == NULL) continue;
-        status = read_sites(g, &star, sites);
-        const tml_star_loop *links = tml_star_find_loop(&star, &star.frames[f], "_struct_conn");
-        if (status == TML_OK && links != NULL) status = read_connections(g, &star, links);
-        break; /* the first block with atoms */
+    bool found = false; /* the first block with atoms */
+    for (size_t f = 0; f < star.frame_count && status == TML_OK && !found; f++) {
+        tml_star_loop sites, links;
+        bool linked = false;
+        status = tml_star_find_table(&star, &star.frames[f], "_atom_site", &sites, &found, g->error);
+        if (status != TML_OK || !found) continue;
+        status = read_sites(g, &star, &sites);
+        if (status == TML_OK) status = tml_star_find_table(&star, &star.frames[f], "_struct_conn", &links, &linked, g->error);
+        if (status == TML_OK && linked) status = read_connections(g, &star, &links);
     }
     tml_star_clear(&star);
     return status;

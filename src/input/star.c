@@ -277,6 +277,23 @@ const tml_star_loop *tml_star_find_loop(const tml_star *star, const tml_star_fra
     return NULL;
 }
 
+tml_status tml_star_find_table(tml_star *star, const tml_star_frame *frame, const char *category, tml_star_loop *table, bool *found,
+                               tml_error *error) {
+    const tml_star_loop *loop = tml_star_find_loop(star, frame, category);
+    *table = loop != NULL ? *loop : (tml_star_loop){.first_tag = star->tag_count, .first_value = star->value_count, .row_count = 1};
+    for (size_t i = frame->first_item; loop == NULL && i < frame->first_item + frame->item_count; i++) {
+        if (!in_category(&star->items[i].tag, category)) continue;
+        if (!tml_grow(&star->tags, &star->tag_capacity, star->tag_count + 1, sizeof *star->tags) ||
+            !tml_grow(&star->values, &star->value_capacity, star->value_count + 1, sizeof *star->values))
+            return tml_no_memory(error);
+        star->tags[star->tag_count++] = star->items[i].tag;
+        star->values[star->value_count++] = star->items[i].value;
+        table->tag_count++;
+    }
+    *found = table->tag_count > 0;
+    return TML_OK;
+}
+
 int tml_star_column(const tml_star *star, const tml_star_loop *loop, const char *name) {
     for (size_t i = 0; i < loop->tag_count; i++) {
         const tml_star_value *tag = &star->tags[loop->first_tag + i];

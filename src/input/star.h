@@ -47,6 +47,11 @@ bool tml_star_is(const tml_star_value *value, const char *text);
 /* The first loop of a frame whose tags belong to `category` ("_nef_sequence"); NULL if there is none. Empty loops count. */
 const tml_star_loop *tml_star_find_loop(const tml_star *star, const tml_star_frame *frame, const char *category);
 
+/* A category as a table: its loop, or, as CIF writes a table of one row, its items as a loop of one row; *found is false
+ * where the frame has neither. TML_OK or TML_NO_MEMORY. */
+tml_status tml_star_find_table(tml_star *star, const tml_star_frame *frame, const char *category, tml_star_loop *table, bool *found,
+                               tml_error *error);
+
 /* Column of a loop by the tag's part after the dot ("chain_code"), without case; -1 if there is none. */
 int tml_star_column(const tml_star *star, const tml_star_loop *loop, const char *name);
 

@@ -262,6 +262,7 @@ static void write_figures(const writer *w) {
 }
 
 static void write_provenance(const writer *w) {
+    char rule[512];
     const char *title = w->ensemble->problem->title;
     tml_file_print(w->file, "_struct.entry_id trammel\n_struct.title ");
     value(w, title == NULL || title[0] == '\0' ? "Models from limits on distances" : title);
@@ -272,7 +273,8 @@ static void write_provenance(const writer *w) {
                             "_pdbx_nmr_ensemble.conformers_submitted_total_number %d\n"
                             "_pdbx_nmr_ensemble.conformer_selection_criteria ",
                    w->ensemble->trials, w->ensemble->model_count);
-    value(w, w->ensemble->select_lowest ? "lowest error among the trials that passed" : "the first trials that passed");
+    tml_say_selection(w->ensemble, rule, sizeof rule);
+    value(w, rule);
     tml_file_print(w->file, "\n#\n_pdbx_nmr_refine.entry_id trammel\n_pdbx_nmr_refine.method 'distance geometry, simulated annealing'\n"
                             "_pdbx_nmr_refine.software_ordinal 1\n");
     write_method(w);

@@ -33,15 +33,17 @@ static void heading(tml_file *file, const char *text) {
 static void tell_problem(tml_file *file, const tml_problem *problem) {
     const tml_molecule *molecule = &problem->molecule;
     if (problem->title != NULL && problem->title[0] != '\0') tml_file_paragraph(file, WIDTH, "", "  ", "%s", problem->title);
-    tml_file_print(file, "%d atom%s", molecule->atom_count, plural(molecule->atom_count));
+    char atoms[96], residues[96] = "", unmapped[96] = "";
+    snprintf(atoms, sizeof atoms, "%d atom%s", molecule->atom_count, plural(molecule->atom_count));
     if (molecule->residue_count > 0 && molecule->residues[0].number[0] != '\0')
-        tml_file_print(file, " in %d residue%s of %d chain%s", molecule->residue_count, plural(molecule->residue_count),
-                       molecule->chain_count, plural(molecule->chain_count));
-    tml_file_print(file, "; %d distance and %d dihedral restraint%s", problem->restraints.distance_count,
-                   problem->restraints.dihedral_count, plural(problem->restraints.dihedral_count));
+        snprintf(residues, sizeof residues, " in %d residue%s of %d chain%s", molecule->residue_count,
+                 plural(molecule->residue_count), molecule->chain_count, plural(molecule->chain_count));
     if (problem->restraints.unmapped_count > 0)
-        tml_file_print(file, ", and %d more that name unknown atoms", problem->restraints.unmapped_count);
-    tml_file_print(file, "\n");
+        snprintf(unmapped, sizeof unmapped, ", and %d more that name%s unknown atoms", problem->restraints.unmapped_count,
+                 problem->restraints.unmapped_count == 1 ? "s" : "");
+    tml_file_paragraph(file, WIDTH, "", "  ", "%s%s; %d distance and %d dihedral restraint%s%s", atoms, residues,
+                       problem->restraints.distance_count, problem->restraints.dihedral_count,
+                       plural(problem->restraints.dihedral_count), unmapped);
 }
 
 /* ---- build ---- */

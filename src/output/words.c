@@ -80,7 +80,14 @@ void tml_say_conflict(const tml_problem *problem, const tml_contradiction *confl
 }
 
 void tml_say_selection(const tml_ensemble *ensemble, char *text, size_t size) {
-    if (ensemble->select_lowest)
+    const char *rule = ensemble->select_lowest ? "lowest" : "first";
+    if (ensemble->passed == 0)
+        snprintf(text, size, "of %d trials, none of which passed, %s were chosen (%s)", ensemble->trials,
+                 ensemble->select_lowest ? "those with the lowest error" : "the first", rule);
+    else if (ensemble->passed < ensemble->model_count)
+        snprintf(text, size, "of %d trials, all %d that passed were chosen and, being too few, %s of the others (%s)",
+                 ensemble->trials, ensemble->passed, ensemble->select_lowest ? "those with the lowest error" : "the first", rule);
+    else if (ensemble->select_lowest)
         snprintf(text, size, "of %d trials, %d of which passed, those with the lowest error among the passed were chosen (lowest)",
                  ensemble->trials, ensemble->passed);
     else

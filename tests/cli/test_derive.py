@@ -91,6 +91,20 @@ class Derive(harness.CommandTest):
         self.write('m.sheet', sheet)
         self.trammel('check', 'm.sheet')
 
+    def test_a_single_link_written_as_items(self):
+        """As the wwPDB writes a category of one row (PDBx/mmCIF): not as a loop."""
+        site = '{0} {1} CYS A {2} {3} 0 0\n'
+        tags = ('id', 'label_atom_id', 'label_comp_id', 'label_asym_id', 'label_seq_id', 'Cartn_x', 'Cartn_y', 'Cartn_z')
+        sites = 'loop_\n' + ''.join(f'_atom_site.{tag}\n' for tag in tags)
+        sites += ''.join(site.format(i, name, number, x) for i, (name, number, x) in enumerate(
+            (('CA', 1, 0), ('SG', 1, 1.8), ('SG', 2, 3.8), ('CA', 2, 5.6))))
+        link = '_struct_conn.id disulf1\n_struct_conn.conn_type_id disulf\n' + ''.join(
+            f'_struct_conn.ptnr{k}_label_{tag} {value}\n' for k in (1, 2) for tag, value in (
+                ('asym_id', 'A'), ('seq_id', k), ('comp_id', 'CYS'), ('atom_id', 'SG')))
+        self.write('m.cif', 'data_x\n' + link + sites)
+        sheet, _ = self.trammel('derive', 'm.cif')
+        self.assertIn('link A:1:SG A:2:SG', sheet)
+
     def test_noise_and_choice_follow_the_seed(self):
         self.write('m.pdb', pdb())
         arguments = ('derive', 'm.pdb', '--covalent', 'no', '--cutoff', 9, '--noise', 0.3, '--keep', 0.5, '--seed')
