@@ -5,6 +5,7 @@
 #include "base/pcg.h"
 #include "bounds/bounds.h"
 #include "bounds/graph.h"
+#include "bounds/radii.h"
 #include "molecule/geometry.h"
 #include "sheets.h"
 
@@ -290,6 +291,21 @@ Test(bounds, limits_that_chemistry_forbids_are_blamed_on_the_user_and_loosened) 
     int32_t a = atom_of(problem, "1", "CA"), b = atom_of(problem, "2", "CA");
     cr_assert_lt(tml_bounds_upper(bounds, a, b), 4.2); /* chemistry stays: CA to CA across a trans peptide is 3.8 (Pauling 1951) */
     assert_closed(bounds);
+    tml_bounds_free(bounds);
+    tml_contradictions_clear(&found);
+    tml_problem_free(problem);
+}
+
+Test(bounds, a_floor_stays_where_a_restraint_gives_way_to_it) {
+    tml_problem *problem = problem_from("atom C1 C\natom C2 C\nlimit C1 C2 - 1 as near\n");
+    tml_bounds *bounds = NULL;
+    tml_contradictions found = {0};
+    double floor = tml_hard_floor(&problem->molecule, 0, 1);
+    cr_assert_eq(tml_bounds_prepare(problem, 1, NULL, &bounds, &found, NULL), TML_CONTRADICTED);
+    cr_assert_eq(found.count, 1);
+    cr_assert_float_eq(tml_bounds_lower(bounds, 0, 1), floor, 1e-6);
+    cr_assert_geq(tml_bounds_upper(bounds, 0, 1), floor);
+    cr_assert_lt(tml_bounds_upper(bounds, 0, 1), floor + 0.01); /* as far as the proof needs, and no farther */
     tml_bounds_free(bounds);
     tml_contradictions_clear(&found);
     tml_problem_free(problem);

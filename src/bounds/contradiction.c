@@ -128,6 +128,12 @@ static bool is_users(const tml_given *given) {
     return given->reason == TML_REASON_RESTRAINT || given->reason == TML_REASON_DIHEDRAL;
 }
 
+static bool blames_users(const tml_contradiction *proof) {
+    for (size_t k = 0; k < proof->step_count; k++)
+        if (is_users(&proof->steps[k].given)) return true;
+    return false;
+}
+
 /* The user's restraints that are already blamed by a kept proof. */
 typedef struct blame { bool *distance, *dihedral; } blame;
 
@@ -159,8 +165,7 @@ static tml_status keep_independent(const tml_problem *problem, tml_contradiction
     size_t kept = first;
     for (size_t i = 0; i < found->count; i++) {
         tml_contradiction *proof = &found->items[i];
-        bool users = false;
-        for (size_t k = 0; k < proof->step_count; k++) users = users || is_users(&proof->steps[k].given);
+        bool users = blames_users(proof);
         if (i >= first && (shares_blame(&b, proof) || (!users && without))) {
             free(proof->steps);
             continue;
@@ -226,12 +231,14 @@ static void loosen(tml_givens *givens, const tml_contradiction *proof, bool drop
     }
 }
 
-/* A floor of the radii that a proof without restraints blames is no given: it is lowered in the matrix each time. */
+/* A floor of the radii that a proof without restraints blames is no given: it is lowered in the matrix each time. Where restraints
+ * are blamed, these give way and the floor stays. */
 static void lower_floors(tml_bounds *bounds, const tml_contradictions *found) {
     for (size_t i = 0; i < found->count; i++) {
         const tml_given *lower = &found->items[i].steps[0].given;
+        if (lower->reason != TML_REASON_RADIUS || blames_users(&found->items[i])) continue;
         float *cell = tml_bounds_cell(bounds, lower->b, lower->a);
-        if (lower->reason == TML_REASON_RADIUS) *cell = fminf(*cell, fmaxf((float)(lower->value - found->items[i].excess - MARGIN), 0));
+        *cell = fminf(*cell, fmaxf((float)(lower->value - found->items[i].excess - MARGIN), 0));
     }
 }
 

@@ -44,7 +44,7 @@ def memory(folder):
             file.write(f'limit B{i - 1} B{i} 3.0 4.0\n')
             file.write(f'limit B{generator.randrange(i)} B{i} 3.0 {generator.randint(20, 60)}\n')
     done = subprocess.run([os.path.join(BUILD, 'trammel'), 'build', sheet, '-n', '2', '--trials', '2', '--threads', str(THREADS),
-                           '-o', os.path.join(folder, 'models.pdb')], check=False, capture_output=True)
+                           '-o', os.path.join(folder, 'models.cif')], check=False, capture_output=True)
     if done.returncode not in (0, 1):
         raise SystemExit(f'build: status {done.returncode}\n{done.stderr.decode()}')
     peak = resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss * 1024
