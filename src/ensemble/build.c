@@ -68,7 +68,7 @@ tml_status tml_build(tml_problem *problem, const tml_build_options *options, con
     if (watch == NULL) watch = &NO_WATCH;
     tml_status status = check_request(problem, options, error);
     if (status == TML_OK) status = fit_threads(problem, options->threads, &threads, error);
-    if (status == TML_OK) status = tml_find_cis(problem, options->seed, threads, watch->stop, error);
+    if (status == TML_OK) status = tml_find_cis(problem, options->seed, watch->stop, error);
     if (status != TML_OK) return status;
 
     tml_bounds *bounds = NULL;

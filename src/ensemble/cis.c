@@ -29,10 +29,9 @@ static tml_status fold(const tml_problem *fragment, uint64_t seed, const volatil
 static tml_status note_cis(tml_problem *problem, const tml_peptide *peptide, const tml_problem *fragment, const outcome *trans,
                            const outcome *cis, tml_error *error);
 
-tml_status tml_find_cis(tml_problem *problem, uint64_t seed, int threads, const volatile int *stop, tml_error *error) {
+tml_status tml_find_cis(tml_problem *problem, uint64_t seed, const volatile int *stop, tml_error *error) {
     tml_molecule *molecule = &problem->molecule;
     tml_status status = TML_OK;
-    (void)threads;
     for (int32_t i = 0; status == TML_OK && i < molecule->peptide_count; i++) {
         const tml_peptide *peptide = &molecule->peptides[i];
         if (peptide->declared || peptide->cis || strcmp(molecule->residues[peptide->residue2].name, "PRO") != 0) continue;

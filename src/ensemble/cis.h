@@ -8,8 +8,8 @@
  * trans and cis, from many random starts; where trans always violates and cis does not, set the bond cis and note it.
  *
  * problem   changed: peptide bonds set cis, and a note for each
- * seed      of the random starts; the finding does not depend on the number of threads
+ * seed      of the random starts
  */
-tml_status tml_find_cis(tml_problem *problem, uint64_t seed, int threads, const volatile int *stop, tml_error *error);
+tml_status tml_find_cis(tml_problem *problem, uint64_t seed, const volatile int *stop, tml_error *error);
 
 #endif
