@@ -146,7 +146,7 @@ Test(molecule, residues_have_as_many_atoms_as_their_formulas) {
         cr_assert_eq(h, hydrogens[i], "%s has %d hydrogens", RESIDUES[i], h);
         cr_assert_eq(residue->atom_count - h, heavy[i], "%s has %d heavy atoms", RESIDUES[i], residue->atom_count - h);
         cr_assert_eq(q, charge[i], "%s has charge %d", RESIDUES[i], q);
-        cr_assert(residue->amino_acid && residue->position == 1 && residue->sequence == 2 && residue->insertion == ' ');
+        cr_assert(residue->standard && residue->polymer == TML_POLYMER_PROTEIN && residue->position == 1 && residue->sequence == 2 && residue->insertion == ' ');
         free_bench(b);
     }
 }
@@ -644,7 +644,7 @@ Test(molecule, single_atoms_have_no_bonds_but_those_of_links) {
     cr_assert_eq(m->bond_count, 1);
     cr_assert_float_eq(m->bonds[0].length, 1.52, 1e-9);
     cr_assert_eq(m->angle_count + m->torsion_count + m->centre_count + m->plane_count, 0);
-    cr_assert(!m->residues[0].amino_acid);
+    cr_assert(!m->residues[0].standard && m->residues[0].polymer == TML_POLYMER_NONE);
     char text[32];
     tml_molecule_address(m, 1, text, sizeof text);
     cr_assert_str_eq(text, "C2");

@@ -181,7 +181,7 @@ static tml_status images_apart(const tml_problem *problem, const double *one, co
     tml_motion motion;
     if (alpha == NULL) return tml_no_memory(error);
     for (int32_t i = 0; i < molecule->atom_count; i++)
-        if (molecule->residues[molecule->atoms[i].residue].amino_acid && strcmp(molecule->atoms[i].name, "CA") == 0) alpha[count++] = i;
+        if (molecule->residues[molecule->atoms[i].residue].polymer == TML_POLYMER_PROTEIN && strcmp(molecule->atoms[i].name, "CA") == 0) alpha[count++] = i;
     *apart = count < 4 ? tml_superpose(one, other, NULL, molecule->atom_count, &motion) : tml_superpose(one, other, alpha, count, &motion);
     free(alpha);
     return TML_OK;

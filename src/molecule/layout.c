@@ -153,8 +153,9 @@ static tml_status find_template(tml_making *making, tml_layout_residue *residue)
 
 /* ---- atoms ---- */
 
-static int element_of(const char *name) {
-    const char symbol[2] = {name[0], '\0'}; /* the templates' atoms are H, C, N, O and S, and named for it */
+static int element_of(const tml_atom_row *row) {
+    if (row->element != 0) return row->element;
+    const char symbol[2] = {row->name[0], '\0'};
     return tml_element_number(symbol);
 }
 
@@ -190,7 +191,7 @@ tml_status tml_lay_out_atoms(tml_making *making) {
         tml_layout_atom *atom = &making->atoms[residue->first_atom];
         for (const tml_atom_row *row = residue->form->atoms; row->name != NULL; row++, atom++) {
             *atom = (tml_layout_atom){.name = row->name,
-                                      .element = element_of(row->name),
+                                      .element = element_of(row),
                                       .residue = r,
                                       .made = -1,
                                       .present = !row->optional,

@@ -5,11 +5,11 @@
 
 #include "molecule/elements.h"
 
-/* Contents: bonds of templates - peptide bonds - `link` statements - room for a bond */
+/* Contents: bonds of templates - bonds along chains - `link` statements - room for a bond */
 
 static tml_status add_bond(tml_making *making, int32_t a, int32_t b, double length, tml_bond_kind kind);
 static tml_status add_inner_bonds(tml_making *making, int32_t r);
-static tml_status add_peptide_bond(tml_making *making, int32_t r);
+static tml_status add_chain_bond(tml_making *making, int32_t r);
 static tml_status add_link(tml_making *making, const tml_outline_link *link);
 
 tml_status tml_lay_out_bonds(tml_making *making) {
@@ -19,7 +19,7 @@ tml_status tml_lay_out_bonds(tml_making *making) {
     for (int32_t r = 0; r < making->residue_count && status == TML_OK; r++)
         if (making->residues[r].form != NULL) status = add_inner_bonds(making, r);
     for (int32_t r = 0; r < making->residue_count && status == TML_OK; r++)
-        if (making->residues[r].previous >= 0) status = add_peptide_bond(making, r);
+        if (making->residues[r].previous >= 0) status = add_chain_bond(making, r);
     for (size_t i = 0; i < making->outline->link_count && status == TML_OK; i++)
         status = add_link(making, &making->outline->links[i]);
     return status;
@@ -70,14 +70,16 @@ static tml_status add_inner_bonds(tml_making *making, int32_t r) {
     return status;
 }
 
-/* ---- peptide bonds ---- */
+/* ---- bonds along chains ---- */
 
-static tml_status add_peptide_bond(tml_making *making, int32_t r) {
-    int32_t c = atom_named(making, making->residues[r].previous, "C"), n = atom_named(making, r, "N");
-    if (!making->atoms[c].present || !making->atoms[n].present)
-        return tml_making_fail(making, making->residues[r].place, "%s:%s: the variant takes away an atom of the peptide bond",
-                               making->residues[r].chain, making->residues[r].number);
-    return add_bond(making, c, n, tml_lookup_bond(making, c, n, TML_BOND_PEPTIDE), TML_BOND_PEPTIDE);
+static tml_status add_chain_bond(tml_making *making, int32_t r) {
+    const tml_layout_residue *residue = &making->residues[r];
+    const tml_family *family = residue->form->family;
+    int32_t tail = atom_named(making, residue->previous, family->tail), head = atom_named(making, r, family->head);
+    if (tail < 0 || head < 0 || !making->atoms[tail].present || !making->atoms[head].present)
+        return tml_making_fail(making, residue->place, "%s:%s: it cannot be bonded to the residue before: %s or %s is missing",
+                               residue->chain, residue->number, family->tail, family->head);
+    return add_bond(making, tail, head, tml_lookup_bond(making, tail, head, TML_BOND_CHAIN), TML_BOND_CHAIN);
 }
 
 /* ---- `link` statements ---- */
@@ -137,7 +139,7 @@ static bool is_amide(const tml_making *making, int32_t carbon, int32_t nitrogen)
 }
 
 static int usual_neighbours(const tml_template *form, const char *name) {
-    int count = strcmp(name, "C") == 0; /* the peptide bond or OXT */
+    int count = strcmp(name, form->family->tail) == 0; /* the bond to the next residue, or an end's atom */
     for (const tml_atom_row *row = form->atoms; row->name != NULL; row++)
         if (strcmp(row->name, name) == 0 || (strcmp(row->parent, name) == 0 && !row->optional)) count++;
     for (const tml_bond_row *row = form->bonds; row->a != NULL; row++)

@@ -43,7 +43,7 @@ static double bond_in(const tml_making *making, int32_t r, const tml_bond_row *r
 static double bond_of(const tml_making *making, int32_t r, const char *a, const char *b) {
     const tml_template *form = making->residues[r].form;
     double length = bond_in(making, r, form->bonds, a, b);
-    if (isnan(length)) length = bond_in(making, r, tml_backbone.bonds, a, b);
+    if (isnan(length)) length = bond_in(making, r, form->family->common->bonds, a, b);
     for (const tml_atom_row *row = form->atoms; isnan(length) && row->name != NULL; row++)
         if ((strcmp(row->name, a) == 0 && strcmp(row->parent, b) == 0) ||
             (strcmp(row->name, b) == 0 && strcmp(row->parent, a) == 0))
@@ -56,7 +56,7 @@ double tml_lookup_bond(const tml_making *making, int32_t a, int32_t b, tml_bond_
     char name[NAME_ROOM];
     if (first->bare || second->bare) return NAN;
     if (kind == TML_BOND_INNER) return bond_of(making, first->residue, first->name, second->name);
-    snprintf(name, sizeof name, "%c%s", kind == TML_BOND_PEPTIDE ? '-' : '=', first->name);
+    snprintf(name, sizeof name, "%c%s", kind == TML_BOND_CHAIN ? '-' : '=', first->name);
     return bond_of(making, second->residue, name, second->name);
 }
 
@@ -85,7 +85,7 @@ static void relative_name(const tml_making *making, int32_t atom, int32_t centre
     tml_bond_kind kind = tml_kind_between(making, centre, atom);
     const char *sign = "";
     if (kind == TML_BOND_LINK) sign = "=";
-    if (kind == TML_BOND_PEPTIDE) sign = making->residues[atoms[centre].residue].next == atoms[atom].residue ? "+" : "-";
+    if (kind == TML_BOND_CHAIN) sign = making->residues[atoms[centre].residue].next == atoms[atom].residue ? "+" : "-";
     snprintf(name, NAME_ROOM, "%s%.40s", sign, atoms[atom].name);
 }
 
@@ -100,7 +100,7 @@ static double angle_from_next(const tml_making *making, int32_t a, int32_t b, in
 
 static bool is_next(const tml_making *making, int32_t b, int32_t c) {
     const tml_atom *atoms = making->molecule->atoms;
-    return tml_kind_between(making, b, c) == TML_BOND_PEPTIDE && making->residues[atoms[b].residue].next == atoms[c].residue;
+    return tml_kind_between(making, b, c) == TML_BOND_CHAIN && making->residues[atoms[b].residue].next == atoms[c].residue;
 }
 
 double tml_lookup_angle(const tml_making *making, int32_t a, int32_t b, int32_t c) {
@@ -118,8 +118,8 @@ double tml_lookup_angle(const tml_making *making, int32_t a, int32_t b, int32_t 
     relative_name(making, c, b, last);
     double angle = onwards ? angle_from_next(making, a, b, c, making->residues[atoms[c].residue].form) : NAN;
     if (isnan(angle)) angle = angle_in(making, r, form->angles, first, atoms[b].name, last);
-    if (isnan(angle)) angle = angle_in(making, r, tml_backbone.angles, first, atoms[b].name, last);
-    if (isnan(angle) && onwards) angle = angle_from_next(making, a, b, c, &tml_backbone);
+    if (isnan(angle)) angle = angle_in(making, r, form->family->common->angles, first, atoms[b].name, last);
+    if (isnan(angle) && onwards) angle = angle_from_next(making, a, b, c, form->family->common);
     return angle;
 }
 
@@ -129,7 +129,7 @@ int8_t tml_lookup_charge(const tml_making *making, int32_t r, const char *name) 
     const tml_template *form = making->residues[r].form;
     for (const tml_charge_row *row = form->charges; row->atom != NULL; row++)
         if (strcmp(row->atom, name) == 0 && tml_condition_holds(making, r, row->condition)) return row->charge;
-    for (const tml_charge_row *row = tml_backbone.charges; row->atom != NULL; row++)
+    for (const tml_charge_row *row = form->family->common->charges; row->atom != NULL; row++)
         if (strcmp(row->atom, name) == 0 && tml_condition_holds(making, r, row->condition)) return row->charge;
     return 0;
 }

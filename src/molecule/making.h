@@ -9,7 +9,7 @@
 #include "molecule/molecule.h"
 #include "molecule/residue_data.h"
 
-typedef enum tml_bond_kind { TML_BOND_INNER, TML_BOND_PEPTIDE, TML_BOND_LINK } tml_bond_kind;
+typedef enum tml_bond_kind { TML_BOND_INNER, TML_BOND_CHAIN, TML_BOND_LINK } tml_bond_kind;
 
 typedef struct tml_layout_atom {
     const char *name;
@@ -28,7 +28,7 @@ typedef struct tml_layout_residue {
     const tml_template *form;  /* NULL for bare atoms */
     tml_linking linking;
     bool cis, trans;           /* the peptide bond to the next residue is declared so */
-    int32_t previous, next;    /* residues that peptide bonds lead to; -1 for none */
+    int32_t previous, next;    /* residues that the chain's bonds lead to; -1 for none */
     int32_t chain_index;
     int32_t first_atom, atom_count;
     tml_place place;
@@ -63,7 +63,7 @@ tml_status tml_find_layout_atom(tml_making *making, const tml_address *address, 
 /* variant.c: chain ends and variants: which of the templates' atoms are present */
 tml_status tml_apply_ends_and_variants(tml_making *making);
 
-/* link.c: peptide bonds and `link` statements; inner bonds of templates */
+/* link.c: bonds along chains and `link` statements; inner bonds of templates */
 tml_status tml_lay_out_bonds(tml_making *making);
 
 /* lookup.c: rows of the tables, for atoms of the molecule */

@@ -9,6 +9,7 @@
 #include "base/status.h"
 #include "molecule/index.h"
 #include "molecule/outline.h"
+#include "molecule/polymer.h"
 
 typedef struct tml_atom {
     const char *name;  /* unique within its residue */
@@ -24,7 +25,8 @@ typedef struct tml_residue {
     int32_t chain_index;               /* 0-based, in order of first appearance */
     int32_t position;                  /* 0-based within its chain */
     int32_t first_atom, atom_count;    /* a residue's atoms are consecutive */
-    bool amino_acid;                   /* one of the built-in residues: has N, CA, C in a protein chain */
+    tml_polymer polymer;               /* the kind of chain that it belongs in */
+    bool standard;                     /* built in: one of the residues that model files hold as ATOM records */
 } tml_residue;
 
 /* A covalent bond. tolerance is the half-width, Å, that bounds allow. */

@@ -7,7 +7,7 @@
  * 5179 (from memory), shared out so that the three angles come to 360°. All other angles with hydrogen follow from those of the
  * heavy atoms: see arms.c.
  *
- * Contents: lengths and angles by type - backbone - residues - table of residues - chain ends
+ * Contents: lengths and angles by type - backbone - residues - table of residues - chain ends, families
  */
 #include "molecule/residue_data.h"
 
@@ -28,34 +28,35 @@
 
 /* A residue's atoms: backbone, then the side chain's heavy atoms, then hydrogens. */
 #define HEAVY_BACKBONE(n_ca, ca_c)                                                                                             \
-    {"N", "", 0, false}, {"CA", "N", n_ca, false}, {"C", "CA", ca_c, false}, {                                                 \
-        "O", "C", 1.231, false                                                                                                 \
+    {"N", "", 0, false, 0}, {"CA", "N", n_ca, false, 0}, {"C", "CA", ca_c, false, 0}, {                                        \
+        "O", "C", 1.231, false, 0                                                                                              \
     }
 #define END_OXYGEN                                                                                                             \
-    { "OXT", "C", CARBOXYLATE, true }
+    { "OXT", "C", CARBOXYLATE, true, 0 }
 #define END_NH                                                                                                                 \
-    {"H1", "N", NH, true}, {"H2", "N", NH, true}, {                                                                            \
-        "H3", "N", NH, true                                                                                                    \
+    {"H1", "N", NH, true, 0}, {"H2", "N", NH, true, 0}, {                                                                      \
+        "H3", "N", NH, true, 0                                                                                                 \
     }
 #define END_OH                                                                                                                 \
-    { "HXT", "OXT", OH, true }
+    { "HXT", "OXT", OH, true, 0 }
 #define BACKBONE HEAVY_BACKBONE(1.458, 1.525)
 #define BACKBONE_H                                                                                                             \
-    END_OXYGEN, {"H", "N", NH, false}, END_NH, {                                                                               \
-        "HA", "CA", CH, false                                                                                                  \
+    END_OXYGEN, {"H", "N", NH, false, 0}, END_NH, {                                                                            \
+        "HA", "CA", CH, false, 0                                                                                               \
     }
 #define CH2(h2, h3, on)                                                                                                        \
-    {h2, on, CH, false}, {                                                                                                     \
-        h3, on, CH, false                                                                                                      \
+    {h2, on, CH, false, 0}, {                                                                                                  \
+        h3, on, CH, false, 0                                                                                                   \
     }
 #define CH3(h1, h2, h3, on)                                                                                                    \
-    {h1, on, CH, false}, {h2, on, CH, false}, {                                                                                \
-        h3, on, CH, false                                                                                                      \
+    {h1, on, CH, false, 0}, {h2, on, CH, false, 0}, {                                                                          \
+        h3, on, CH, false, 0                                                                                                   \
     }
 #define END                                                                                                                    \
     { 0 }
 
 static const tml_bond_row no_bonds[] = {END};
+static const tml_angle_row no_angles[] = {END};
 static const tml_torsion_row no_torsions[] = {END};
 static const tml_centre_row no_centres[] = {END};
 static const tml_charge_row no_charges[] = {END};
@@ -91,34 +92,41 @@ static const tml_centre_row backbone_centres[] = {{"CA", "N", "C", "CB", +1}, {"
 static const tml_charge_row backbone_charges[] = {{"N", +1, "+H1+H2+H3"}, {"OXT", -1, "-HXT"}, END};
 static const char *const backbone_planes[] = {"CA C O OXT", "-CA -C -O N CA H", NULL};
 
-const tml_template tml_backbone = {
-    "", NULL, backbone_bonds, backbone_angles, backbone_torsions, backbone_centres, backbone_charges, backbone_planes};
+static const tml_template backbone = {"",
+                                      &tml_protein_family,
+                                      NULL,
+                                      backbone_bonds,
+                                      backbone_angles,
+                                      backbone_torsions,
+                                      backbone_centres,
+                                      backbone_charges,
+                                      backbone_planes};
 
 /* ---- residues ---- */
 
 static const tml_atom_row ala_atoms[] = {
-    BACKBONE, {"CB", "CA", CH_CH3, false}, BACKBONE_H, CH3("HB1", "HB2", "HB3", "CB"), END_OH, END};
+    BACKBONE, {"CB", "CA", CH_CH3, false, 0}, BACKBONE_H, CH3("HB1", "HB2", "HB3", "CB"), END_OH, END};
 static const tml_angle_row ala_angles[] = {{"N", "CA", "CB", 110.4, ""}, {"C", "CA", "CB", 110.5, ""}, END};
 /* A methyl group's hydrogens have no handedness of their own; this keeps the CH2 row of the backbone from them. */
 static const tml_centre_row ala_centres[] = {{"CB", "HB1", "HB2", "HB3", 0}, END};
 
 static const tml_atom_row arg_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", CH2_CH2, false},
-                                         {"CD", "CG", CH2_CH2, false},
-                                         {"NE", "CD", 1.460, false},
-                                         {"CZ", "NE", 1.329, false},
-                                         {"NH1", "CZ", 1.326, false},
-                                         {"NH2", "CZ", 1.326, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", CH2_CH2, false, 0},
+                                         {"CD", "CG", CH2_CH2, false, 0},
+                                         {"NE", "CD", 1.460, false, 0},
+                                         {"CZ", "NE", 1.329, false, 0},
+                                         {"NH1", "CZ", 1.326, false, 0},
+                                         {"NH2", "CZ", 1.326, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
                                          CH2("HD2", "HD3", "CD"),
-                                         {"HE", "NE", NH, false},
-                                         {"HH11", "NH1", NH, false},
-                                         {"HH12", "NH1", NH, false},
-                                         {"HH21", "NH2", NH, false},
-                                         {"HH22", "NH2", NH, false},
+                                         {"HE", "NE", NH, false, 0},
+                                         {"HH11", "NH1", NH, false, 0},
+                                         {"HH12", "NH1", NH, false, 0},
+                                         {"HH21", "NH2", NH, false, 0},
+                                         {"HH22", "NH2", NH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row arg_angles[] = {{"CA", "CB", "CG", 114.1, ""},   {"CB", "CG", "CD", 111.3, ""},
@@ -132,14 +140,14 @@ static const tml_charge_row arg_charges[] = {{"NH2", +1, "+HE+HH11+HH12+HH21+HH2
 static const char *const arg_planes[] = {"CD NE HE CZ NH1 HH11 HH12 NH2 HH21 HH22", NULL};
 
 static const tml_atom_row asn_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.516, false},
-                                         {"OD1", "CG", 1.231, false},
-                                         {"ND2", "CG", 1.328, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.516, false, 0},
+                                         {"OD1", "CG", 1.231, false, 0},
+                                         {"ND2", "CG", 1.328, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD21", "ND2", NH, false},
-                                         {"HD22", "ND2", NH, false},
+                                         {"HD21", "ND2", NH, false, 0},
+                                         {"HD22", "ND2", NH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row asn_angles[] = {{"CA", "CB", "CG", 112.6, ""},
@@ -151,13 +159,13 @@ static const tml_torsion_row asn_torsions[] = {{"CB", "CG", "ND2", "HD21", 0, 0}
 static const char *const asn_planes[] = {"CB CG OD1 ND2 HD21 HD22", NULL};
 
 static const tml_atom_row asp_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.516, false},
-                                         {"OD1", "CG", CARBOXYLATE, false},
-                                         {"OD2", "CG", CARBOXYLATE, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.516, false, 0},
+                                         {"OD1", "CG", CARBOXYLATE, false, 0},
+                                         {"OD2", "CG", CARBOXYLATE, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD2", "OD2", OH, true},
+                                         {"HD2", "OD2", OH, true, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row asp_bonds[] = {{"CG", "OD1", ACID_CO, "+HD2"}, {"CG", "OD2", ACID_COH, "+HD2"}, END};
@@ -170,11 +178,11 @@ static const tml_charge_row asp_charges[] = {{"OD2", -1, "-HD2"}, END};
 static const char *const asp_planes[] = {"CB CG OD1 OD2", NULL};
 
 static const tml_atom_row cys_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"SG", "CB", 1.808, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"SG", "CB", 1.808, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HG", "SG", SH, false},
+                                         {"HG", "SG", SH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row cys_angles[] = {
@@ -183,16 +191,16 @@ static const tml_bond_row cys_bonds[] = {{"SG", "=SG", 2.030, ""}, END};
 static const tml_charge_row cys_charges[] = {{"SG", -1, "-HG"}, END};
 
 static const tml_atom_row gln_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", CH2_CH2, false},
-                                         {"CD", "CG", 1.516, false},
-                                         {"OE1", "CD", 1.231, false},
-                                         {"NE2", "CD", 1.328, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", CH2_CH2, false, 0},
+                                         {"CD", "CG", 1.516, false, 0},
+                                         {"OE1", "CD", 1.231, false, 0},
+                                         {"NE2", "CD", 1.328, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
-                                         {"HE21", "NE2", NH, false},
-                                         {"HE22", "NE2", NH, false},
+                                         {"HE21", "NE2", NH, false, 0},
+                                         {"HE22", "NE2", NH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row gln_angles[] = {{"CA", "CB", "CG", 114.1, ""},   {"CB", "CG", "CD", 112.6, ""},
@@ -203,15 +211,15 @@ static const tml_centre_row cg_centres[] = {{"CG", "HG2", "HG3", "CB", -1}, END}
 static const char *const gln_planes[] = {"CG CD OE1 NE2 HE21 HE22", NULL};
 
 static const tml_atom_row glu_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", CH2_CH2, false},
-                                         {"CD", "CG", 1.516, false},
-                                         {"OE1", "CD", CARBOXYLATE, false},
-                                         {"OE2", "CD", CARBOXYLATE, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", CH2_CH2, false, 0},
+                                         {"CD", "CG", 1.516, false, 0},
+                                         {"OE1", "CD", CARBOXYLATE, false, 0},
+                                         {"OE2", "CD", CARBOXYLATE, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
-                                         {"HE2", "OE2", OH, true},
+                                         {"HE2", "OE2", OH, true, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row glu_bonds[] = {{"CD", "OE1", ACID_CO, "+HE2"}, {"CD", "OE2", ACID_COH, "+HE2"}, END};
@@ -225,25 +233,25 @@ static const tml_charge_row glu_charges[] = {{"OE2", -1, "-HE2"}, END};
 static const char *const glu_planes[] = {"CG CD OE1 OE2", NULL};
 
 static const tml_atom_row gly_atoms[] = {
-    HEAVY_BACKBONE(1.451, 1.516), END_OXYGEN, {"H", "N", NH, false}, END_NH, CH2("HA2", "HA3", "CA"), END_OH, END};
+    HEAVY_BACKBONE(1.451, 1.516), END_OXYGEN, {"H", "N", NH, false, 0}, END_NH, CH2("HA2", "HA3", "CA"), END_OH, END};
 static const tml_angle_row gly_angles[] = {{"N", "CA", "C", 112.5, ""},    {"-C", "N", "CA", 120.6, ""},
                                            {"CA", "N", "H", 118.7, "-H2"}, {"-C", "N", "H", 120.7, ""},
                                            {"CA", "C", "+N", 116.4, ""},   END};
 static const tml_centre_row gly_centres[] = {{"CA", "HA2", "HA3", "N", -1}, END};
 
 static const tml_atom_row his_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.497, false},
-                                         {"ND1", "CG", 1.378, false},
-                                         {"CD2", "CG", 1.354, false},
-                                         {"CE1", "ND1", 1.321, false},
-                                         {"NE2", "CD2", 1.374, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.497, false, 0},
+                                         {"ND1", "CG", 1.378, false, 0},
+                                         {"CD2", "CG", 1.354, false, 0},
+                                         {"CE1", "ND1", 1.321, false, 0},
+                                         {"NE2", "CD2", 1.374, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD1", "ND1", NH, false},
-                                         {"HD2", "CD2", RH, false},
-                                         {"HE1", "CE1", RH, false},
-                                         {"HE2", "NE2", NH, false},
+                                         {"HD1", "ND1", NH, false, 0},
+                                         {"HD2", "CD2", RH, false, 0},
+                                         {"HE1", "CE1", RH, false, 0},
+                                         {"HE2", "NE2", NH, false, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row his_bonds[] = {{"CG", "ND1", 1.371, "-HD1"},  {"CG", "CD2", 1.356, "-HD1"},
@@ -264,12 +272,12 @@ static const tml_charge_row his_charges[] = {{"ND1", +1, "+HD1+HE2"}, END};
 static const char *const his_planes[] = {"CB CG ND1 CD2 CE1 NE2 HD1 HD2 HE1 HE2", NULL};
 
 static const tml_atom_row ile_atoms[] = {BACKBONE,
-                                         {"CB", "CA", 1.540, false},
-                                         {"CG1", "CB", 1.530, false},
-                                         {"CG2", "CB", CH_CH3, false},
-                                         {"CD1", "CG1", 1.513, false},
+                                         {"CB", "CA", 1.540, false, 0},
+                                         {"CG1", "CB", 1.530, false, 0},
+                                         {"CG2", "CB", CH_CH3, false, 0},
+                                         {"CD1", "CG1", 1.513, false, 0},
                                          BACKBONE_H,
-                                         {"HB", "CB", CH, false},
+                                         {"HB", "CB", CH, false, 0},
                                          CH2("HG12", "HG13", "CG1"),
                                          CH3("HG21", "HG22", "HG23", "CG2"),
                                          CH3("HD11", "HD12", "HD13", "CD1"),
@@ -285,13 +293,13 @@ static const tml_angle_row ile_angles[] = {{"N", "CA", "CB", 111.5, ""},
 static const tml_centre_row ile_centres[] = {{"CB", "CA", "CG1", "CG2", +1}, {"CG1", "HG12", "HG13", "CB", -1}, END};
 
 static const tml_atom_row leu_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.530, false},
-                                         {"CD1", "CG", CH_CH3, false},
-                                         {"CD2", "CG", CH_CH3, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.530, false, 0},
+                                         {"CD1", "CG", CH_CH3, false, 0},
+                                         {"CD2", "CG", CH_CH3, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HG", "CG", CH, false},
+                                         {"HG", "CG", CH, false, 0},
                                          CH3("HD11", "HD12", "HD13", "CD1"),
                                          CH3("HD21", "HD22", "HD23", "CD2"),
                                          END_OH,
@@ -304,19 +312,19 @@ static const tml_angle_row leu_angles[] = {{"CA", "CB", "CG", 116.3, ""},
 static const tml_centre_row leu_centres[] = {{"CG", "CD1", "CD2", "CB", -1}, END};
 
 static const tml_atom_row lys_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", CH2_CH2, false},
-                                         {"CD", "CG", CH2_CH2, false},
-                                         {"CE", "CD", CH2_CH2, false},
-                                         {"NZ", "CE", 1.489, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", CH2_CH2, false, 0},
+                                         {"CD", "CG", CH2_CH2, false, 0},
+                                         {"CE", "CD", CH2_CH2, false, 0},
+                                         {"NZ", "CE", 1.489, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
                                          CH2("HD2", "HD3", "CD"),
                                          CH2("HE2", "HE3", "CE"),
-                                         {"HZ1", "NZ", NH, false},
-                                         {"HZ2", "NZ", NH, false},
-                                         {"HZ3", "NZ", NH, false},
+                                         {"HZ1", "NZ", NH, false, 0},
+                                         {"HZ2", "NZ", NH, false, 0},
+                                         {"HZ3", "NZ", NH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row lys_angles[] = {{"CA", "CB", "CG", 114.1, ""},
@@ -329,10 +337,10 @@ static const tml_centre_row lys_centres[] = {
 static const tml_charge_row lys_charges[] = {{"NZ", +1, "+HZ1+HZ2+HZ3"}, END};
 
 static const tml_atom_row met_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", CH2_CH2, false},
-                                         {"SD", "CG", 1.803, false},
-                                         {"CE", "SD", 1.791, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", CH2_CH2, false, 0},
+                                         {"SD", "CG", 1.803, false, 0},
+                                         {"CE", "SD", 1.791, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
@@ -343,20 +351,20 @@ static const tml_angle_row met_angles[] = {
     {"CA", "CB", "CG", 114.1, ""}, {"CB", "CG", "SD", 112.7, ""}, {"CG", "SD", "CE", 100.9, ""}, END};
 
 static const tml_atom_row phe_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.502, false},
-                                         {"CD1", "CG", 1.384, false},
-                                         {"CD2", "CG", 1.384, false},
-                                         {"CE1", "CD1", 1.382, false},
-                                         {"CE2", "CD2", 1.382, false},
-                                         {"CZ", "CE1", 1.382, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.502, false, 0},
+                                         {"CD1", "CG", 1.384, false, 0},
+                                         {"CD2", "CG", 1.384, false, 0},
+                                         {"CE1", "CD1", 1.382, false, 0},
+                                         {"CE2", "CD2", 1.382, false, 0},
+                                         {"CZ", "CE1", 1.382, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD1", "CD1", RH, false},
-                                         {"HD2", "CD2", RH, false},
-                                         {"HE1", "CE1", RH, false},
-                                         {"HE2", "CE2", RH, false},
-                                         {"HZ", "CZ", RH, false},
+                                         {"HD1", "CD1", RH, false, 0},
+                                         {"HD2", "CD2", RH, false, 0},
+                                         {"HE1", "CE1", RH, false, 0},
+                                         {"HE2", "CE2", RH, false, 0},
+                                         {"HZ", "CZ", RH, false, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row phe_bonds[] = {{"CE2", "CZ", 1.382, ""}, END};
@@ -368,13 +376,13 @@ static const tml_angle_row phe_angles[] = {{"CA", "CB", "CG", 113.8, ""},   {"CB
 static const char *const phe_planes[] = {"CB CG CD1 CD2 CE1 CE2 CZ HD1 HD2 HE1 HE2 HZ", NULL};
 
 static const tml_atom_row pro_atoms[] = {HEAVY_BACKBONE(1.466, 1.525),
-                                         {"CB", "CA", 1.530, false},
-                                         {"CG", "CB", 1.492, false},
-                                         {"CD", "CG", 1.503, false},
+                                         {"CB", "CA", 1.530, false, 0},
+                                         {"CG", "CB", 1.492, false, 0},
+                                         {"CD", "CG", 1.503, false, 0},
                                          END_OXYGEN,
-                                         {"H2", "N", NH, true},
-                                         {"H3", "N", NH, true},
-                                         {"HA", "CA", CH, false},
+                                         {"H2", "N", NH, true, 0},
+                                         {"H3", "N", NH, true, 0},
+                                         {"HA", "CA", CH, false, 0},
                                          CH2("HB2", "HB3", "CB"),
                                          CH2("HG2", "HG3", "CG"),
                                          CH2("HD2", "HD3", "CD"),
@@ -394,22 +402,22 @@ static const tml_charge_row pro_charges[] = {{"N", +1, "+H2+H3"}, END};
 static const char *const pro_planes[] = {"-CA -C -O N CA CD", NULL};
 
 static const tml_atom_row ser_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"OG", "CB", 1.417, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"OG", "CB", 1.417, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HG", "OG", OH, false},
+                                         {"HG", "OG", OH, false, 0},
                                          END_OH,
                                          END};
 static const tml_angle_row ser_angles[] = {{"CA", "CB", "OG", 111.1, ""}, {"CB", "OG", "HG", 108.5, ""}, END};
 
 static const tml_atom_row thr_atoms[] = {BACKBONE,
-                                         {"CB", "CA", 1.540, false},
-                                         {"OG1", "CB", 1.433, false},
-                                         {"CG2", "CB", CH_CH3, false},
+                                         {"CB", "CA", 1.540, false, 0},
+                                         {"OG1", "CB", 1.433, false, 0},
+                                         {"CG2", "CB", CH_CH3, false, 0},
                                          BACKBONE_H,
-                                         {"HB", "CB", CH, false},
-                                         {"HG1", "OG1", OH, false},
+                                         {"HB", "CB", CH, false, 0},
+                                         {"HG1", "OG1", OH, false, 0},
                                          CH3("HG21", "HG22", "HG23", "CG2"),
                                          END_OH,
                                          END};
@@ -423,24 +431,24 @@ static const tml_angle_row thr_angles[] = {{"N", "CA", "CB", 111.5, ""},
 static const tml_centre_row thr_centres[] = {{"CB", "CA", "OG1", "CG2", +1}, END};
 
 static const tml_atom_row trp_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.498, false},
-                                         {"CD1", "CG", 1.365, false},
-                                         {"CD2", "CG", 1.433, false},
-                                         {"NE1", "CD1", 1.374, false},
-                                         {"CE2", "CD2", 1.409, false},
-                                         {"CE3", "CD2", 1.398, false},
-                                         {"CZ2", "CE2", 1.394, false},
-                                         {"CZ3", "CE3", 1.382, false},
-                                         {"CH2", "CZ2", 1.368, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.498, false, 0},
+                                         {"CD1", "CG", 1.365, false, 0},
+                                         {"CD2", "CG", 1.433, false, 0},
+                                         {"NE1", "CD1", 1.374, false, 0},
+                                         {"CE2", "CD2", 1.409, false, 0},
+                                         {"CE3", "CD2", 1.398, false, 0},
+                                         {"CZ2", "CE2", 1.394, false, 0},
+                                         {"CZ3", "CE3", 1.382, false, 0},
+                                         {"CH2", "CZ2", 1.368, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD1", "CD1", RH, false},
-                                         {"HE1", "NE1", NH, false},
-                                         {"HE3", "CE3", RH, false},
-                                         {"HZ2", "CZ2", RH, false},
-                                         {"HZ3", "CZ3", RH, false},
-                                         {"HH2", "CH2", RH, false},
+                                         {"HD1", "CD1", RH, false, 0},
+                                         {"HE1", "NE1", NH, false, 0},
+                                         {"HE3", "CE3", RH, false, 0},
+                                         {"HZ2", "CZ2", RH, false, 0},
+                                         {"HZ3", "CZ3", RH, false, 0},
+                                         {"HH2", "CH2", RH, false, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row trp_bonds[] = {{"NE1", "CE2", 1.370, ""}, {"CZ3", "CH2", 1.400, ""}, END};
@@ -464,21 +472,21 @@ static const tml_angle_row trp_angles[] = {{"CA", "CB", "CG", 113.6, ""},
 static const char *const trp_planes[] = {"CB CG CD1 CD2 NE1 CE2 CE3 CZ2 CZ3 CH2 HD1 HE1 HE3 HZ2 HZ3 HH2", NULL};
 
 static const tml_atom_row tyr_atoms[] = {BACKBONE,
-                                         {"CB", "CA", CA_CB, false},
-                                         {"CG", "CB", 1.512, false},
-                                         {"CD1", "CG", 1.389, false},
-                                         {"CD2", "CG", 1.389, false},
-                                         {"CE1", "CD1", 1.382, false},
-                                         {"CE2", "CD2", 1.382, false},
-                                         {"CZ", "CE1", 1.378, false},
-                                         {"OH", "CZ", 1.376, false},
+                                         {"CB", "CA", CA_CB, false, 0},
+                                         {"CG", "CB", 1.512, false, 0},
+                                         {"CD1", "CG", 1.389, false, 0},
+                                         {"CD2", "CG", 1.389, false, 0},
+                                         {"CE1", "CD1", 1.382, false, 0},
+                                         {"CE2", "CD2", 1.382, false, 0},
+                                         {"CZ", "CE1", 1.378, false, 0},
+                                         {"OH", "CZ", 1.376, false, 0},
                                          BACKBONE_H,
                                          CH2("HB2", "HB3", "CB"),
-                                         {"HD1", "CD1", RH, false},
-                                         {"HD2", "CD2", RH, false},
-                                         {"HE1", "CE1", RH, false},
-                                         {"HE2", "CE2", RH, false},
-                                         {"HH", "OH", OH, false},
+                                         {"HD1", "CD1", RH, false, 0},
+                                         {"HD2", "CD2", RH, false, 0},
+                                         {"HE1", "CE1", RH, false, 0},
+                                         {"HE2", "CE2", RH, false, 0},
+                                         {"HH", "OH", OH, false, 0},
                                          END_OH,
                                          END};
 static const tml_bond_row tyr_bonds[] = {{"CE2", "CZ", 1.378, ""}, END};
@@ -498,11 +506,11 @@ static const tml_angle_row tyr_angles[] = {{"CA", "CB", "CG", 113.9, ""},
 static const char *const tyr_planes[] = {"CB CG CD1 CD2 CE1 CE2 CZ OH HD1 HD2 HE1 HE2", NULL};
 
 static const tml_atom_row val_atoms[] = {BACKBONE,
-                                         {"CB", "CA", 1.540, false},
-                                         {"CG1", "CB", CH_CH3, false},
-                                         {"CG2", "CB", CH_CH3, false},
+                                         {"CB", "CA", 1.540, false, 0},
+                                         {"CG1", "CB", CH_CH3, false, 0},
+                                         {"CG2", "CB", CH_CH3, false, 0},
                                          BACKBONE_H,
-                                         {"HB", "CB", CH, false},
+                                         {"HB", "CB", CH, false, 0},
                                          CH3("HG11", "HG12", "HG13", "CG1"),
                                          CH3("HG21", "HG22", "HG23", "CG2"),
                                          END_OH,
@@ -515,29 +523,36 @@ static const tml_centre_row val_centres[] = {{"CB", "CG1", "CG2", "CA", -1}, END
 /* ---- table of residues ---- */
 
 const tml_template tml_templates[] = {
-    {"ALA", ala_atoms, no_bonds, ala_angles, no_torsions, ala_centres, no_charges, no_planes},
-    {"ARG", arg_atoms, no_bonds, arg_angles, arg_torsions, arg_centres, arg_charges, arg_planes},
-    {"ASN", asn_atoms, no_bonds, asn_angles, asn_torsions, no_centres, no_charges, asn_planes},
-    {"ASP", asp_atoms, asp_bonds, asp_angles, asp_torsions, no_centres, asp_charges, asp_planes},
-    {"CYS", cys_atoms, cys_bonds, cys_angles, no_torsions, no_centres, cys_charges, no_planes},
-    {"GLN", gln_atoms, no_bonds, gln_angles, gln_torsions, cg_centres, no_charges, gln_planes},
-    {"GLU", glu_atoms, glu_bonds, glu_angles, glu_torsions, cg_centres, glu_charges, glu_planes},
-    {"GLY", gly_atoms, no_bonds, gly_angles, no_torsions, gly_centres, no_charges, no_planes},
-    {"HIS", his_atoms, his_bonds, his_angles, no_torsions, no_centres, his_charges, his_planes},
-    {"ILE", ile_atoms, no_bonds, ile_angles, no_torsions, ile_centres, no_charges, no_planes},
-    {"LEU", leu_atoms, no_bonds, leu_angles, no_torsions, leu_centres, no_charges, no_planes},
-    {"LYS", lys_atoms, no_bonds, lys_angles, no_torsions, lys_centres, lys_charges, no_planes},
-    {"MET", met_atoms, no_bonds, met_angles, no_torsions, cg_centres, no_charges, no_planes},
-    {"PHE", phe_atoms, phe_bonds, phe_angles, no_torsions, no_centres, no_charges, phe_planes},
-    {"PRO", pro_atoms, pro_bonds, pro_angles, pro_torsions, pro_centres, pro_charges, pro_planes},
-    {"SER", ser_atoms, no_bonds, ser_angles, no_torsions, no_centres, no_charges, no_planes},
-    {"THR", thr_atoms, no_bonds, thr_angles, no_torsions, thr_centres, no_charges, no_planes},
-    {"TRP", trp_atoms, trp_bonds, trp_angles, no_torsions, no_centres, no_charges, trp_planes},
-    {"TYR", tyr_atoms, tyr_bonds, tyr_angles, no_torsions, no_centres, no_charges, tyr_planes},
-    {"VAL", val_atoms, no_bonds, val_angles, no_torsions, val_centres, no_charges, no_planes},
-    {NULL, NULL, NULL, NULL, NULL, NULL, NULL, NULL}};
+    {"ALA", &tml_protein_family, ala_atoms, no_bonds, ala_angles, no_torsions, ala_centres, no_charges, no_planes},
+    {"ARG", &tml_protein_family, arg_atoms, no_bonds, arg_angles, arg_torsions, arg_centres, arg_charges, arg_planes},
+    {"ASN", &tml_protein_family, asn_atoms, no_bonds, asn_angles, asn_torsions, no_centres, no_charges, asn_planes},
+    {"ASP", &tml_protein_family, asp_atoms, asp_bonds, asp_angles, asp_torsions, no_centres, asp_charges, asp_planes},
+    {"CYS", &tml_protein_family, cys_atoms, cys_bonds, cys_angles, no_torsions, no_centres, cys_charges, no_planes},
+    {"GLN", &tml_protein_family, gln_atoms, no_bonds, gln_angles, gln_torsions, cg_centres, no_charges, gln_planes},
+    {"GLU", &tml_protein_family, glu_atoms, glu_bonds, glu_angles, glu_torsions, cg_centres, glu_charges, glu_planes},
+    {"GLY", &tml_protein_family, gly_atoms, no_bonds, gly_angles, no_torsions, gly_centres, no_charges, no_planes},
+    {"HIS", &tml_protein_family, his_atoms, his_bonds, his_angles, no_torsions, no_centres, his_charges, his_planes},
+    {"ILE", &tml_protein_family, ile_atoms, no_bonds, ile_angles, no_torsions, ile_centres, no_charges, no_planes},
+    {"LEU", &tml_protein_family, leu_atoms, no_bonds, leu_angles, no_torsions, leu_centres, no_charges, no_planes},
+    {"LYS", &tml_protein_family, lys_atoms, no_bonds, lys_angles, no_torsions, lys_centres, lys_charges, no_planes},
+    {"MET", &tml_protein_family, met_atoms, no_bonds, met_angles, no_torsions, cg_centres, no_charges, no_planes},
+    {"PHE", &tml_protein_family, phe_atoms, phe_bonds, phe_angles, no_torsions, no_centres, no_charges, phe_planes},
+    {"PRO", &tml_protein_family, pro_atoms, pro_bonds, pro_angles, pro_torsions, pro_centres, pro_charges, pro_planes},
+    {"SER", &tml_protein_family, ser_atoms, no_bonds, ser_angles, no_torsions, no_centres, no_charges, no_planes},
+    {"THR", &tml_protein_family, thr_atoms, no_bonds, thr_angles, no_torsions, thr_centres, no_charges, no_planes},
+    {"TRP", &tml_protein_family, trp_atoms, trp_bonds, trp_angles, no_torsions, no_centres, no_charges, trp_planes},
+    {"TYR", &tml_protein_family, tyr_atoms, tyr_bonds, tyr_angles, no_torsions, no_centres, no_charges, tyr_planes},
+    {"VAL", &tml_protein_family, val_atoms, no_bonds, val_angles, no_torsions, val_centres, no_charges, no_planes},
+    {NULL, NULL, NULL, NULL, NULL, NULL, NULL, NULL, NULL}};
 
-/* ---- chain ends ---- */
+/* ---- chain ends, families ---- */
 
-const tml_end_row tml_first_ends[] = {{"PRO", "+H2,+H3", "+H2"}, {"", "-H,+H1,+H2,+H3", "-H,+H1,+H2"}};
-const tml_end_row tml_last_ends[] = {{"", "+OXT", "+OXT,+HXT"}};
+static const tml_end_row first_ends[] = {{"PRO", "+H2,+H3", "+H2"}, {"", "-H,+H1,+H2,+H3", "-H,+H1,+H2"}};
+static const tml_end_row last_ends[] = {{"", "+OXT", "+OXT,+HXT"}};
+static const tml_end_row no_ends[] = {{"", "", ""}};
+
+const tml_family tml_protein_family = {TML_POLYMER_PROTEIN, "C", "N", &backbone, first_ends, last_ends};
+
+static const tml_template nothing = {"",          &tml_lone_family, NULL,       no_bonds, no_angles,
+                                     no_torsions, no_centres,       no_charges, no_planes};
+const tml_family tml_lone_family = {TML_POLYMER_NONE, "", "", &nothing, no_ends, no_ends};

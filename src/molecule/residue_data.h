@@ -14,11 +14,14 @@
 #include <stddef.h>
 #include <stdint.h>
 
+#include "molecule/polymer.h"
+
 /* One atom and the bond that ties it to an atom named earlier; parent "" for the first atom. */
 typedef struct tml_atom_row {
     const char *name, *parent;
-    double length; /* of the bond to the parent */
-    bool optional; /* not there unless a variant or a chain's end adds it */
+    double length;   /* of the bond to the parent */
+    bool optional;   /* not there unless a variant or a chain's end adds it */
+    uint8_t element; /* atomic number; 0: the name's first letter tells */
 } tml_atom_row;
 
 typedef struct tml_bond_row { const char *a, *b; double length; const char *condition; } tml_bond_row;
@@ -33,8 +36,11 @@ typedef struct tml_centre_row { const char *c, *a1, *a2, *a3; int8_t sign; } tml
 
 typedef struct tml_charge_row { const char *atom; int8_t charge; const char *condition; } tml_charge_row;
 
+typedef struct tml_family tml_family;
+
 typedef struct tml_template {
     const char *name;
+    const tml_family *family;
     const tml_atom_row *atoms;
     const tml_bond_row *bonds;       /* ring closures, and other lengths than the atoms' rows give */
     const tml_angle_row *angles;
@@ -44,11 +50,18 @@ typedef struct tml_template {
     const char *const *planes;       /* atom names apart by blanks; ends with NULL */
 } tml_template;
 
-extern const tml_template tml_templates[]; /* ends with a NULL name */
-extern const tml_template tml_backbone;    /* rows that hold for every amino acid that has none of its own; no atoms */
-
 /* What a chain's end does to its first or last residue: atoms taken away and added, as in a variant. */
 typedef struct tml_end_row { const char *residue, *charged, *neutral; } tml_end_row; /* residue "" for all others */
-extern const tml_end_row tml_first_ends[], tml_last_ends[];
+
+/* What residues of one kind have in common. */
+struct tml_family {
+    tml_polymer polymer;
+    const char *tail, *head;   /* along a chain, a bond leads from a residue's tail atom to the next one's head; "" for none */
+    const tml_template *common; /* rows that count where a residue has none of its own; no atoms */
+    const tml_end_row *first_ends, *last_ends;
+};
+
+extern const tml_family tml_protein_family, tml_lone_family; /* lone: residues that form no chains */
+extern const tml_template tml_templates[]; /* ends with a NULL name */
 
 #endif

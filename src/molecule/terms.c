@@ -38,11 +38,11 @@ static tml_status make_planes(tml_making *making) {
     for (int32_t r = 0; r < making->residue_count; r++) {
         const tml_layout_residue *residue = &making->residues[r];
         if (residue->form == NULL) continue;
-        tml_status status = residue->previous < 0 ? TML_OK : add_peptide(making, r);
+        tml_status status = residue->previous < 0 || residue->form->family->polymer != TML_POLYMER_PROTEIN ? TML_OK : add_peptide(making, r);
         int32_t first = making->molecule->plane_count;
         for (const char *const *names = residue->form->planes; *names != NULL && status == TML_OK; names++)
             status = add_plane(making, r, *names, first);
-        for (const char *const *names = tml_backbone.planes; *names != NULL && status == TML_OK; names++)
+        for (const char *const *names = residue->form->family->common->planes; *names != NULL && status == TML_OK; names++)
             status = add_plane(making, r, *names, first);
         if (status != TML_OK) return status;
     }
@@ -190,7 +190,8 @@ static tml_status make_centres(tml_making *making) {
             return tml_no_memory(making->error);
         const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[i]];
         tml_centre *centre = &molecule->centres[molecule->centre_count++];
-        if (from_row(making, making->residues[r].form->centres, i, centre) || from_row(making, tml_backbone.centres, i, centre))
+        const tml_template *form = making->residues[r].form;
+        if (from_row(making, form->centres, i, centre) || from_row(making, form->family->common->centres, i, centre))
             continue;
         *centre = (tml_centre){.centre = i, .arms = {arm[0], arm[1], arm[2], degree == 4 ? arm[3] : -1}, .sign = 1};
     }

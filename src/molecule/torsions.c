@@ -64,7 +64,7 @@ static reference know_bond(const tml_making *making, int32_t index) {
     int32_t r = molecule->atoms[bond->a].residue;
     if (molecule->atoms[bond->b].residue == r && making->bond_kinds[index] == TML_BOND_INNER &&
         (of_row(making, making->residues[r].form->torsions, bond, &known) ||
-         of_row(making, tml_backbone.torsions, bond, &known)))
+         of_row(making, making->residues[r].form->family->common->torsions, bond, &known)))
         return known;
     if (making->planar[bond->a] && making->planar[bond->b] && of_ring(making, bond, &known)) return known;
     /* Rotation about S-S prefers 90°, which is no staggering. */
@@ -75,8 +75,10 @@ static reference know_bond(const tml_making *making, int32_t index) {
 }
 
 static bool of_peptide(const tml_making *making, int32_t index, reference *known) {
-    if (making->bond_kinds[index] != TML_BOND_PEPTIDE) return false;
     const tml_molecule *molecule = making->molecule;
+    const tml_atom *end = &molecule->atoms[molecule->bonds[index].a];
+    if (making->bond_kinds[index] != TML_BOND_CHAIN || making->residues[end->residue].form->family->polymer != TML_POLYMER_PROTEIN)
+        return false;
     int32_t low = 0, high = molecule->peptide_count - 1; /* peptides are in the order of their bonds */
     while (low < high) {
         int32_t middle = low + (high - low) / 2;

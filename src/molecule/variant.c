@@ -32,7 +32,7 @@ static bool runs_on(const tml_layout_residue *a, const tml_layout_residue *b) {
 /* Neighbours in a chain are linked unless one says otherwise; a break lies between two that both say so, or where a residue
  * that says so meets a jump of numbers. */
 static bool linked(const tml_layout_residue *a, const tml_layout_residue *b) {
-    if (a->form == NULL || b->form == NULL) return false;
+    if (a->form == NULL || b->form == NULL || a->form->family != b->form->family || *a->form->family->tail == '\0') return false;
     if (a->linking == TML_LINKING_END || a->linking == TML_LINKING_SINGLE) return false;
     if (b->linking == TML_LINKING_START || b->linking == TML_LINKING_SINGLE) return false;
     bool a_breaks = a->linking == TML_LINKING_BREAK, b_breaks = b->linking == TML_LINKING_BREAK;
@@ -110,9 +110,9 @@ static tml_status apply_ends(tml_making *making) {
         bool either = linking == TML_LINKING_DEFAULT || linking == TML_LINKING_SINGLE;
         tml_status status = TML_OK;
         if (residue->previous < 0 && (either || linking == TML_LINKING_START))
-            status = apply_changes(making, r, end_changes(tml_first_ends, residue->name, ends));
+            status = apply_changes(making, r, end_changes(residue->form->family->first_ends, residue->name, ends));
         if (status == TML_OK && residue->next < 0 && (either || linking == TML_LINKING_END))
-            status = apply_changes(making, r, end_changes(tml_last_ends, residue->name, ends));
+            status = apply_changes(making, r, end_changes(residue->form->family->last_ends, residue->name, ends));
         if (status != TML_OK) return status;
     }
     return TML_OK;

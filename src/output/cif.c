@@ -140,7 +140,7 @@ static void add_strand(writer *w, const tml_chain *chain, bool polymer, int32_t 
     strand_code(w->strand_count, at->code);
     int32_t last = polymer ? chain->first_residue + chain->residue_count : first_residue + 1;
     for (int32_t r = first_residue; r < last; r++) {
-        if (polymer && !w->molecule->residues[r].amino_acid) continue;
+        if (polymer && w->molecule->residues[r].polymer == TML_POLYMER_NONE) continue;
         w->strand_of[r] = w->strand_count;
         w->position[r] = ++at->count;
         w->members[(*member)++] = r;
@@ -171,9 +171,9 @@ static bool take_stock(writer *w) {
         const tml_chain *chain = &molecule->chains[c];
         bool polymer_seen = false;
         for (int32_t r = chain->first_residue; r < chain->first_residue + chain->residue_count; r++) {
-            bool amino_acid = molecule->residues[r].amino_acid;
-            if (!amino_acid || !polymer_seen) add_strand(w, chain, amino_acid, r, &member);
-            polymer_seen = polymer_seen || amino_acid;
+            bool in_polymer = molecule->residues[r].polymer != TML_POLYMER_NONE;
+            if (!in_polymer || !polymer_seen) add_strand(w, chain, in_polymer, r, &member);
+            polymer_seen = polymer_seen || in_polymer;
         }
     }
     return true;

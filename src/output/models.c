@@ -46,7 +46,7 @@ tml_label tml_label_of(const tml_molecule *molecule, int32_t index, const char *
     tml_label label = {.chain = residue->chain[0] == '\0' ? bare_chain : residue->chain,
                        .name = residue->name[0] == '\0' ? "UNL" : residue->name,
                        .insertion = ' ',
-                       .standard = residue->amino_acid};
+                       .standard = residue->standard};
     if (residue->number[0] == '\0') {
         label.code = "1";
         label.number = 1;

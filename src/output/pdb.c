@@ -38,7 +38,7 @@ static void write_connections(const writer *w);
 /* Index of a chain's last amino acid, after which the polymer ends; -1 for none. */
 static int32_t polymer_end(const tml_molecule *molecule, const tml_chain *chain) {
     for (int32_t r = chain->first_residue + chain->residue_count - 1; r >= chain->first_residue; r--)
-        if (molecule->residues[r].amino_acid) return r;
+        if (molecule->residues[r].polymer != TML_POLYMER_NONE) return r;
     return -1;
 }
 
@@ -209,10 +209,10 @@ static void write_sequences(const writer *w) {
     for (int32_t c = 0; c < w->molecule->chain_count; c++) {
         const tml_chain *chain = &w->molecule->chains[c];
         int32_t total = 0, written = 0;
-        for (int32_t r = 0; r < chain->residue_count; r++) total += w->molecule->residues[chain->first_residue + r].amino_acid;
+        for (int32_t r = 0; r < chain->residue_count; r++) total += w->molecule->residues[chain->first_residue + r].polymer != TML_POLYMER_NONE;
         for (int32_t r = 0; r < chain->residue_count; r++) {
             const tml_residue *residue = &w->molecule->residues[chain->first_residue + r];
-            if (!residue->amino_acid) continue;
+            if (residue->polymer == TML_POLYMER_NONE) continue;
             if (written % IN_LINE == 0)
                 tml_file_print(w->file, "SEQRES %3d %s %4d  ", written / IN_LINE % MOST_NUMBERED + 1,
                                chain->code[0] != '\0' ? chain->code : w->bare_chain, total);
@@ -329,7 +329,7 @@ static int serial_of(const writer *w, int32_t atom) {
 static bool shown(const writer *w, int32_t bond) {
     const tml_bond *at = &w->molecule->bonds[bond];
     return tml_bond_links(w->molecule, w->is_peptide, bond) ||
-           !w->molecule->residues[w->molecule->atoms[at->a].residue].amino_acid;
+           w->molecule->residues[w->molecule->atoms[at->a].residue].polymer == TML_POLYMER_NONE;
 }
 
 /* Links, and all bonds of what is no standard residue. */

@@ -114,7 +114,7 @@ int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const cha
         *kind = TML_NAME_WILD;
         return collect(molecule, residue, name, pairs, atoms);
     }
-    if (!molecule->residues[residue].amino_acid) return 0;
+    if (molecule->residues[residue].polymer == TML_POLYMER_NONE) return 0;
     if (strcmp(name, "HN") == 0 || strcmp(name, "H") == 0) {
         *kind = TML_NAME_AMIDE;
         int32_t amide = tml_molecule_find_atom(molecule, residue, "H");
