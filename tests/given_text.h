@@ -11,7 +11,8 @@
 #include "input/problem.h"
 
 /* Read `length` bytes as one input; the caller frees the problem. */
-static inline tml_status read_bytes(const char *text, size_t length, tml_problem **problem, tml_error *error) {
+static inline tml_status read_bytes_as(const char *text, size_t length, const tml_read_options *options, tml_problem **problem,
+                                       tml_error *error) {
     char path[] = "/tmp/trammel-test-XXXXXX";
     int descriptor = mkstemp(path);
     cr_assert_geq(descriptor, 0);
@@ -19,9 +20,13 @@ static inline tml_status read_bytes(const char *text, size_t length, tml_problem
     close(descriptor);
     const char *paths[] = {path};
     memset(error, 0, sizeof *error);
-    tml_status status = tml_problem_read(paths, 1, problem, error);
+    tml_status status = tml_problem_read(paths, 1, options, problem, error);
     unlink(path);
     return status;
+}
+
+static inline tml_status read_bytes(const char *text, size_t length, tml_problem **problem, tml_error *error) {
+    return read_bytes_as(text, length, NULL, problem, error);
 }
 
 static inline tml_problem *read_good(const char *text) {
@@ -67,7 +72,7 @@ static inline tml_status problem_read_texts(const char *const texts[TEXTS_MOST],
         close(file);
         names[count] = paths[count];
     }
-    tml_status status = tml_problem_read(names, count, problem, error);
+    tml_status status = tml_problem_read(names, count, NULL, problem, error);
     for (size_t i = 0; i < count; i++) unlink(paths[i]);
     return status;
 }

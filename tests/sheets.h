@@ -21,7 +21,7 @@ static inline tml_problem *problem_from(const char *text) {
     cr_assert_not_null(file);
     fprintf(file, "sheet 1\n%s", text);
     fclose(file);
-    tml_status status = tml_problem_read(paths, 1, &problem, &error);
+    tml_status status = tml_problem_read(paths, 1, NULL, &problem, &error);
     unlink(path);
     cr_assert_eq(status, TML_OK, "%s", error.message);
     return problem;

@@ -162,7 +162,7 @@ Test(measure, distances_over_their_limits_are_counted_and_summed) {
                                         "limit A B 0 1.95\nlimit A C 0 1.85\nlimit A D 2.6 9\nlimit A E 0 2\n");
     const double xyz[] = {0, 0, 0, 2, 0, 0, 0, 2.1, 0, 0, 0, 2, 0, 0, -1};
     tml_measures m;
-    cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+    cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
     /* over by 0.05, 0.25 and, below, 0.6 */
     cr_assert(m.distance_over_01 == 2 && m.distance_over_02 == 2 && m.distance_over_05 == 1);
     cr_assert_float_eq(m.distance_max, 0.6, 1e-9);
@@ -183,7 +183,7 @@ Test(measure, dihedrals_are_measured_around_the_circle) {
         snprintf(text, sizeof text, "atom A bead\natom B bead\natom C bead\natom D bead\ndihedral A B C D %d %d\n", lower, upper);
         tml_problem *problem = problem_from(text);
         tml_measures m;
-        cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+        cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
         cr_assert_float_eq(m.dihedral_max, CASES[c].off, 1e-6, "%d to %d: %g", lower, upper, m.dihedral_max);
         cr_assert_eq(m.dihedral_over_5, CASES[c].off > 5);
         cr_assert_eq(m.dihedral_over_10, CASES[c].off > 10 + 1e-6);
@@ -198,15 +198,15 @@ Test(measure, hands_and_planes_are_seen) {
     double u[3] = {1, 0, -0.3}, v[3] = {0, 1, -0.3}, w[3] = {-1, -1, -0.3}, n[3];
     tml_cross(n, v, w);
     cr_assert_lt(tml_dot(u, n), 0);
-    cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+    cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
     cr_assert_eq(m.wrong_handed, 1);
     /* One point 0.3 above the plane of three about it: r.m.s. from the best plane is 0.3·√3/4. */
     cr_assert_float_eq(m.plane_max, 0.3 * sqrt(3) / 4, 1e-9);
     xyz[2] = -0.3;
-    cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+    cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
     cr_assert_eq(m.wrong_handed, 0);
     xyz[2] = 0; /* flat is no hand at all */
-    cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+    cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
     cr_assert_eq(m.wrong_handed, 1);
     tml_problem_free(problem);
 }
@@ -231,7 +231,7 @@ Test(measure, overlaps_equal_a_count_over_all_pairs) {
                 bool polar = (one == 7 || one == 8 || one == 16) && (other == 7 || other == 8 || other == 16);
                 if (one > 0 && other > 0) expected += tml_distance(&xyz[3 * i], &xyz[3 * j]) < reach - (polar ? 1.0 : 0.6);
             }
-        cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+        cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
         cr_assert_gt(expected, 50);
         cr_assert_eq(m.overlaps, expected);
         tml_problem_free(problem);
@@ -242,7 +242,7 @@ Test(measure, places_beyond_all_bounds_do_no_harm) {
     tml_problem *problem = problem_from("atom A C\natom B C\natom C C\nlimit A B 0 2\n");
     const double xyz[] = {1e300, -1e300, 0, NAN, 0, 0, INFINITY, 1e9, -1e12};
     tml_measures m;
-    cr_assert_eq(tml_measure(problem, xyz, &m, NULL), TML_OK);
+    cr_assert_eq(tml_measure(problem, NULL, xyz, &m, NULL), TML_OK);
     tml_problem_free(problem);
 }
 
@@ -428,7 +428,7 @@ Test(fragment, exactly_the_inner_restraints_are_kept_and_measure_the_same) {
         const tml_distance_restraint *old = &problem->restraints.distances[i], *fresh = &fragment->restraints.distances[at];
         if (strcmp(old->id, "in") != 0 && strcmp(old->id, "both") != 0) continue;
         cr_assert_str_eq(fresh->id, old->id);
-        cr_assert_float_eq(tml_restraint_distance(&fragment->restraints, fresh, part), tml_restraint_distance(&problem->restraints, old, xyz), 1e-12);
+        cr_assert_float_eq(tml_restraint_distance(&fragment->restraints, fresh, NULL, part), tml_restraint_distance(&problem->restraints, old, NULL, xyz), 1e-12);
         at++;
     }
     cr_assert_eq(at, 2);

@@ -147,7 +147,7 @@ static double violation(const char *statements) {
     snprintf(sheet, sizeof sheet, BEADS "%s", statements);
     tml_problem *p = read_good(sheet);
     for (int i = 0; i < 4; i++) cr_assert_eq(p->molecule.atoms[i].name[0], "ABCD"[i]);
-    double off = tml_distance_violation(&p->restraints, &p->restraints.distances[0], XYZ);
+    double off = tml_distance_violation(&p->restraints, &p->restraints.distances[0], NULL, XYZ);
     tml_problem_free(p);
     return off;
 }
@@ -185,7 +185,7 @@ Test(measures, the_combination_violated_least_counts_by_its_worst_row) {
         tml_error error;
         const char *texts[TEXTS_MOST] = {"sheet 1\natom X:1:A bead\natom X:1:B bead\natom X:1:C bead\natom X:1:D bead\n", CASES[i].nef};
         cr_assert_eq(problem_read_texts(texts, &p, &error), TML_OK, "%s", error.message);
-        cr_assert_float_eq(tml_distance_violation(&p->restraints, &p->restraints.distances[0], XYZ), CASES[i].off, 1e-12, "case %zu", i);
+        cr_assert_float_eq(tml_distance_violation(&p->restraints, &p->restraints.distances[0], NULL, XYZ), CASES[i].off, 1e-12, "case %zu", i);
         tml_problem_free(p);
     }
 }

@@ -137,11 +137,11 @@ Test(restraints, sums_averages_and_violations_are_as_computed_by_hand) {
     const double xyz[9] = {0, 0, 0, 2, 0, 0, 0, 4, 0};
     const tml_restraints *restraints = &problem->restraints;
     double sum = pow(pow(2, -6) + pow(4, -6), -1.0 / 6), mean = pow((pow(2, -6) + pow(4, -6)) / 2, -1.0 / 6);
-    cr_assert_float_eq(tml_restraint_distance(restraints, &restraints->distances[0], xyz), sum, 1e-12);
-    cr_assert_float_eq(tml_restraint_distance(restraints, &restraints->distances[2], xyz), mean, 1e-12);
-    cr_assert_float_eq(tml_distance_violation(restraints, &restraints->distances[0], xyz), sum - 1.5, 1e-12);
-    cr_assert_float_eq(tml_distance_violation(restraints, &restraints->distances[1], xyz), -1.0, 1e-12);
-    cr_assert_eq(tml_distance_violation(restraints, &restraints->distances[2], xyz), 0);
+    cr_assert_float_eq(tml_restraint_distance(restraints, &restraints->distances[0], NULL, xyz), sum, 1e-12);
+    cr_assert_float_eq(tml_restraint_distance(restraints, &restraints->distances[2], NULL, xyz), mean, 1e-12);
+    cr_assert_float_eq(tml_distance_violation(restraints, &restraints->distances[0], NULL, xyz), sum - 1.5, 1e-12);
+    cr_assert_float_eq(tml_distance_violation(restraints, &restraints->distances[1], NULL, xyz), -1.0, 1e-12);
+    cr_assert_eq(tml_distance_violation(restraints, &restraints->distances[2], NULL, xyz), 0);
     tml_problem_free(problem);
 }
 

@@ -67,12 +67,12 @@ static void make_model(model *m) {
 
     const int32_t groups[10] = {1, 2, 3, 9, 10, 4, 11, 6, 7, 8};
     memcpy(m->group_atoms, groups, sizeof groups);
-    m->alternatives[0] = (tml_alternative){0, 3, 3, 2, 6, -1, true}; /* {1,2,3} with {9,10} */
-    m->alternatives[1] = (tml_alternative){5, 1, 6, 1, 1, -1, true}; /* 4 with 11 */
-    m->alternatives[2] = (tml_alternative){7, 1, 3, 1, 1, 0, true};  /* 6 with 9 */
-    m->alternatives[3] = (tml_alternative){8, 1, 4, 1, 1, 0, true};  /* and 7 with 10 */
-    m->alternatives[4] = (tml_alternative){9, 1, 6, 1, 1, 1, true};  /* or 8 with 11 */
-    m->alternatives[5] = (tml_alternative){5, 1, 7, 2, 2, -1, true}; /* 4 with {6,7}, averaged */
+    m->alternatives[0] = (tml_alternative){0, 3, 3, 2, 6, -1, -1, -1, false, false}; /* {1,2,3} with {9,10} */
+    m->alternatives[1] = (tml_alternative){5, 1, 6, 1, 1, -1, -1, -1, false, false}; /* 4 with 11 */
+    m->alternatives[2] = (tml_alternative){7, 1, 3, 1, 1, 0, -1, -1, false, false};  /* 6 with 9 */
+    m->alternatives[3] = (tml_alternative){8, 1, 4, 1, 1, 0, -1, -1, false, false};  /* and 7 with 10 */
+    m->alternatives[4] = (tml_alternative){9, 1, 6, 1, 1, 1, -1, -1, false, false};  /* or 8 with 11 */
+    m->alternatives[5] = (tml_alternative){5, 1, 7, 2, 2, -1, -1, 0, false, true}; /* 4 with 7, or with 6 where the stereo pair is swapped; averaged */
     m->distances[0] = (tml_distance_restraint){.lower = 0, .upper = 1.8, .weight = 1, .first_alternative = 0, .alternative_count = 2,
                                                .pair_count = 7};
     m->distances[1] = (tml_distance_restraint){.lower = 9, .upper = INFINITY, .weight = 0.5, .first_alternative = 1,
@@ -89,7 +89,7 @@ static void make_model(model *m) {
     m->problem.restraints = (tml_restraints){.distances = m->distances, .distance_count = 4, .alternatives = m->alternatives,
                                              .alternative_count = 6, .group_atoms = m->group_atoms, .group_atom_count = 10,
                                              .dihedrals = m->dihedrals, .dihedral_count = 2, .intervals = m->intervals,
-                                             .interval_count = 3};
+                                             .interval_count = 3, .stereo_count = 1};
 }
 
 static void random_positions(double *xyz, uint64_t seed) {

@@ -68,12 +68,20 @@ typedef struct tml_counts {
     int32_t notes;                                    /* remarks on the inputs that are no errors */
 } tml_counts;
 
+/* How names in restraints are taken that leave something open. All zero is the default. */
+typedef struct tml_read_options {
+    bool sum_stereo_pairs; /* names with x and y mean both members of the pair, summed; otherwise every model takes the
+                              assignment of x and y that it violates least */
+} tml_read_options;
+
 /* Read inputs (sheet, NEF; told by content; "-" for standard input, gzip understood) into one problem.
  *
- * out   the caller frees it with tml_problem_free
+ * options   NULL for the defaults
+ * out       the caller frees it with tml_problem_free
  * Returns TML_OK, TML_BAD_INPUT, TML_TOO_LARGE, TML_NO_MEMORY or TML_IO.
  */
-tml_status tml_problem_read(const char *const *paths, size_t path_count, tml_problem **out, tml_error *error);
+tml_status tml_problem_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_problem **out,
+                            tml_error *error);
 void tml_problem_free(tml_problem *problem);
 
 void tml_problem_count(const tml_problem *problem, tml_counts *counts);

@@ -182,19 +182,22 @@ static double diameter(tml_graph *covalent, const int32_t *atoms, int32_t count)
 
 /* The rule: with N pairs in the sum, its upper limit binds the nearest pair to u·N^(1/6); any pair is farther by no more than
  * the two groups' diameters. A lower limit l of a sum holds for every pair; of an average of N
- * pairs, l·N^(-1/6) does. */
+ * pairs, l·N^(-1/6) does. Where a stereo pair is open, half of the pairs count and it is not known which: the limit on the
+ * nearest of all still holds, a lower one of any single pair does not. */
 static bool fill_alternative(filler *f, tml_graph *covalent, int32_t index, const tml_alternative *alternative, bool upper) {
     const tml_restraints *restraints = &f->problem->restraints;
     const tml_distance_restraint *restraint = &restraints->distances[index];
     const int32_t *a = &restraints->group_atoms[alternative->first_a], *b = &restraints->group_atoms[alternative->first_b];
     double pairs = restraint->combined ? alternative->pair_count : restraint->pair_count;
+    if (tml_alternative_open(alternative))
+        pairs = (double)(alternative->count_a / (alternative->stereo_a >= 0 ? 2 : 1)) * (alternative->count_b / (alternative->stereo_b >= 0 ? 2 : 1));
     double most = restraint->upper * (restraint->average ? 1 : pow(pairs, 1.0 / 6.0));
     if (upper && alternative->pair_count > 1) most += diameter(covalent, a, alternative->count_a) + diameter(covalent, b, alternative->count_b);
     double least = restraint->average && pairs > 1 ? restraint->lower * pow(pairs, -1.0 / 6.0) : restraint->lower;
     for (int32_t i = 0; i < alternative->count_a; i++)
         for (int32_t j = 0; j < alternative->count_b; j++) {
             if (upper && !add(f, a[i], b[j], most, true, TML_REASON_RESTRAINT, false, index)) return false;
-            if (least > 0 && !add(f, a[i], b[j], least, false, TML_REASON_RESTRAINT, false, index)) return false;
+            if (least > 0 && !tml_alternative_open(alternative) && !add(f, a[i], b[j], least, false, TML_REASON_RESTRAINT, false, index)) return false;
         }
     return true;
 }
@@ -222,7 +225,7 @@ static bool fill_restraints(filler *f) {
         bool lower = restraint->combined ? certain : true;
         for (int32_t k = 0; room && (certain || lower) && k < restraint->alternative_count; k++) {
             const tml_alternative *alternative = &restraints->alternatives[restraint->first_alternative + k];
-            room = fill_alternative(f, &covalent, i, alternative, certain && alternative->equivalent && !isinf(restraint->upper));
+            room = fill_alternative(f, &covalent, i, alternative, certain && !isinf(restraint->upper));
         }
     }
     tml_graph_close(&covalent);

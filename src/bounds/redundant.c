@@ -20,12 +20,15 @@ static tml_status bare_bounds(const tml_problem *problem, int threads, const tml
     return status;
 }
 
-/* The sum is least with every pair at its lower limit, and never above the nearest pair's upper one; an average never above the
- * farthest pair's. */
+/* The sum is least with every pair at its lower limit, and never above the nearest pair's upper one; an average, or a side of which
+ * it is open which half counts, never above the farthest pair's. */
 static reach reach_of(const tml_restraints *restraints, const tml_distance_restraint *restraint, const tml_bounds *bounds) {
     double sum = 0, nearest = INFINITY, farthest = 0;
+    bool any_open = false;
     for (int32_t k = 0; k < restraint->alternative_count; k++) {
         const tml_alternative *alternative = &restraints->alternatives[restraint->first_alternative + k];
+        double near = INFINITY, far = 0;
+        any_open = any_open || tml_alternative_open(alternative);
         for (int32_t i = 0; i < alternative->count_a; i++)
             for (int32_t j = 0; j < alternative->count_b; j++) {
                 int32_t a = restraints->group_atoms[alternative->first_a + i];
@@ -33,11 +36,13 @@ static reach reach_of(const tml_restraints *restraints, const tml_distance_restr
                 if (a == b) continue;
                 double lower = tml_bounds_lower(bounds, a, b), upper = tml_bounds_upper(bounds, a, b);
                 sum += lower > 0 ? pow(lower, -6.0) : INFINITY;
-                nearest = fmin(nearest, upper);
-                farthest = fmax(farthest, upper);
+                near = fmin(near, upper);
+                far = fmax(far, upper);
             }
+        nearest = fmin(nearest, tml_alternative_open(alternative) ? far : near);
+        farthest = fmax(farthest, far);
     }
-    if (restraint->average && restraint->pair_count > 0) sum /= restraint->pair_count;
+    if (restraint->average && !any_open && restraint->pair_count > 0) sum /= restraint->pair_count;
     return (reach){isinf(sum) ? 0.0 : pow(sum, -1.0 / 6.0), restraint->average ? farthest : nearest};
 }
 

@@ -16,13 +16,14 @@ static const char HELP[] =
     "  -o, --output FILE   write the table to FILE instead of standard output; .gz compresses\n"
     "  -t, --threads T     use T threads (default: all)\n"
     "      --strict        stop, without a table, when limits contradict each other or restraints name unknown atoms\n"
+    TML_READ_HELP
     "      --progress      tell the progress on standard error even if that is no terminal\n"
     "      --help          print this\n"
     "\n"
     "Where limits contradict each other, the blamed ones are loosened as far as their proofs need; 'trammel check' lists them.\n"
     "Exit status: 0 done, 1 contradictions, 2 bad input or usage, 3 the machine failed.\n";
 
-typedef struct settings { const char *output; int threads; bool strict, progress; } settings;
+typedef struct settings { const char *output; int threads; bool strict, progress; tml_read_options read; } settings;
 
 static int run_bounds(const tml_command *self, int argc, char **argv);
 const tml_command tml_command_bounds = {"bounds", "smoothed lower and upper limits of all pairs, as a table", HELP, run_bounds};
@@ -34,12 +35,18 @@ static int parse(const tml_command *self, int argc, char **argv, settings *set) 
                                             {"threads", required_argument, NULL, 't'},
                                             {"strict", no_argument, NULL, STRICT},
                                             {"progress", no_argument, NULL, PROGRESS},
+                                            TML_READ_OPTIONS,
                                             {"help", no_argument, NULL, TML_OPTION_HELP},
                                             {NULL, 0, NULL, 0}};
     long long number;
+    int status;
     for (;;) {
         int got = getopt_long(argc, argv, ":o:t:", OPTIONS, NULL);
         if (got == -1) return -1;
+        if (tml_cli_read_option(self, got, optarg, &set->read, &status)) {
+            if (status >= 0) return status;
+            continue;
+        }
         switch (got) {
         case 'o': set->output = optarg; break;
         case 't':
@@ -86,7 +93,7 @@ static int run_bounds(const tml_command *self, int argc, char **argv) {
     if (!tml_cli_output_good(self, set.output, inputs, count, &exit_status)) return exit_status;
     tml_watch watch = tml_cli_watch(set.progress);
     tml_problem *problem;
-    exit_status = tml_cli_read(inputs, count, set.strict, &problem);
+    exit_status = tml_cli_read(inputs, count, &set.read, set.strict, &problem);
     if (exit_status == TML_EXIT_DONE) exit_status = smooth_and_write(&set, problem, &watch);
     tml_problem_free(problem);
     return tml_cli_finish(exit_status);

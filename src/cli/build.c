@@ -29,6 +29,7 @@ static const char HELP[] =
     "      --backbone usual|free  draw phi and psi of proteins gently to their usual regions (default), or not at all\n"
     "      --dimensions 3|4     embed in 3 dimensions (default) or 4\n"
     "      --roots K            metrize the rows of K atoms only (default: all)\n"
+    TML_READ_HELP
     "      --progress           tell the progress on standard error even if that is no terminal\n"
     "      --help               print this\n"
     "\n"
@@ -39,6 +40,7 @@ typedef struct settings {
     const char *output, *summary;
     tml_format format; /* as asked for, then as found */
     bool compressed, progress;
+    tml_read_options read;
     tml_build_options build;
 } settings;
 
@@ -64,6 +66,7 @@ static const struct option OPTIONS[] = {{"output", required_argument, NULL, 'o'}
                                         {"dimensions", required_argument, NULL, DIMENSIONS},
                                         {"roots", required_argument, NULL, ROOTS},
                                         {"progress", no_argument, NULL, PROGRESS},
+                                        TML_READ_OPTIONS,
                                         {"help", no_argument, NULL, TML_OPTION_HELP},
                                         {NULL, 0, NULL, 0}};
 
@@ -72,7 +75,12 @@ static int parse(const tml_command *self, int argc, char **argv, settings *set) 
     for (;;) {
         int got = getopt_long(argc, argv, ":o:n:t:", OPTIONS, NULL);
         if (got == -1) return -1;
+        int status;
         if (got == TML_OPTION_HELP) return tml_cli_help(self);
+        if (tml_cli_read_option(self, got, optarg, &set->read, &status)) {
+            if (status >= 0) return status;
+            continue;
+        }
         if (got == '?' || got == ':') return tml_cli_bad_option(self, got, argv, OPTIONS);
         if (!take_option(self, got, optarg, set)) return TML_EXIT_USAGE;
     }
@@ -203,7 +211,7 @@ static int run_build(const tml_command *self, int argc, char **argv) {
     if (exit_status != TML_EXIT_DONE) return exit_status;
     tml_watch watch = tml_cli_watch(set.progress);
     tml_problem *problem;
-    exit_status = tml_cli_read(inputs, count, set.build.strict, &problem);
+    exit_status = tml_cli_read(inputs, count, &set.read, set.build.strict, &problem);
     if (exit_status == TML_EXIT_DONE) exit_status = build_and_write(&set, problem, &watch, started);
     tml_problem_free(problem);
     return tml_cli_finish(exit_status);

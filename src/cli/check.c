@@ -16,11 +16,12 @@ static const char HELP[] =
     "  -t, --threads T     use T threads (default: all)\n"
     "      --strict        a restraint that names unknown atoms is an error\n"
     "      --progress      tell the progress on standard error even if that is no terminal\n"
+    TML_READ_HELP
     "      --help          print this\n"
     "\n"
     "Exit status: 0 consistent, 1 contradictions, 2 bad input or usage, 3 the machine failed.\n";
 
-typedef struct settings { const char *json; int threads; bool strict, progress; } settings;
+typedef struct settings { const char *json; int threads; bool strict, progress; tml_read_options read; } settings;
 
 static int run_check(const tml_command *self, int argc, char **argv);
 const tml_command tml_command_check = {"check", "are the limits consistent, and if not, which ones fight", HELP, run_check};
@@ -32,12 +33,18 @@ static int parse(const tml_command *self, int argc, char **argv, settings *set) 
                                             {"threads", required_argument, NULL, 't'},
                                             {"strict", no_argument, NULL, STRICT},
                                             {"progress", no_argument, NULL, PROGRESS},
+                                            TML_READ_OPTIONS,
                                             {"help", no_argument, NULL, TML_OPTION_HELP},
                                             {NULL, 0, NULL, 0}};
     long long number;
+    int status;
     for (;;) {
         int got = getopt_long(argc, argv, ":t:", OPTIONS, NULL);
         if (got == -1) return -1;
+        if (tml_cli_read_option(self, got, optarg, &set->read, &status)) {
+            if (status >= 0) return status;
+            continue;
+        }
         switch (got) {
         case JSON: set->json = optarg; break;
         case 't':
@@ -81,7 +88,7 @@ static int run_check(const tml_command *self, int argc, char **argv) {
     if (!tml_cli_output_good(self, set.json, inputs, count, &exit_status)) return exit_status;
     tml_watch watch = tml_cli_watch(set.progress);
     tml_problem *problem;
-    exit_status = tml_cli_read(inputs, count, set.strict, &problem);
+    exit_status = tml_cli_read(inputs, count, &set.read, set.strict, &problem);
     if (exit_status == TML_EXIT_DONE) exit_status = smooth_and_report(&set, problem, &watch);
     tml_problem_free(problem);
     return tml_cli_finish(exit_status);

@@ -207,11 +207,20 @@ bool tml_cli_output_good(const tml_command *command, const char *path, char *con
     return false;
 }
 
-int tml_cli_read(char *const *inputs, int count, bool strict, tml_problem **out) {
+bool tml_cli_read_option(const tml_command *command, int got, const char *value, tml_read_options *options, int *status) {
+    if (got != TML_OPTION_STEREO) return false;
+    options->sum_stereo_pairs = strcmp(value, "sum") == 0;
+    *status = -1;
+    if (!options->sum_stereo_pairs && strcmp(value, "open") != 0)
+        *status = tml_cli_usage(command, "--stereo takes open or sum, not '%s'.", value);
+    return true;
+}
+
+int tml_cli_read(char *const *inputs, int count, const tml_read_options *options, bool strict, tml_problem **out) {
     tml_error error = {0};
     tml_problem *problem = NULL;
     *out = NULL;
-    if (tml_problem_read((const char *const *)inputs, (size_t)count, &problem, &error) != TML_OK) {
+    if (tml_problem_read((const char *const *)inputs, (size_t)count, options, &problem, &error) != TML_OK) {
         tml_problem_free(problem);
         return tml_cli_failed(&error);
     }

@@ -23,7 +23,15 @@ extern const tml_command tml_command_build, tml_command_check, tml_command_bound
 enum { TML_EXIT_DONE = 0, TML_EXIT_FINDING = 1, TML_EXIT_USAGE = 2, TML_EXIT_MACHINE = 3 };
 
 /* Long options that have no letter start here in the commands' getopt tables; --help is common to all. */
-enum { TML_OPTION_HELP = 1000, TML_OPTION_OWN };
+enum { TML_OPTION_HELP = 1000, TML_OPTION_STEREO, TML_OPTION_OWN };
+
+/* How inputs are read: options of every command that reads some. Entries for its getopt table, lines for its help, and their
+ * taking: *status is -1 to go on, or the exit status after a message. false where `got` is none of them. */
+#define TML_READ_OPTIONS {"stereo", required_argument, NULL, TML_OPTION_STEREO}
+#define TML_READ_HELP                                                                                                   \
+    "      --stereo open|sum    names with x and y, as HBx: every model takes the assignment of x and y that it violates\n"  \
+    "                           least (default), or both members of the pair count, summed\n"
+bool tml_cli_read_option(const tml_command *command, int got, const char *value, tml_read_options *options, int *status);
 
 enum { TML_CLI_THREADS_MOST = 1024 };
 
@@ -60,7 +68,7 @@ bool tml_cli_output_good(const tml_command *command, const char *path, char *con
 
 /* Read inputs into one problem; with `strict`, a restraint that names unknown atoms is an error. The exit status, after a
  * message if that is not TML_EXIT_DONE; *out is then NULL. */
-int tml_cli_read(char *const *inputs, int count, bool strict, tml_problem **out);
+int tml_cli_read(char *const *inputs, int count, const tml_read_options *options, bool strict, tml_problem **out);
 
 /* Watch the work: progress on standard error if it is a terminal or if `progress` is set; stops at SIGINT and SIGTERM. */
 tml_watch tml_cli_watch(bool progress);

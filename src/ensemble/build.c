@@ -15,6 +15,7 @@
 
 #include "base/clock.h"
 #include "base/memory.h"
+#include "base/vector.h"
 #include "embed/embed.h"
 #include "ensemble/cis.h"
 #include "ensemble/superpose.h"
@@ -101,7 +102,10 @@ tml_status tml_build(tml_problem *problem, const tml_build_options *options, con
         } else if (status == TML_OK) {
             status = tml_no_memory(error);
         }
-        for (int i = 0; work.models != NULL && i < work.trial_limit; i++) free(work.models[i].xyz);
+        for (int i = 0; work.models != NULL && i < work.trial_limit; i++) {
+            free(work.models[i].xyz);
+            free(work.models[i].swapped);
+        }
         free(work.models);
         free(work.ready);
     }
@@ -156,6 +160,7 @@ typedef struct bench {
     int32_t *order;        /* of the rows of distance */
     double *drawn;         /* coordinates in that order, up to four an atom */
     double *start, *spare; /* three an atom */
+    bool *swapped;         /* of the image in spare */
     tml_timing timing;
 } bench;
 
@@ -174,25 +179,60 @@ static tml_status place(const run *work, bench *tools, double *eigenvalues, tml_
     return status;
 }
 
-/* How far two models are from each other after superposition of their alpha carbons, or of all atoms where there are few, Å. */
+typedef struct gap { int32_t point; double distance; } gap;
+
+static int by_gap(const void *left, const void *right) {
+    const gap *l = left, *r = right;
+    if (l->distance != r->distance) return l->distance < r->distance ? -1 : 1;
+    return l->point < r->point ? -1 : l->point > r->point;
+}
+
+/* R.m.s. distance over those two thirds of some points that superpose best, Å: loose ends are apart in every two models. */
+static bool apart_at_best(const double *one, const double *other, int32_t *points, int32_t count, double *apart) {
+    enum { FITS = 10, FEWEST = 12 };
+    tml_motion motion;
+    int32_t kept = count < FEWEST ? count : (2 * count + 2) / 3, fitted = count;
+    gap *gaps = tml_alloc((size_t)count, sizeof *gaps);
+    if (gaps == NULL) return false;
+    *apart = tml_superpose(one, other, points, count, &motion);
+    for (int fit = 0; fit < FITS && kept < count; fit++) {
+        for (int32_t i = 0; i < count; i++) {
+            double moved[3];
+            memcpy(moved, &one[3 * points[i]], sizeof moved);
+            tml_motion_apply(&motion, moved, 1);
+            gaps[i] = (gap){points[i], tml_distance(moved, &other[3 * points[i]])};
+        }
+        qsort(gaps, (size_t)count, sizeof *gaps, by_gap);
+        for (int32_t i = 0; i < count; i++) points[i] = gaps[i].point;
+        double before = *apart;
+        *apart = tml_superpose(one, other, points, kept, &motion);
+        if (fitted == kept && *apart >= before - 1e-6) break;
+        fitted = kept;
+    }
+    free(gaps);
+    return true;
+}
+
+/* How far two models are from each other in what superposes best of their alpha carbons, or of all atoms where there are few, Å. */
 static tml_status images_apart(const tml_problem *problem, const double *one, const double *other, double *apart, tml_error *error) {
     const tml_molecule *molecule = &problem->molecule;
-    int32_t *alpha = tml_alloc((size_t)molecule->atom_count, sizeof *alpha), count = 0;
-    tml_motion motion;
-    if (alpha == NULL) return tml_no_memory(error);
+    int32_t *points = tml_alloc((size_t)molecule->atom_count, sizeof *points), count = 0;
+    if (points == NULL) return tml_no_memory(error);
     for (int32_t i = 0; i < molecule->atom_count; i++)
-        if (molecule->residues[molecule->atoms[i].residue].polymer == TML_POLYMER_PROTEIN && strcmp(molecule->atoms[i].name, "CA") == 0) alpha[count++] = i;
-    *apart = count < 4 ? tml_superpose(one, other, NULL, molecule->atom_count, &motion) : tml_superpose(one, other, alpha, count, &motion);
-    free(alpha);
-    return TML_OK;
+        if (molecule->residues[molecule->atoms[i].residue].polymer == TML_POLYMER_PROTEIN && strcmp(molecule->atoms[i].name, "CA") == 0) points[count++] = i;
+    if (count < 4)
+        for (count = 0; count < molecule->atom_count; count++) points[count] = count;
+    bool room = apart_at_best(one, other, points, count, apart);
+    free(points);
+    return room ? TML_OK : tml_no_memory(error);
 }
 
 /* One image of an embedding, refined and measured. */
 typedef struct image { double error; bool passed; tml_measures measures; } image;
 
-static tml_status improve(const run *work, tml_pcg *pcg, double *xyz, image *out, tml_error *error) {
-    tml_status status = tml_refine(work->refiner, work->options->effort, pcg, xyz, work->watch->stop, &out->error, error);
-    if (status == TML_OK) status = tml_measure(work->problem, xyz, &out->measures, error);
+static tml_status improve(const run *work, tml_pcg *pcg, double *xyz, bool *swapped, image *out, tml_error *error) {
+    tml_status status = tml_refine(work->refiner, work->options->effort, pcg, xyz, swapped, work->watch->stop, &out->error, error);
+    if (status == TML_OK) status = tml_measure(work->problem, swapped, xyz, &out->measures, error);
     out->passed = tml_measures_pass(&out->measures);
     return status;
 }
@@ -213,17 +253,18 @@ static tml_status try_images(const run *work, bench *tools, tml_pcg *pcg, bool b
     bool mirrored = tml_pcg_next(pcg) & 1;
     if (mirrored) reflect(tools->start, n);
     memcpy(model->xyz, tools->start, bytes);
-    tml_status status = improve(work, pcg, model->xyz, &first, error);
+    tml_status status = improve(work, pcg, model->xyz, model->swapped, &first, error);
     bool keep_first = true;
     if (status == TML_OK && (both || !first.passed)) {
         memcpy(tools->spare, tools->start, bytes);
         reflect(tools->spare, n);
-        status = improve(work, pcg, tools->spare, &second, error);
+        status = improve(work, pcg, tools->spare, tools->swapped, &second, error);
         keep_first = !better(second.passed, second.error, first.passed, first.error);
         if (status == TML_OK && both) status = images_apart(work->problem, model->xyz, tools->spare, &model->images_apart, error);
         model->both_passed = first.passed && second.passed;
         model->other_error = keep_first ? second.error : first.error;
         if (!keep_first) memcpy(model->xyz, tools->spare, bytes);
+        if (!keep_first) memcpy(model->swapped, tools->swapped, (size_t)work->problem->restraints.stereo_count * sizeof *model->swapped);
     }
     const image *kept = keep_first ? &first : &second;
     model->measures = kept->measures;
@@ -237,8 +278,9 @@ static tml_status try_once(const run *work, bench *tools, int trial, bool both, 
     const size_t n = (size_t)work->bounds->n;
     tml_pcg pcg;
     tml_pcg_seed_trial(&pcg, work->options->seed, (uint64_t)trial);
-    *model = (tml_model){.trial = trial, .xyz = tml_alloc(3 * n, sizeof *model->xyz), .other_error = NAN, .images_apart = NAN};
-    if (model->xyz == NULL) return tml_no_memory(error);
+    *model = (tml_model){.trial = trial, .xyz = tml_alloc(3 * n, sizeof *model->xyz), .other_error = NAN, .images_apart = NAN,
+                         .swapped = tml_alloc((size_t)work->problem->restraints.stereo_count, sizeof *model->swapped)};
+    if (model->xyz == NULL || model->swapped == NULL) return tml_no_memory(error);
     double t0 = tml_seconds();
     tml_status status = tml_metrize(work->bounds, work->options->metrize_roots > 0 ? work->options->metrize_roots : work->bounds->n,
                                     &pcg, tools->distance, tools->order, error);
@@ -300,8 +342,9 @@ static void work_on_trials(run *work) {
                    .order = tml_alloc(n, sizeof(int32_t)),
                    .drawn = tml_alloc(4 * n, sizeof(double)),
                    .start = tml_alloc(3 * n, sizeof(double)),
-                   .spare = tml_alloc(3 * n, sizeof(double))};
-    if (tools.distance == NULL || tools.order == NULL || tools.drawn == NULL || tools.start == NULL || tools.spare == NULL) {
+                   .spare = tml_alloc(3 * n, sizeof(double)),
+                   .swapped = tml_alloc((size_t)work->problem->restraints.stereo_count, sizeof(bool))};
+    if (tools.swapped == NULL || tools.distance == NULL || tools.order == NULL || tools.drawn == NULL || tools.start == NULL || tools.spare == NULL) {
 #pragma omp critical(tml_trials)
         work->status = tml_no_memory(&work->error);
     } else {
@@ -322,6 +365,7 @@ static void work_on_trials(run *work) {
     free(tools.drawn);
     free(tools.start);
     free(tools.spare);
+    free(tools.swapped);
 }
 
 static tml_status run_trials(run *work, int threads, tml_error *error) {
@@ -369,6 +413,9 @@ static tml_status keep_best(run *work, tml_ensemble *ensemble, tml_error *error)
     if (ensemble->models == NULL) return tml_no_memory(error);
     memcpy(ensemble->models, work->models, (size_t)count * sizeof *ensemble->models);
     ensemble->model_count = count;
-    for (int i = 0; i < count; i++) work->models[i].xyz = NULL;
+    for (int i = 0; i < count; i++) {
+        work->models[i].xyz = NULL;
+        work->models[i].swapped = NULL;
+    }
     return TML_OK;
 }

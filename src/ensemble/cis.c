@@ -85,24 +85,26 @@ static tml_status fold(const tml_problem *fragment, uint64_t seed, const volatil
     int32_t n = fragment->molecule.atom_count;
     tml_refiner *refiner = NULL;
     double *xyz = tml_alloc((size_t)n * 3, sizeof *xyz);
-    tml_status status = xyz == NULL ? tml_no_memory(error) : tml_refiner_new(fragment, false, &refiner, error);
+    bool *swapped = tml_alloc((size_t)fragment->restraints.stereo_count, sizeof *swapped);
+    tml_status status = xyz == NULL || swapped == NULL ? tml_no_memory(error) : tml_refiner_new(fragment, false, &refiner, error);
     *best = (outcome){.error = INFINITY, .restraint = -1};
     for (int start = 0; status == TML_OK && start < STARTS; start++) {
         double energy;
         tml_pcg pcg;
         tml_pcg_seed_trial(&pcg, ~seed, (uint64_t)start);
         for (int32_t i = 0; i < 3 * n; i++) xyz[i] = BOX * tml_pcg_uniform(&pcg);
-        status = tml_refine(refiner, EFFORT, &pcg, xyz, stop, &energy, error);
+        status = tml_refine(refiner, EFFORT, &pcg, xyz, swapped, stop, &energy, error);
         if (status != TML_OK || energy >= best->error) continue;
         *best = (outcome){.error = energy, .restraint = -1};
         for (int32_t i = 0; i < fragment->restraints.distance_count; i++) {
-            double off = fabs(tml_distance_violation(&fragment->restraints, &fragment->restraints.distances[i], xyz));
+            double off = fabs(tml_distance_violation(&fragment->restraints, &fragment->restraints.distances[i], swapped, xyz));
             if (off <= best->worst) continue;
             best->worst = off;
             best->restraint = i;
         }
     }
     free(xyz);
+    free(swapped);
     tml_refiner_free(refiner);
     return status;
 }

@@ -16,12 +16,14 @@ typedef struct tml_model {
     double eigenvalues[5]; /* of the embedding, Å² */
     double other_error;    /* the error of the embedding's other image, NAN where it was not refined */
     bool both_passed;      /* that image passed, too */
-    double images_apart;   /* how far the two ended from each other after superposition, Å; NAN where it was not looked at */
+    double images_apart;   /* how far the two ended from each other in the two thirds that superpose best, Å; NAN where it was not
+                              looked at */
+    bool *swapped;         /* per open stereo pair of the restraints: x is its second member; owned */
     tml_measures measures;
 } tml_model;
 
-/* Two models that superpose no better are different folds, Å. */
-#define TML_DIFFERENT_FOLD 4.0
+/* Two models whose best two thirds superpose no better are different folds, Å. */
+#define TML_DIFFERENT_FOLD 3.0
 
 /* Whether both images of the model's embedding passed and ended as different folds: the limits do not tell the hand. */
 static inline bool tml_model_hand_in_doubt(const tml_model *model) {
@@ -44,8 +46,8 @@ struct tml_ensemble {
     bool *well_defined;   /* per residue */
 };
 
-/* Measure one model against a problem; xyz holds atom_count*3 Å. Returns TML_OK or TML_NO_MEMORY. */
-tml_status tml_measure(const tml_problem *problem, const double *xyz, tml_measures *out, tml_error *error);
+/* Measure one model against a problem; xyz holds atom_count*3 Å; swapped as in restraint.h. Returns TML_OK or TML_NO_MEMORY. */
+tml_status tml_measure(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out, tml_error *error);
 
 /* Whether a trial passes: no distance over by 0.5 Å, no dihedral by 10°, no wrong hand, no undeclared cis peptide, no bond off
  * by more than 0.1 Å. */

@@ -153,6 +153,7 @@ static bool cut_distances(cut *c) {
     if (to->distances == NULL || to->alternatives == NULL || to->group_atoms == NULL) return false;
     /* Groups keep their places, so that alternatives need no change; those of atoms left out are not referred to. */
     to->group_atom_count = from->group_atom_count;
+    to->stereo_count = from->stereo_count;
     for (int32_t i = 0; i < from->group_atom_count; i++) to->group_atoms[i] = c->new_of[from->group_atoms[i]];
     for (int32_t i = 0; i < from->distance_count; i++) {
         const tml_distance_restraint *restraint = &from->distances[i];

@@ -17,16 +17,16 @@
 
 static const double DEGREES = 180.0 / TML_PI;
 
-static void measure_restraints(const tml_problem *problem, const double *xyz, tml_measures *out);
+static void measure_restraints(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out);
 static void measure_geometry(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static void measure_planes(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static void measure_peptides(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static bool measure_overlaps(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static bool measure_backbone(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 
-tml_status tml_measure(const tml_problem *problem, const double *xyz, tml_measures *out, tml_error *error) {
+tml_status tml_measure(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out, tml_error *error) {
     *out = (tml_measures){0};
-    measure_restraints(problem, xyz, out);
+    measure_restraints(problem, swapped, xyz, out);
     measure_geometry(&problem->molecule, xyz, out);
     measure_planes(&problem->molecule, xyz, out);
     measure_peptides(&problem->molecule, xyz, out);
@@ -42,11 +42,11 @@ bool tml_measures_pass(const tml_measures *measures) {
 
 /* ---- restraints ---- */
 
-static void measure_restraints(const tml_problem *problem, const double *xyz, tml_measures *out) {
+static void measure_restraints(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out) {
     const tml_restraints *restraints = &problem->restraints;
     double squares = 0;
     for (int32_t i = 0; i < restraints->distance_count; i++) {
-        double off = fabs(tml_distance_violation(restraints, &restraints->distances[i], xyz));
+        double off = fabs(tml_distance_violation(restraints, &restraints->distances[i], swapped, xyz));
         squares += off * off;
         out->distance_max = fmax(out->distance_max, off);
         out->distance_over_01 += off > 0.1;

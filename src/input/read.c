@@ -10,8 +10,11 @@
 
 static tml_status read_one(tml_draft *draft, const char *path, tml_error *error);
 
-tml_status tml_problem_read(const char *const *paths, size_t path_count, tml_problem **out, tml_error *error) {
+tml_status tml_problem_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_problem **out,
+                            tml_error *error) {
+    static const tml_read_options DEFAULTS = {0};
     *out = NULL;
+    if (options == NULL) options = &DEFAULTS;
     tml_problem *problem = tml_alloc(1, sizeof *problem);
     if (problem == NULL) return tml_no_memory(error);
     tml_draft draft = {.problem = problem};
@@ -20,7 +23,7 @@ tml_status tml_problem_read(const char *const *paths, size_t path_count, tml_pro
     tml_status status = problem->pool == NULL ? tml_no_memory(error) : TML_OK;
     for (size_t i = 0; status == TML_OK && i < path_count; i++) status = read_one(&draft, paths[i], error);
     if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, error);
-    if (status == TML_OK) status = tml_restraints_map(&draft.rows, problem, error);
+    if (status == TML_OK) status = tml_restraints_map(&draft.rows, options, problem, error);
     tml_outline_clear(&draft.outline);
     tml_rows_clear(&draft.rows);
     if (status != TML_OK) {

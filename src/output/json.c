@@ -125,6 +125,24 @@ static json_t *handedness(const tml_ensemble *ensemble) {
                      compared, "in_doubt", doubtful);
 }
 
+/* The open stereo pairs and, model by model, whether x is the second member. */
+static json_t *stereo_pairs(const tml_ensemble *ensemble) {
+    const tml_restraints *restraints = &ensemble->problem->restraints;
+    json_t *list = json_array();
+    for (int32_t p = 0; p < restraints->stereo_count; p++) {
+        const tml_stereo *pair = &restraints->stereo[p];
+        json_t *first = json_array(), *second = json_array(), *swapped = json_array();
+        for (int32_t k = pair->first_member; k < pair->first_member + pair->member_count; k++) {
+            append(&first, address(&ensemble->problem->molecule, restraints->stereo_members[k].first));
+            append(&second, address(&ensemble->problem->molecule, restraints->stereo_members[k].second));
+        }
+        for (int32_t m = 0; m < ensemble->model_count; m++)
+            append(&swapped, json_boolean(ensemble->models[m].swapped != NULL && ensemble->models[m].swapped[p]));
+        append(&list, json_pack("{s:o, s:o, s:o}", "first", first, "second", second, "x_is_second", swapped));
+    }
+    return list;
+}
+
 tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error) {
     const tml_problem *problem = ensemble->problem;
     const tml_timing *time = &ensemble->timing;
@@ -150,6 +168,7 @@ tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradi
     snprintf(seed, sizeof seed, "%llu", (unsigned long long)ensemble->seed);
     put(&root, "seed", ensemble->seed <= INT64_MAX ? json_integer((json_int_t)ensemble->seed) : json_string(seed));
     put(&root, "contradictions", findings(problem, found));
+    put(&root, "stereo_pairs", stereo_pairs(ensemble));
     put(&root, "notes", notes(problem));
     put(&root, "passing", json_string(tml_words_passing));
     return write_json(root, path, error);

@@ -161,7 +161,7 @@ static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_e
         for (int32_t m = 0; m < ensemble->model_count; m++) {
             const double *xyz = ensemble->models[m].xyz;
             double off = dihedral ? tml_dihedral_violation(restraints, &restraints->dihedrals[at.restraint], xyz) * 180.0 / TML_PI
-                                  : fabs(tml_distance_violation(restraints, &restraints->distances[at.restraint], xyz));
+                                  : fabs(tml_distance_violation(restraints, &restraints->distances[at.restraint], ensemble->models[m].swapped, xyz));
             at.models += off > (dihedral ? OVER_ANGLE : OVER);
             at.worst = fmax(at.worst, off);
         }
@@ -248,6 +248,38 @@ static void tell_cis(tml_file *file, const tml_molecule *molecule) {
     }
 }
 
+/* In how many models x is the second member of an open stereo pair. */
+static int32_t count_swapped(const tml_ensemble *ensemble, int32_t pair) {
+    int32_t swapped = 0;
+    for (int32_t m = 0; m < ensemble->model_count; m++)
+        swapped += ensemble->models[m].swapped != NULL && ensemble->models[m].swapped[pair];
+    return swapped;
+}
+
+/* Which open stereo pairs all models assign alike: "A:5:HB2", the atom that x is. */
+static void tell_stereo(tml_file *file, const tml_ensemble *ensemble) {
+    enum { SHOWN = 24 };
+    const tml_restraints *restraints = &ensemble->problem->restraints;
+    char all[SHOWN * NAMES] = "";
+    int32_t alike = 0;
+    size_t used = 0;
+    if (restraints->stereo_count == 0 || ensemble->model_count == 0) return;
+    for (int32_t p = 0; p < restraints->stereo_count; p++) {
+        int32_t swapped = count_swapped(ensemble, p);
+        const tml_stereo_member *member = &restraints->stereo_members[restraints->stereo[p].first_member];
+        char name[NAMES];
+        if ((swapped != 0 && swapped != ensemble->model_count) || alike++ >= SHOWN) continue;
+        tml_molecule_address(&ensemble->problem->molecule, swapped == 0 ? member->first : member->second, name, sizeof name);
+        used += (size_t)snprintf(all + used, sizeof all - used, "%s%s", used == 0 ? "" : ", ", name);
+    }
+    tml_file_print(file, "Of %d stereo pair%s named with x and y, %d %s assigned alike in all models", restraints->stereo_count,
+                   plural(restraints->stereo_count), alike, alike == 1 ? "is" : "are");
+    if (alike == 0)
+        tml_file_print(file, ".\n");
+    else
+        tml_file_paragraph(file, WIDTH, "; x is, or is on the branch of,\n  ", "  ", "%s%s", all, alike > SHOWN ? ", …; the summary has all." : ".");
+}
+
 static void tell_hands(tml_file *file, const tml_ensemble *ensemble) {
     int32_t mirrored = 0, doubtful = 0;
     for (int32_t m = 0; m < ensemble->model_count; m++) {
@@ -264,6 +296,7 @@ static void tell_hands(tml_file *file, const tml_ensemble *ensemble) {
                            "mirror image.",
                            doubtful);
     tell_cis(file, &ensemble->problem->molecule);
+    tell_stereo(file, ensemble);
 }
 
 /* ---- check ---- */

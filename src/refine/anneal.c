@@ -52,7 +52,7 @@ static const double STEP_AT_1000 = 0.012;
 static const double LONGEST = 0.4;
 /* Share of the way to the wanted kinetic energy that one step's rescaling goes. */
 static const double COUPLING = 0.2;
-enum { SETTLE_STEPS = 60 };
+enum { SETTLE_STEPS = 60, ASSIGN_EVERY = 50 };
 
 /* Every weight in `from` and `to` is a double; a table of their places keeps the interpolation in one loop. */
 static tml_weights between(const tml_weights *from, const tml_weights *to, double share) {
@@ -112,6 +112,7 @@ static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, 
             weights = between(plan->from, plan->to, share);
             weights.restraint *= crowd;
         }
+        if (step % ASSIGN_EVERY == 0) tml_scene_assign(scene, &weights);
         tml_status status = TML_OK;
         if (step % plan->look_every == 0) status = tml_scene_relist(scene, plan->skin);
         if (status != TML_OK) return status;

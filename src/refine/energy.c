@@ -224,46 +224,66 @@ INLINE void sum_push(const tml_sum_term *sum, const tml_pair *pairs, double effe
     }
 }
 
-INLINE double sums(const tml_refiner *refiner, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
+INLINE double sums(const tml_refiner *refiner, const tml_pair *pairs, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, effective, slope;
     for (int32_t i = 0; i < refiner->single_count; i++) {
         const tml_sum_term *sum = &refiner->sums[i];
-        double total = sum_of(sum, refiner->sum_pairs, x);
+        double total = sum_of(sum, pairs, x);
         if (total >= sum->least && total <= sum->most) continue;
         double e = sum_energy(sum, total, weights, &effective, &slope);
         if (slope == 0) continue;
         energy += e;
-        sum_push(sum, refiner->sum_pairs, effective, slope, x, f);
+        sum_push(sum, pairs, effective, slope, x, f);
     }
     return energy;
 }
 
+/* The combination of a choice that has the least error, -1 for none, and that error. */
+static int32_t best_combination(const tml_sum_term *first, int32_t count, const tml_pair *pairs, const tml_weights *weights,
+                                const tml_v4 *x, double *least) {
+    int32_t best = -1;
+    double effective, slope;
+    *least = INFINITY;
+    for (int32_t j = 0; j < count; j++) {
+        double whole = 0;
+        for (int32_t l = 0; l < count; l++)
+            if (first[l].combination == first[j].combination)
+                whole += sum_energy(&first[l], sum_of(&first[l], pairs, x), weights, &effective, &slope);
+        if (whole < *least) {
+            *least = whole;
+            best = first[j].combination;
+        }
+    }
+    return best;
+}
+
 /* The combination of least error counts, and only it pulls. */
-static double choices(const tml_refiner *refiner, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
-    double energy = 0, effective, slope;
+static double choices(const tml_refiner *refiner, const tml_pair *pairs, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
+    double energy = 0, least, effective, slope;
     for (int32_t i = 0; i < refiner->choice_count; i++) {
         const tml_sum_term *first = &refiner->sums[refiner->choices[i].first_sum];
-        int32_t count = refiner->choices[i].sum_count, best = -1;
-        double least = INFINITY;
-        for (int32_t j = 0; j < count; j++) {
-            double whole = 0;
-            for (int32_t l = 0; l < count; l++)
-                if (first[l].combination == first[j].combination)
-                    whole += sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), weights, &effective, &slope);
-            if (whole < least) {
-                least = whole;
-                best = first[j].combination;
-            }
-        }
+        int32_t count = refiner->choices[i].sum_count, best = best_combination(first, count, pairs, weights, x, &least);
         if (best < 0) continue;
         energy += least;
         for (int32_t l = 0; l < count; l++) {
             if (first[l].combination != best) continue;
-            sum_energy(&first[l], sum_of(&first[l], refiner->sum_pairs, x), weights, &effective, &slope);
-            if (slope != 0) sum_push(&first[l], refiner->sum_pairs, effective, slope, x, f);
+            sum_energy(&first[l], sum_of(&first[l], pairs, x), weights, &effective, &slope);
+            if (slope != 0) sum_push(&first[l], pairs, effective, slope, x, f);
         }
     }
     return energy;
+}
+
+double tml_energy_of_use(const tml_scene *scene, const tml_open_use *use, const tml_weights *weights) {
+    const tml_refiner *refiner = scene->refiner;
+    double energy, effective, slope;
+    if (use->sum >= 0) {
+        const tml_sum_term *sum = &refiner->sums[use->sum];
+        return sum_energy(sum, sum_of(sum, scene->sum_pairs, scene->x), weights, &effective, &slope);
+    }
+    const tml_choice_term *choice = &refiner->choices[use->choice];
+    int32_t best = best_combination(&refiner->sums[choice->first_sum], choice->sum_count, scene->sum_pairs, weights, scene->x, &energy);
+    return best < 0 ? 0 : energy;
 }
 
 /* ---- torsions ---- */
@@ -402,8 +422,8 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     energy += volumes(refiner->volumes, refiner->volume_count, weights->volume, x, f);
     energy += volumes(refiner->flats, refiner->flat_count, weights->flat, x, f);
     if (weights->plane > 0) energy += planes(&refiner->problem->molecule, weights->plane, x, f);
-    energy += sums(refiner, weights, x, f);
-    if (refiner->choice_count > 0) energy += choices(refiner, weights, x, f);
+    energy += sums(refiner, scene->sum_pairs, weights, x, f);
+    if (refiner->choice_count > 0) energy += choices(refiner, scene->sum_pairs, weights, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
     if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);
     if (weights->repulsion > 0) energy += repulsion(scene, weights->repulsion, weights->radius_scale, f);

@@ -17,10 +17,11 @@ void tml_refiner_free(tml_refiner *refiner);
  *
  * xyz       atom_count*3 Å: a start in three dimensions
  * effort    scales the number of annealing steps; 1 is the usual schedule
+ * swapped   for each open stereo pair of the restraints: whether x is its second member; NULL where they have none
  * error_out the error function at the end
  * Returns TML_OK, TML_NO_MEMORY or TML_INTERRUPTED. Same start and generator, same result.
  */
-tml_status tml_refine(const tml_refiner *refiner, double effort, tml_pcg *pcg, double *xyz, const volatile int *stop,
+tml_status tml_refine(const tml_refiner *refiner, double effort, tml_pcg *pcg, double *xyz, bool *swapped, const volatile int *stop,
                       double *error_out, tml_error *error);
 
 #endif

@@ -34,7 +34,12 @@ tml_status tml_scene_new(const tml_refiner *refiner, tml_scene **out, tml_error 
     scene->v = tml_alloc_aligned(count, sizeof *scene->v);
     scene->listed_at = tml_alloc_aligned(count, sizeof *scene->listed_at);
     scene->cells = tml_alloc(1, sizeof *scene->cells);
-    bool room = scene->x != NULL && scene->f != NULL && scene->v != NULL && scene->listed_at != NULL && scene->cells != NULL;
+    scene->sum_pairs = tml_alloc((size_t)refiner->sum_pair_count, sizeof *scene->sum_pairs);
+    scene->swapped = tml_alloc((size_t)refiner->problem->restraints.stereo_count, sizeof *scene->swapped);
+    bool room = scene->x != NULL && scene->f != NULL && scene->v != NULL && scene->listed_at != NULL && scene->cells != NULL &&
+                scene->sum_pairs != NULL && scene->swapped != NULL;
+    if (room && refiner->sum_pair_count > 0)
+        memcpy(scene->sum_pairs, refiner->sum_pairs, (size_t)refiner->sum_pair_count * sizeof *scene->sum_pairs);
     if (room) {
         struct tml_cells *cells = scene->cells;
         cells->cell_of = tml_alloc(count, sizeof *cells->cell_of);
@@ -77,6 +82,8 @@ void tml_scene_free(tml_scene *scene) {
     free(scene->listed_at);
     free(scene->near);
     free(scene->near_contact);
+    free(scene->sum_pairs);
+    free(scene->swapped);
     free(scene);
 }
 

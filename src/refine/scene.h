@@ -18,6 +18,8 @@ typedef struct tml_scene {
     size_t near_capacity, contact_capacity;
     double skin;             /* how much farther than contact the list reaches, Å; negative: no list */
     bool heavy_only;         /* hydrogens are left out of the list */
+    tml_pair *sum_pairs;     /* the refiner's, with the swapped stereo pairs' members exchanged */
+    bool *swapped;           /* per stereo pair of the restraints */
     struct tml_cells *cells; /* work space of neighbour.c */
 } tml_scene;
 
@@ -47,6 +49,13 @@ typedef struct tml_weights {
     double repulsion, radius_scale;          /* k·(scale·contact - d)² where closer */
     double backbone;                         /* height of the preference for usual phi and psi; 0 leaves it out */
 } tml_weights;
+
+/* Let every open stereo pair take the assignment of less error at the scene's positions, one after the other until none changes.
+ * Returns whether any did. */
+bool tml_scene_assign(tml_scene *scene, const tml_weights *weights);
+
+/* Energy of one restraint that hangs on a stereo pair, at the scene's positions and assignments. */
+double tml_energy_of_use(const tml_scene *scene, const tml_open_use *use, const tml_weights *weights);
 
 /* The error function at the scene's positions; forces (its negative gradient) go to scene->f. */
 double tml_energy(tml_scene *scene, const tml_weights *weights);

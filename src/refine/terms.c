@@ -60,6 +60,8 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->sums);
     free(refiner->sum_pairs);
     free(refiner->choices);
+    free(refiner->open_pairs);
+    free(refiner->open_uses);
     free(refiner->torsions);
     free(refiner->arcs);
     free(refiner->backbones);
@@ -174,7 +176,7 @@ static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, 
 
 /* ---- restraints ---- */
 
-typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices; } sum_builder;
+typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices, open, uses; } sum_builder; /* capacities */
 
 static bool sum_begin(sum_builder *builder, const tml_distance_restraint *restraint, int32_t combination) {
     tml_refiner *refiner = builder->refiner;
@@ -184,7 +186,8 @@ static bool sum_begin(sum_builder *builder, const tml_distance_restraint *restra
                                                          .upper = restraint->upper,
                                                          .weight = restraint->weight,
                                                          .share = 1.0,
-                                                         .combination = combination};
+                                                         .combination = combination,
+                                                         .first_open = refiner->open_pair_count};
     return true;
 }
 
@@ -195,13 +198,46 @@ static bool sum_add_pair(sum_builder *builder, int32_t a, int32_t b) {
     return true;
 }
 
-static bool sum_add(sum_builder *builder, const tml_alternative *alternative) {
-    const tml_restraints *restraints = &builder->refiner->problem->restraints;
-    for (int32_t i = 0; i < alternative->count_a; i++)
-        for (int32_t j = 0; j < alternative->count_b; j++) {
-            int32_t a = restraints->group_atoms[alternative->first_a + i], b = restraints->group_atoms[alternative->first_b + j];
-            if (a != b && !sum_add_pair(builder, a, b)) return false;
+/* Pairs of an alternative of which it is open what its names mean; the sides with every stereo pair swapped run beside. */
+static bool sum_add_open(sum_builder *builder, const tml_alternative *alternative, const tml_group *a, const tml_group *b) {
+    tml_refiner *refiner = builder->refiner;
+    int32_t shift_a = alternative->stereo_a < 0 ? 0 : alternative->second_a ? -a->count : a->count;
+    int32_t shift_b = alternative->stereo_b < 0 ? 0 : alternative->second_b ? -b->count : b->count;
+    for (int32_t i = 0; i < a->count; i++)
+        for (int32_t j = 0; j < b->count; j++) {
+            if (!tml_grow(&refiner->open_pairs, &builder->open, (size_t)refiner->open_pair_count + 1, sizeof *refiner->open_pairs))
+                return false;
+            const int32_t *x = &a->atoms[i], *y = &b->atoms[j];
+            refiner->open_pairs[refiner->open_pair_count++] =
+                (tml_open_pair){refiner->sum_pair_count, alternative->stereo_a, alternative->stereo_b, {x[0], x[shift_a]}, {y[0], y[shift_b]}};
+            if (!sum_add_pair(builder, *x, *y)) return false;
         }
+    return true;
+}
+
+/* swapped: nothing is; or NULL: names with x and y mean both members. */
+static bool sum_add(sum_builder *builder, const tml_alternative *alternative, const bool *swapped) {
+    tml_group a, b;
+    tml_alternative_sides(&builder->refiner->problem->restraints, alternative, swapped, &a, &b);
+    if (swapped != NULL && tml_alternative_open(alternative)) return sum_add_open(builder, alternative, &a, &b);
+    for (int32_t i = 0; i < a.count; i++)
+        for (int32_t j = 0; j < b.count; j++)
+            if (a.atoms[i] != b.atoms[j] && !sum_add_pair(builder, a.atoms[i], b.atoms[j])) return false;
+    return true;
+}
+
+/* Note which stereo pairs a single sum or a choice hangs on. */
+static bool note_uses(sum_builder *builder, const tml_distance_restraint *restraint, int32_t sum, int32_t choice) {
+    tml_refiner *refiner = builder->refiner;
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++) {
+        const tml_alternative *alternative = &refiner->problem->restraints.alternatives[k];
+        const int32_t stereo[2] = {alternative->stereo_a, alternative->stereo_b == alternative->stereo_a ? -1 : alternative->stereo_b};
+        for (int s = 0; s < 2; s++) {
+            if (stereo[s] < 0) continue;
+            if (!tml_grow(&refiner->open_uses, &builder->uses, (size_t)refiner->open_use_count + 1, sizeof *refiner->open_uses)) return false;
+            refiner->open_uses[refiner->open_use_count++] = (tml_open_use){stereo[s], sum, choice};
+        }
+    }
     return true;
 }
 
@@ -209,6 +245,7 @@ static bool sum_end(sum_builder *builder, bool average) {
     tml_refiner *refiner = builder->refiner;
     tml_sum_term *sum = &refiner->sums[refiner->sum_count - 1];
     sum->pair_count = refiner->sum_pair_count - sum->first_pair;
+    sum->open_count = refiner->open_pair_count - sum->first_open;
     if (average && sum->pair_count > 0) sum->share = 1.0 / sum->pair_count;
     sum->least = isinf(sum->upper) ? 0 : pow(sum->upper, -6) / sum->share;
     sum->most = sum->lower > 0 ? pow(sum->lower, -6) / sum->share : INFINITY;
@@ -217,17 +254,42 @@ static bool sum_end(sum_builder *builder, bool average) {
     return true;
 }
 
-/* One sum over all alternatives of a plain restraint. */
-static bool add_single(sum_builder *builder, const tml_distance_restraint *restraint) {
-    const tml_alternative *alternatives = &builder->refiner->problem->restraints.alternatives[restraint->first_alternative];
+/* A lower limit no longer than this, Å, twice the radius of hydrogen in Bondi, J. Phys. Chem. 68 (1964) 441, says that atoms do not
+ * overlap; that holds for both members of a stereo pair, whichever is x. */
+static const double CONTACT = 2.4;
+
+static bool floor_holds_for_both(const tml_distance_restraint *restraint, const tml_alternative *alternatives) {
+    bool any_open = false;
+    for (int32_t k = 0; k < restraint->alternative_count; k++) {
+        any_open = any_open || tml_alternative_open(&alternatives[k]);
+        if (alternatives[k].stereo_a >= 0 && alternatives[k].stereo_a == alternatives[k].stereo_b) return false;
+    }
+    return any_open && restraint->lower > 0 && restraint->lower <= CONTACT && !restraint->average;
+}
+
+static bool add_sum(sum_builder *builder, const tml_distance_restraint *restraint, const tml_alternative *alternatives,
+                    const bool *swapped) {
     if (!sum_begin(builder, restraint, -1)) return false;
     for (int32_t k = 0; k < restraint->alternative_count; k++)
-        if (!sum_add(builder, &alternatives[k])) return false;
+        if (!sum_add(builder, &alternatives[k], swapped)) return false;
     return sum_end(builder, restraint->average);
 }
 
+/* One sum over all alternatives of a plain restraint; a second one for a lower limit that both members of open pairs keep. */
+static bool add_single(sum_builder *builder, const tml_distance_restraint *restraint, const bool *none_swapped) {
+    const tml_alternative *alternatives = &builder->refiner->problem->restraints.alternatives[restraint->first_alternative];
+    tml_distance_restraint above = *restraint, below = *restraint;
+    if (floor_holds_for_both(restraint, alternatives)) {
+        above.lower = 0;
+        below.upper = INFINITY;
+        if (!add_sum(builder, &below, alternatives, NULL)) return false;
+    }
+    return add_sum(builder, &above, alternatives, none_swapped) &&
+           note_uses(builder, restraint, builder->refiner->sum_count - 1, -1);
+}
+
 /* One sum for each alternative of a combined restraint; an alternative outside combinations is one by itself. */
-static bool add_choice(sum_builder *builder, const tml_distance_restraint *restraint) {
+static bool add_choice(sum_builder *builder, const tml_distance_restraint *restraint, const bool *none_swapped) {
     tml_refiner *refiner = builder->refiner;
     const tml_alternative *alternatives = &refiner->problem->restraints.alternatives[restraint->first_alternative];
     if (!tml_grow(&refiner->choices, &builder->choices, (size_t)refiner->choice_count + 1, sizeof *refiner->choices)) return false;
@@ -236,22 +298,43 @@ static bool add_choice(sum_builder *builder, const tml_distance_restraint *restr
     choice->sum_count = restraint->alternative_count;
     for (int32_t k = 0; k < restraint->alternative_count; k++) {
         int32_t combination = alternatives[k].combination >= 0 ? alternatives[k].combination : restraint->alternative_count + k;
-        if (!sum_begin(builder, restraint, combination) || !sum_add(builder, &alternatives[k]) ||
+        if (!sum_begin(builder, restraint, combination) || !sum_add(builder, &alternatives[k], none_swapped) ||
             !sum_end(builder, restraint->average))
             return false;
     }
-    return true;
+    return note_uses(builder, restraint, -1, refiner->choice_count - 1);
+}
+
+static int by_stereo(const void *left, const void *right) {
+    const tml_open_use *l = left, *r = right;
+    if (l->stereo != r->stereo) return l->stereo < r->stereo ? -1 : 1;
+    if (l->sum != r->sum) return l->sum < r->sum ? -1 : 1;
+    return l->choice < r->choice ? -1 : l->choice > r->choice;
+}
+
+/* Sorted by stereo pair, each use once. */
+static void sort_uses(tml_refiner *refiner) {
+    int32_t kept = 0;
+    if (refiner->open_use_count == 0) return;
+    qsort(refiner->open_uses, (size_t)refiner->open_use_count, sizeof *refiner->open_uses, by_stereo);
+    for (int32_t i = 0; i < refiner->open_use_count; i++)
+        if (kept == 0 || by_stereo(&refiner->open_uses[kept - 1], &refiner->open_uses[i]) != 0)
+            refiner->open_uses[kept++] = refiner->open_uses[i];
+    refiner->open_use_count = kept;
 }
 
 static tml_status make_sums(tml_refiner *refiner, tml_error *error) {
     const tml_restraints *restraints = &refiner->problem->restraints;
     sum_builder builder = {.refiner = refiner};
-    for (int32_t i = 0; i < restraints->distance_count; i++)
-        if (!restraints->distances[i].combined && !add_single(&builder, &restraints->distances[i])) return tml_no_memory(error);
+    bool *none_swapped = tml_alloc((size_t)restraints->stereo_count, sizeof *none_swapped), room = none_swapped != NULL;
+    for (int32_t i = 0; room && i < restraints->distance_count; i++)
+        room = restraints->distances[i].combined || add_single(&builder, &restraints->distances[i], none_swapped);
     refiner->single_count = refiner->sum_count;
-    for (int32_t i = 0; i < restraints->distance_count; i++)
-        if (restraints->distances[i].combined && !add_choice(&builder, &restraints->distances[i])) return tml_no_memory(error);
-    return TML_OK;
+    for (int32_t i = 0; room && i < restraints->distance_count; i++)
+        room = !restraints->distances[i].combined || add_choice(&builder, &restraints->distances[i], none_swapped);
+    free(none_swapped);
+    sort_uses(refiner);
+    return room ? TML_OK : tml_no_memory(error);
 }
 
 static tml_status make_torsions(tml_refiner *refiner, tml_error *error) {

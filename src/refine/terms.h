@@ -23,7 +23,15 @@ typedef struct tml_sum_term {
     double share;                   /* 1, or 1 / number of pairs where the sum is an average */
     double least, most;             /* Σ r⁻⁶ between these: within both limits */
     int32_t combination;            /* within its choice */
+    int32_t first_open, open_count; /* its open pairs */
 } tml_sum_term;
+
+/* A pair of a sum whose ends depend on which member of a stereo pair (index, otherwise -1) is x: its place among the pairs, and
+ * its ends where that stereo pair is not swapped and where it is. */
+typedef struct tml_open_pair { int32_t at, stereo_a, stereo_b, a[2], b[2]; } tml_open_pair;
+
+/* That a single sum, or otherwise a choice, hangs on a stereo pair; the other index is -1. */
+typedef struct tml_open_use { int32_t stereo, sum, choice; } tml_open_use;
 
 /* A restraint whose alternatives carry combinations: sums [first_sum, first_sum + sum_count); the combination of least error
  * counts. */
@@ -49,8 +57,10 @@ struct tml_refiner {
     tml_volume_term *flats;    int32_t flat_count;   /* three arms, volume 0 */
     tml_sum_term *sums;        int32_t sum_count;    /* single restraints first, then those of choices */
     int32_t single_count;
-    tml_pair *sum_pairs;       int32_t sum_pair_count;
+    tml_pair *sum_pairs;       int32_t sum_pair_count; /* with no stereo pair swapped */
     tml_choice_term *choices;   int32_t choice_count;
+    tml_open_pair *open_pairs;  int32_t open_pair_count;
+    tml_open_use *open_uses;    int32_t open_use_count; /* by stereo pair */
     tml_torsion_term *torsions; int32_t torsion_count;
     tml_torsion_arc *arcs;             /* per dihedral interval */
     tml_basin basins[TML_BASINS];

@@ -3,7 +3,7 @@
  *   gathering     rows of one list and id, in the order of their first rows
  *   distances     alternatives, combinations, range
  *   dihedrals     intervals
- *   leftovers     unmapped restraints and notes
+ *   leftovers     unmapped restraints, open stereo pairs and notes
  */
 #include "restraint/map.h"
 
@@ -14,6 +14,7 @@
 
 #include "base/memory.h"
 #include "restraint/names.h"
+#include "restraint/stereo.h"
 
 static const double PI = 3.14159265358979323846;
 /* A limit beyond this is as good as none, Å. */
@@ -28,7 +29,9 @@ typedef struct map {
     tml_error *error;
     size_t distances, alternatives, groups, dihedrals, intervals, unmapped; /* capacities */
     int64_t pairs;          /* so far */
-    int32_t *atoms_a, *atoms_b; /* room for the largest residue each */
+    struct side { int32_t *atoms, count, *members, half; bool open, second; } a, b; /* room for the largest residue each */
+    tml_stereo_book book;
+    bool keep_open; /* x and y are left open */
     bool pseudo_noted, amide_noted;
     char why[512];    /* why the latest row names nothing */
     char reason[512]; /* the same of the restraint's first such row, "" for none */
@@ -40,16 +43,22 @@ typedef struct gathering { int32_t *order, *first; int32_t count; } gathering;
 static bool make_room(map *m);
 static tml_status map_distances(map *m);
 static tml_status map_dihedrals(map *m);
+static tml_status note_open(map *m);
 
-tml_status tml_restraints_map(const tml_rows *rows, tml_problem *problem, tml_error *error) {
-    map m = {.rows = rows, .problem = problem, .out = &problem->restraints, .error = error};
+tml_status tml_restraints_map(const tml_rows *rows, const tml_read_options *options, tml_problem *problem, tml_error *error) {
+    map m = {.rows = rows, .problem = problem, .out = &problem->restraints, .error = error, .keep_open = !options->sum_stereo_pairs};
     if (rows->distance_count > INT32_MAX / 2 || rows->dihedral_count > INT32_MAX / 2)
         return tml_fail(error, TML_TOO_LARGE, "too many restraint rows");
     tml_status status = make_room(&m) ? TML_OK : tml_no_memory(error);
     if (status == TML_OK) status = map_distances(&m);
     if (status == TML_OK) status = map_dihedrals(&m);
-    free(m.atoms_a);
-    free(m.atoms_b);
+    if (status == TML_OK) status = note_open(&m);
+    tml_stereo_close(&m.book);
+    struct side *sides[] = {&m.a, &m.b};
+    for (int k = 0; k < 2; k++) {
+        free(sides[k]->atoms);
+        free(sides[k]->members);
+    }
     return status;
 }
 
@@ -58,9 +67,13 @@ static bool make_room(map *m) {
     int32_t most = 1;
     for (int32_t i = 0; i < molecule->residue_count; i++)
         if (molecule->residues[i].atom_count > most) most = molecule->residues[i].atom_count;
-    m->atoms_a = tml_alloc((size_t)most, sizeof *m->atoms_a);
-    m->atoms_b = tml_alloc((size_t)most, sizeof *m->atoms_b);
-    return m->atoms_a != NULL && m->atoms_b != NULL;
+    struct side *sides[] = {&m->a, &m->b};
+    for (int k = 0; k < 2; k++) {
+        sides[k]->atoms = tml_alloc((size_t)most, sizeof *sides[k]->atoms);
+        sides[k]->members = tml_alloc((size_t)most, sizeof *sides[k]->members);
+        if (sides[k]->atoms == NULL || sides[k]->members == NULL) return false;
+    }
+    return tml_stereo_open(&m->book, molecule, m->out);
 }
 
 static tml_status fail_at(map *m, tml_status status, tml_place place, const char *text) {
@@ -147,11 +160,13 @@ static void gathering_clear(gathering *g) {
 
 /* ---- addresses ---- */
 
-/* Atoms of one address into `atoms`; none with the reason in m->why. */
-static tml_status resolve(map *m, const tml_address *address, int32_t *atoms, int32_t *count) {
+/* Atoms of one address into `side`; none with the reason in m->why. */
+static tml_status resolve(map *m, const tml_address *address, struct side *side) {
     const tml_molecule *molecule = &m->problem->molecule;
     int32_t residue = tml_molecule_locate_residue(molecule, address->chain, address->number, m->why, sizeof m->why);
+    int32_t *atoms = side->atoms, *count = &side->count;
     *count = 0;
+    side->open = false;
     if (residue < 0) return TML_OK;
     if (*address->residue != '\0' && strcmp(address->residue, molecule->residues[residue].name) != 0) {
         snprintf(m->why, sizeof m->why, "%.32s:%.32s is %.32s in the sequence, %.32s in the restraint", address->chain, address->number,
@@ -160,6 +175,9 @@ static tml_status resolve(map *m, const tml_address *address, int32_t *atoms, in
     }
     tml_name_kind kind;
     *count = tml_names_match(molecule, residue, address->atom, atoms, &kind);
+    side->open = m->keep_open && kind == TML_NAME_WILD && *count > 1 &&
+                 tml_names_stereo(molecule, residue, address->atom, side->members, &side->half, &side->second) &&
+                 *count == 2 * side->half;
     if (*count == 0) tml_molecule_suggest(molecule, residue, address->atom, m->why, sizeof m->why);
     if (*count > 0 && kind == TML_NAME_PSEUDO && !m->pseudo_noted) {
         m->pseudo_noted = true;
@@ -220,13 +238,36 @@ static int32_t shared_atoms(const int32_t *a, int32_t count_a, const int32_t *b,
     return shared;
 }
 
-/* The pairs of the two groups in m->atoms_a and m->atoms_b. *whole turns false where there is none. */
-static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t count_a, int32_t count_b, int32_t combination, bool *whole) {
-    int32_t same = shared_atoms(m->atoms_a, count_a, m->atoms_b, count_b);
-    int64_t pairs = (int64_t)count_a * count_b - same;
+/* Sides with atoms in common cannot be left open, but for the two members of one pair, which never meet. */
+static void settle_open(struct side *a, struct side *b, int32_t same) {
+    bool partners = a->open && b->open && a->half == b->half && a->second != b->second &&
+                    memcmp(a->members, b->members, 2 * (size_t)a->half * sizeof *a->members) == 0;
+    if (same == 0 || partners) return;
+    a->open = b->open = false;
+}
+
+/* One side into the group array, *first its place there; *stereo and *second tell of its open pair. false without memory. */
+static bool add_side(map *m, const struct side *side, int32_t *first, int32_t *stereo, bool *second) {
+    *first = add_group(m, side->open ? side->members : side->atoms, side->count);
+    *stereo = -1;
+    *second = false;
+    if (*first < 0) return false;
+    if (!side->open) return true;
+    bool reversed;
+    *stereo = tml_stereo_pair(&m->book, side->members, side->half, &reversed);
+    *second = side->second != reversed;
+    return *stereo >= 0;
+}
+
+/* The pairs of the two groups in m->a and m->b. *whole turns false where there is none. */
+static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t combination, bool *whole) {
+    struct side a = m->a, b = m->b;
+    int32_t same = shared_atoms(a.atoms, a.count, b.atoms, b.count);
+    int64_t pairs = (int64_t)a.count * b.count - same;
+    settle_open(&a, &b, same);
     if (pairs == 0) {
         char address[128];
-        tml_molecule_address(&m->problem->molecule, m->atoms_a[0], address, sizeof address);
+        tml_molecule_address(&m->problem->molecule, a.atoms[0], address, sizeof address);
         snprintf(m->why, sizeof m->why, "%s: both sides name the same atom", address);
         *whole = false;
         return TML_OK;
@@ -235,10 +276,10 @@ static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t c
     if (m->pairs > MOST_PAIRS) return fail_at(m, TML_TOO_LARGE, row->place, "up to here the restraints run over more than 33 million pairs of atoms");
     if (!tml_grow(&m->out->alternatives, &m->alternatives, (size_t)m->out->alternative_count + 1, sizeof *m->out->alternatives))
         return tml_no_memory(m->error);
-    int32_t first_a = add_group(m, m->atoms_a, count_a), first_b = first_a < 0 ? -1 : add_group(m, m->atoms_b, count_b);
-    if (first_b < 0) return tml_no_memory(m->error);
-    m->out->alternatives[m->out->alternative_count++] =
-        (tml_alternative){first_a, count_a, first_b, count_b, (int32_t)pairs, combination, true};
+    tml_alternative made = {.count_a = a.count, .count_b = b.count, .pair_count = (int32_t)pairs, .combination = combination};
+    if (!add_side(m, &a, &made.first_a, &made.stereo_a, &made.second_a) || !add_side(m, &b, &made.first_b, &made.stereo_b, &made.second_b))
+        return tml_no_memory(m->error);
+    m->out->alternatives[m->out->alternative_count++] = made;
     return TML_OK;
 }
 
@@ -249,13 +290,12 @@ static tml_status add_row(map *m, const tml_distance_row *row, int32_t combinati
     tml_status status = TML_OK;
     *whole = true;
     for (int32_t i = 0; status == TML_OK && i < row->count_a; i++) {
-        int32_t count_a, count_b;
-        status = resolve(m, &addresses[row->first_a + i], m->atoms_a, &count_a);
-        if (count_a == 0) *whole = false;
-        for (int32_t j = 0; status == TML_OK && count_a > 0 && j < row->count_b; j++) {
-            status = resolve(m, &addresses[row->first_b + j], m->atoms_b, &count_b);
-            if (count_b == 0) *whole = false;
-            if (status == TML_OK && count_b > 0) status = add_alternative(m, row, count_a, count_b, combination, whole);
+        status = resolve(m, &addresses[row->first_a + i], &m->a);
+        if (m->a.count == 0) *whole = false;
+        for (int32_t j = 0; status == TML_OK && m->a.count > 0 && j < row->count_b; j++) {
+            status = resolve(m, &addresses[row->first_b + j], &m->b);
+            if (m->b.count == 0) *whole = false;
+            if (status == TML_OK && m->b.count > 0) status = add_alternative(m, row, combination, whole);
             if (!*whole) keep_reason(m);
         }
         if (!*whole) keep_reason(m);
@@ -384,9 +424,8 @@ static tml_status add_interval(map *m, const tml_dihedral_row *row, bool *whole,
     if (!(row->weight >= 0) || isinf(row->weight)) return fail_at(m, TML_BAD_INPUT, row->place, "a weight must be 0 or more");
     if (fabs(row->lower) > 1e6 || fabs(row->upper) > 1e6) return fail_at(m, TML_BAD_INPUT, row->place, "a dihedral limit beyond 1,000,000°");
     for (int k = 0; k < 4; k++) {
-        const int32_t *atoms = m->atoms_a;
-        int32_t count;
-        tml_status status = resolve(m, &row->atoms[k], m->atoms_a, &count);
+        tml_status status = resolve(m, &row->atoms[k], &m->a);
+        const int32_t *atoms = m->a.atoms, count = m->a.count;
         if (status != TML_OK) return status;
         if (count > 1) snprintf(m->why, sizeof m->why, "%.32s means %d atoms; a dihedral needs one", row->atoms[k].atom, count);
         if (count != 1) {
@@ -447,4 +486,13 @@ static tml_status map_dihedrals(map *m) {
     for (int32_t k = 0; status == TML_OK && k < g.count; k++) status = map_dihedral(m, &g.order[g.first[k]], g.first[k + 1] - g.first[k]);
     gathering_clear(&g);
     return status;
+}
+
+/* ---- open stereo pairs ---- */
+
+static tml_status note_open(map *m) {
+    if (m->out->stereo_count == 0) return TML_OK;
+    return tml_problem_add_note(m->problem, (tml_place){-1, 0, 0}, m->error,
+                                "%d stereo pair%s named with x and y; each model takes the assignment that it violates least",
+                                m->out->stereo_count, m->out->stereo_count == 1 ? " is" : "s are");
 }

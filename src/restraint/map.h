@@ -11,6 +11,6 @@
  * Returns TML_OK, TML_BAD_INPUT (an upper limit below its lower, a negative distance or weight …), TML_TOO_LARGE or
  * TML_NO_MEMORY.
  */
-tml_status tml_restraints_map(const tml_rows *rows, tml_problem *problem, tml_error *error);
+tml_status tml_restraints_map(const tml_rows *rows, const tml_read_options *options, tml_problem *problem, tml_error *error);
 
 #endif

@@ -126,3 +126,56 @@ int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const cha
     *kind = TML_NAME_PSEUDO;
     return pseudo_atoms(molecule, residue, name, atoms);
 }
+
+/* ---- stereo pairs ---- */
+
+/* The heavy atom that a member stands on: itself, or what holds a hydrogen. */
+static int32_t carrier_of(const tml_molecule *molecule, int32_t atom) {
+    int32_t first = molecule->neighbour_first[atom];
+    return molecule->atoms[atom].element != 1 || first == molecule->neighbour_first[atom + 1] ? atom : molecule->neighbours[first];
+}
+
+/* Whether two atoms have a neighbour in common, and neighbours of the same elements: CG1 and CG2 of Val, not CD1 and CD2 of Trp. */
+static bool are_alike(const tml_molecule *molecule, int32_t a, int32_t b) {
+    int32_t elements[UINT8_MAX + 1] = {0};
+    bool common = false;
+    if (molecule->atoms[a].element != molecule->atoms[b].element) return false;
+    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++) {
+        elements[molecule->atoms[molecule->neighbours[k]].element]++;
+        for (int32_t l = molecule->neighbour_first[b]; l < molecule->neighbour_first[b + 1]; l++)
+            common = common || molecule->neighbours[k] == molecule->neighbours[l];
+    }
+    for (int32_t l = molecule->neighbour_first[b]; l < molecule->neighbour_first[b + 1]; l++)
+        elements[molecule->atoms[molecule->neighbours[l]].element]--;
+    for (int e = 0; e <= UINT8_MAX; e++)
+        if (elements[e] != 0) return false;
+    return common;
+}
+
+static bool is_stereo_pair(const tml_molecule *molecule, const int32_t *one, const int32_t *other, int32_t count) {
+    int32_t first = carrier_of(molecule, one[0]), second = carrier_of(molecule, other[0]);
+    for (int32_t k = 0; k < count; k++)
+        if (carrier_of(molecule, one[k]) != first || carrier_of(molecule, other[k]) != second) return false;
+    return first == second ? count == 1 : are_alike(molecule, first, second);
+}
+
+bool tml_names_stereo(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, int32_t *half, bool *second) {
+    static const char *const MARKS[] = {"1", "2", "3", "'", "''"};
+    char pattern[LONGEST + 4];
+    size_t at = strcspn(name, "xy");
+    if (!has_pair_letter(name) || strlen(name) > LONGEST || strpbrk(name + at + 1, "xy") != NULL) return false;
+    if (tml_molecule_find_atom(molecule, residue, name) >= 0) return false;
+    int32_t counts[2] = {0}, members = 0;
+    for (size_t m = 0; m < sizeof MARKS / sizeof *MARKS; m++) {
+        snprintf(pattern, sizeof pattern, "%.*s%s%s", (int)at, name, MARKS[m], name + at + 1);
+        int32_t *into = atoms + (members > 0 ? counts[0] : 0) + (members > 1 ? counts[1] : 0);
+        int32_t count = collect(molecule, residue, pattern, false, into);
+        if (count == 0) continue;
+        if (members == 2) return false;
+        counts[members++] = count;
+    }
+    if (members != 2 || counts[0] != counts[1]) return false;
+    *half = counts[0];
+    *second = name[at] == 'y';
+    return is_stereo_pair(molecule, atoms, atoms + *half, *half);
+}

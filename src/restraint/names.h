@@ -14,4 +14,9 @@ typedef enum tml_name_kind { TML_NAME_EXACT, TML_NAME_WILD, TML_NAME_PSEUDO, TML
  * residue. *kind tells by which rule; TML_NAME_AMIDE is H or HN for the first hydrogen of a charged N terminus, or HN for H. */
 int32_t tml_names_match(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, tml_name_kind *kind);
 
+/* The two members of the stereo pair that a name with one x or y means: `half` atoms of the first, then as many of the second in
+ * the same order; *second tells that the name has y. false where the name means no such pair: the atoms are then those of
+ * tml_names_match alone. `atoms` has room for all atoms of the residue. */
+bool tml_names_stereo(const tml_molecule *molecule, int32_t residue, const char *name, int32_t *atoms, int32_t *half, bool *second);
+
 #endif

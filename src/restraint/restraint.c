@@ -14,17 +14,35 @@ void tml_restraints_clear(tml_restraints *restraints) {
     free(restraints->dihedrals);
     free(restraints->intervals);
     free(restraints->unmapped);
+    free(restraints->stereo);
+    free(restraints->stereo_members);
     *restraints = (tml_restraints){0};
 }
 
-/* Σ r⁻⁶ over one alternative's pairs. */
-static double sum_over(const tml_restraints *restraints, const tml_alternative *alternative, const double *xyz) {
+static tml_group side(const tml_restraints *restraints, int32_t first, int32_t count, int32_t stereo, bool second, const bool *swapped) {
+    const int32_t *atoms = &restraints->group_atoms[first];
+    if (stereo < 0 || swapped == NULL) return (tml_group){atoms, count};
+    return (tml_group){second != swapped[stereo] ? atoms + count / 2 : atoms, count / 2};
+}
+
+void tml_alternative_sides(const tml_restraints *restraints, const tml_alternative *alternative, const bool *swapped, tml_group *a,
+                           tml_group *b) {
+    *a = side(restraints, alternative->first_a, alternative->count_a, alternative->stereo_a, alternative->second_a, swapped);
+    *b = side(restraints, alternative->first_b, alternative->count_b, alternative->stereo_b, alternative->second_b, swapped);
+}
+
+/* Σ r⁻⁶ over one alternative's pairs, whose number is added to *pairs. */
+static double sum_over(const tml_restraints *restraints, const tml_alternative *alternative, const bool *swapped, const double *xyz,
+                       int64_t *pairs) {
     double sum = 0;
-    for (int32_t i = 0; i < alternative->count_a; i++)
-        for (int32_t j = 0; j < alternative->count_b; j++) {
-            int32_t a = restraints->group_atoms[alternative->first_a + i], b = restraints->group_atoms[alternative->first_b + j];
+    tml_group one, other;
+    tml_alternative_sides(restraints, alternative, swapped, &one, &other);
+    for (int32_t i = 0; i < one.count; i++)
+        for (int32_t j = 0; j < other.count; j++) {
+            int32_t a = one.atoms[i], b = other.atoms[j];
             double d[3];
             if (a == b) continue;
+            ++*pairs;
             tml_sub(d, &xyz[3 * a], &xyz[3 * b]);
             double square = tml_dot(d, d);
             sum += 1.0 / (square * square * square);
@@ -32,31 +50,36 @@ static double sum_over(const tml_restraints *restraints, const tml_alternative *
     return sum;
 }
 
-double tml_alternative_distance(const tml_restraints *restraints, const tml_alternative *alternative, bool average, const double *xyz) {
-    double sum = sum_over(restraints, alternative, xyz);
-    return pow(average ? sum / alternative->pair_count : sum, -1.0 / 6.0);
+double tml_alternative_distance(const tml_restraints *restraints, const tml_alternative *alternative, bool average, const bool *swapped,
+                                const double *xyz) {
+    int64_t pairs = 0;
+    double sum = sum_over(restraints, alternative, swapped, xyz, &pairs);
+    return pow(average ? sum / (double)pairs : sum, -1.0 / 6.0);
 }
 
-double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz) {
+double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
+                              const double *xyz) {
     double sum = 0;
+    int64_t pairs = 0;
     for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++)
-        sum += sum_over(restraints, &restraints->alternatives[k], xyz);
-    return pow(restraint->average ? sum / restraint->pair_count : sum, -1.0 / 6.0);
+        sum += sum_over(restraints, &restraints->alternatives[k], swapped, xyz, &pairs);
+    return pow(restraint->average ? sum / (double)pairs : sum, -1.0 / 6.0);
 }
 
 static double beyond(const tml_distance_restraint *restraint, double distance) {
     return distance > restraint->upper ? distance - restraint->upper : distance < restraint->lower ? distance - restraint->lower : 0;
 }
 
-double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz) {
-    if (!restraint->combined) return beyond(restraint, tml_restraint_distance(restraints, restraint, xyz));
+double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
+                              const double *xyz) {
+    if (!restraint->combined) return beyond(restraint, tml_restraint_distance(restraints, restraint, swapped, xyz));
     const tml_alternative *alternatives = &restraints->alternatives[restraint->first_alternative];
     double least = INFINITY;
     for (int32_t k = 0, count = restraint->alternative_count; k < count;) {
         int32_t combination = alternatives[k].combination;
         double worst = 0; /* of the alternatives that must hold together */
         do {
-            double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k++], restraint->average, xyz));
+            double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k++], restraint->average, swapped, xyz));
             if (fabs(off) > fabs(worst)) worst = off;
         } while (combination >= 0 && k < count && alternatives[k].combination == combination);
         if (fabs(worst) < fabs(least)) least = worst;

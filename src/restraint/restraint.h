@@ -4,6 +4,10 @@
  * alternatives. Each alternative is a pair of atom groups: all pairs (a, b), a from the first and b from the second, a != b,
  * enter the sum (Σ r⁻⁶)^(-1/6), which runs over the pairs of all alternatives. Where alternatives carry combinations, those of
  * one combination hold together, each by its own sum, and the combination that is violated least counts.
+ *
+ * Names with x and y (HBx, HBy) mean the two members of a stereo pair that nobody has told apart. Which member x is, is open and
+ * is chosen for each model: `swapped`, an array with an element for each stereo pair, says where x is the second member. With
+ * NULL in its place, names with x or y mean both members.
  */
 #ifndef TML_RESTRAINT_H
 #define TML_RESTRAINT_H
@@ -14,11 +18,18 @@
 typedef enum tml_range { TML_RANGE_INTRA, TML_RANGE_SEQUENTIAL, TML_RANGE_MEDIUM, TML_RANGE_LONG, TML_RANGE_INTER_CHAIN } tml_range;
 enum { TML_RANGE_COUNT = 5 };
 
+/* A stereo pair that is open. Its members (one atom each, or as many as hang on the branch) are in stereo_members. */
+typedef struct tml_stereo { int32_t residue, first_member, member_count; } tml_stereo;
+typedef struct tml_stereo_member { int32_t stereo, first, second; } tml_stereo_member; /* atoms that stand for each other */
+
+/* A side with an open stereo pair (index, otherwise -1) holds the atoms of its first member, then those of the second in the same
+ * order; only one half counts: the second where `second` (the name has y) and not swapped, or swapped and not second. */
 typedef struct tml_alternative {
     int32_t first_a, count_a, first_b, count_b; /* into group_atoms */
-    int32_t pair_count;                         /* pairs (a, b) with a != b */
+    int32_t pair_count;                         /* pairs (a, b) with a != b, over both members of open pairs */
     int32_t combination;                        /* within its restraint; one's alternatives stand together. -1: alone */
-    bool equivalent;                            /* each side is one atom or one group of equivalent atoms */
+    int32_t stereo_a, stereo_b;
+    bool second_a, second_b;
 } tml_alternative;
 
 typedef struct tml_distance_restraint {
@@ -53,16 +64,31 @@ typedef struct tml_restraints {
     tml_dihedral_restraint *dihedrals; int32_t dihedral_count;
     tml_dihedral_interval *intervals;  int32_t interval_count;
     tml_unmapped *unmapped;            int32_t unmapped_count;
+    tml_stereo *stereo;                int32_t stereo_count;
+    tml_stereo_member *stereo_members; int32_t stereo_member_count;
 } tml_restraints;
 
 void tml_restraints_clear(tml_restraints *restraints);
 
+/* The atoms of an alternative's sides that count with these assignments. */
+typedef struct tml_group { const int32_t *atoms; int32_t count; } tml_group;
+void tml_alternative_sides(const tml_restraints *restraints, const tml_alternative *alternative, const bool *swapped, tml_group *a,
+                           tml_group *b);
+
+/* Whether a stereo pair of one of its sides is open. */
+static inline bool tml_alternative_open(const tml_alternative *alternative) {
+    return alternative->stereo_a >= 0 || alternative->stereo_b >= 0;
+}
+
 /* (Σ r⁻⁶)^(-1/6) of one alternative or of a whole restraint without combinations; xyz holds atom_count*3 Å. */
-double tml_alternative_distance(const tml_restraints *restraints, const tml_alternative *alternative, bool average, const double *xyz);
-double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz);
+double tml_alternative_distance(const tml_restraints *restraints, const tml_alternative *alternative, bool average, const bool *swapped,
+                                const double *xyz);
+double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
+                              const double *xyz);
 
 /* By how much a restraint is violated: Å beyond a limit (positive above, negative below the lower; 0 within); radians, >= 0. */
-double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const double *xyz);
+double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
+                              const double *xyz);
 double tml_dihedral_violation(const tml_restraints *restraints, const tml_dihedral_restraint *restraint, const double *xyz);
 
 #endif

@@ -49,7 +49,7 @@ static int write_text(const char *path, const char *text) {
 static tml_problem *read_problem(const char *path) {
     tml_problem *problem = NULL;
     tml_error error = {0};
-    if (tml_problem_read(&path, 1, &problem, &error) == TML_OK) return problem;
+    if (tml_problem_read(&path, 1, NULL, &problem, &error) == TML_OK) return problem;
     printf("%s:%ld:%ld: %s\n", error.file, error.line, error.column, error.message);
     return NULL;
 }

@@ -48,7 +48,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     tml_error error = {0};
     tml_problem *problem = NULL;
     const char *path = with_content(data, size);
-    tml_status status = tml_problem_read(&path, 1, &problem, &error);
+    tml_status status = tml_problem_read(&path, 1, NULL, &problem, &error);
     if (status == TML_OK) {
         report(problem);
     } else if (error.message[0] == '\0' || (status != TML_BAD_INPUT && status != TML_TOO_LARGE)) {

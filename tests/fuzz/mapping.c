@@ -39,10 +39,17 @@ static void check_distance(const tml_problem *problem, const tml_distance_restra
         check_group(problem, alternative->first_a, alternative->count_a);
         check_group(problem, alternative->first_b, alternative->count_b);
         if (alternative->pair_count < 1) abort();
+        if (alternative->stereo_a < -1 || alternative->stereo_a >= r->stereo_count) abort();
+        if (alternative->stereo_b < -1 || alternative->stereo_b >= r->stereo_count) abort();
         pairs += alternative->pair_count;
     }
     if (pairs != d->pair_count) abort();
-    if (isnan(tml_distance_violation(r, d, xyz))) abort();
+    if (isnan(tml_distance_violation(r, d, NULL, xyz))) abort();
+    bool *swapped = calloc((size_t)r->stereo_count + 1, sizeof *swapped);
+    if (swapped == NULL) return;
+    for (int32_t i = 0; i < r->stereo_count; i++) swapped[i] = i % 2 == 0;
+    if (!isfinite(tml_distance_violation(r, d, swapped, xyz))) abort();
+    free(swapped);
 }
 
 static void check_dihedral(const tml_problem *problem, const tml_dihedral_restraint *d, const double *xyz) {
@@ -72,6 +79,7 @@ static void check_problem(const tml_problem *problem) {
 
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     static const char *files[2] = {"molecule", "fuzz"};
+    static const tml_read_options OPTIONS = {0};
     tml_error error = {0};
     tml_problem *problem = calloc(1, sizeof *problem);
     char *text = malloc(size + 1);
@@ -89,7 +97,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     tml_status status = tml_read_sheet(&draft, MOLECULE, 0, &error);
     if (status == TML_OK) status = read_input(&draft, text, strlen(text), &error);
     if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, &error);
-    if (status == TML_OK) status = tml_restraints_map(&draft.rows, problem, &error);
+    if (status == TML_OK) status = tml_restraints_map(&draft.rows, &OPTIONS, problem, &error);
     if (status == TML_OK)
         check_problem(problem);
     else if ((status != TML_BAD_INPUT && status != TML_TOO_LARGE) || *error.message == '\0')

@@ -111,7 +111,7 @@ static tml_status check_way(const char *const *paths, size_t count) {
     tml_use *uses = NULL;
     tml_contradictions found = {0};
     FILE *nowhere = fopen("/dev/null", "w");
-    tml_status status = tml_problem_read(paths, count, &problem, &error);
+    tml_status status = tml_problem_read(paths, count, NULL, &problem, &error);
     if (status == TML_OK) status = tml_bounds_prepare(problem, 1, NULL, &bounds, &found, &error);
     if (status == TML_CONTRADICTED) status = TML_OK;
     if (status == TML_OK) status = tml_restraints_judge(problem, 1, NULL, &uses, &error);
@@ -138,7 +138,7 @@ static tml_status build_way(const char *const *paths, size_t count) {
     options.threads = 1;
     options.effort = 0.05;
     FILE *nowhere = fopen("/dev/null", "w");
-    tml_status status = tml_problem_read(paths, count, &problem, &error);
+    tml_status status = tml_problem_read(paths, count, NULL, &problem, &error);
     if (status == TML_OK) status = tml_build(problem, &options, NULL, &ensemble, &found, &error);
     if (status == TML_SHORT || status == TML_CONTRADICTED) status = TML_OK;
     if (status == TML_OK) status = tml_write_models(ensemble, &found, in_folder("m.pdb"), TML_FORMAT_PDB, false, &error);

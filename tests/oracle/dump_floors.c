@@ -17,7 +17,7 @@ int main(int argc, char **argv) {
     const char *paths[] = {argc > 1 ? argv[1] : ""};
     tml_problem *problem = NULL;
     tml_error error = {0};
-    if (tml_problem_read(paths, 1, &problem, &error) != TML_OK) {
+    if (tml_problem_read(paths, 1, NULL, &problem, &error) != TML_OK) {
         fprintf(stderr, "%s\n", error.message);
         return 2;
     }

@@ -54,7 +54,7 @@ static void print(const tml_problem *problem) {
 int main(int argc, char **argv) {
     tml_error error = {0};
     tml_problem *problem = NULL;
-    tml_status status = tml_problem_read((const char *const *)argv + 1, (size_t)argc - 1, &problem, &error);
+    tml_status status = tml_problem_read((const char *const *)argv + 1, (size_t)argc - 1, NULL, &problem, &error);
     if (status == TML_OK)
         print(problem);
     else

@@ -111,7 +111,7 @@ int main(int argc, char **argv) {
     /* a two-step proof between invented limits of restraint r1, twice in it */
     tml_distance_restraint restraint = {.list = "noe", .id = "r1", .upper = 3, .weight = 1, .pair_count = 64, .place = {0, 5, 1},
                                         .alternative_count = 1};
-    tml_alternative alternative = {.count_a = 1, .first_b = 1, .count_b = 1, .pair_count = 64, .combination = -1};
+    tml_alternative alternative = {.count_a = 1, .first_b = 1, .count_b = 1, .pair_count = 64, .combination = -1, .stereo_a = -1, .stereo_b = -1};
     int32_t group[] = {0, 5};
     problem.restraints = (tml_restraints){.distances = &restraint, .distance_count = 1, .alternatives = &alternative,
                                           .alternative_count = 1, .group_atoms = group, .group_atom_count = 2};
