@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "cli/command.h"
+#include "input/selection.h"
 #include "output/sheet.h"
 
 static const char HELP[] =
@@ -14,8 +15,9 @@ static const char HELP[] =
     "\n"
     "  -o, --output FILE      write the sheet to FILE; .gz compresses (default: standard output)\n"
     "      --cutoff A         pairs nearer than A (default 5)\n"
-    "      --atoms WORDS      which atoms, words joined by commas: all, heavy (default), hydrogens, backbone (N, CA, C, O),\n"
-    "                         @ and an element's symbol (@C), or an atom's name, with * for anything and % for digits (HB%)\n"
+    "      --atoms WORDS      which atoms, words joined by commas: all, heavy (default), hydrogens, backbone (N, CA, C, O;\n"
+    "                         P, O5', C5', C4', C3', O3' of nucleotides), @ and an element's symbol (@C), or an atom's name, with *\n"
+    "                         for anything and % for digits (HB%)\n"
     "      --error E          limits E on either side of the distance (default 0.5)\n"
     "      --error-share F    F times the distance wider on either side (default 0)\n"
     "      --noise S          add normal noise of standard deviation S to each distance (default 0)\n"

@@ -6,7 +6,7 @@
 
 typedef struct tml_derive_options {
     double cutoff;           /* Å: pairs nearer than this in some model */
-    const char *atoms;       /* selection: words joined by commas, see tml_selection_good */
+    const char *atoms;       /* selection: words joined by commas, see selection.h */
     double error, fraction;  /* half-width of a limit: error Å + fraction of the distance */
     double noise;            /* standard deviation, Å, of what is added to each distance first; 0 for none */
     double keep;             /* share of the pairs that are kept, 0 to 1 */
@@ -17,10 +17,6 @@ typedef struct tml_derive_options {
 
 /* What a sheet holds. */
 typedef struct tml_derived { int32_t atoms, limits, left_out; } tml_derived;
-
-/* Whether a selection can be understood: `all`, `heavy`, `hydrogens`, `backbone`, `@` and an element's symbol, or an atom's name,
- * in which `*` stands for anything and `%` for digits. TML_OK or TML_BAD_INPUT. */
-tml_status tml_selection_check(const char *atoms, tml_error *error);
 
 /* Derive and write a sheet.
  *
