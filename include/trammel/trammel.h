@@ -68,10 +68,21 @@ typedef struct tml_counts {
     int32_t notes;                                    /* remarks on the inputs that are no errors */
 } tml_counts;
 
-/* How names in restraints are taken that leave something open. All zero is the default. */
+/* A delimited table of restraints, one a row, and what its columns hold. Zeroed before it is filled. */
+typedef struct tml_table {
+    const char *path;      /* "-" for standard input, gzip understood */
+    const char *columns;   /* words for the columns in their order, "chain_1 residue_1 atom_1 … lower upper"; see trammel(1) */
+    const char *form;      /* how the text is written, "semicolon decimal-comma nm"; NULL: told from the text; see trammel(1) */
+    const char *old_names; /* the mapping from old atom names to present ones, built in or a file; NULL for none */
+} tml_table;
+
+/* What else there is to read, and how names in restraints are taken that leave something open. All zero is the default. */
 typedef struct tml_read_options {
     bool sum_stereo_pairs; /* names with x and y mean both members of the pair, summed; otherwise every model takes the
                               assignment of x and y that it violates least */
+    const tml_table *tables; /* read after the other inputs, whose sequence they need */
+    size_t table_count;
+    const char *old_names;   /* the same as in a table, for the restraints of the other inputs */
 } tml_read_options;
 
 /* Read inputs (sheet, NEF; told by content; "-" for standard input, gzip understood) into one problem.

@@ -3,6 +3,7 @@
  *   messages     help, usage, errors, remarks
  *   options      numbers from the command line
  *   paths        inputs and outputs, before any work
+ *   reading      tables and other options, and all inputs into one problem
  *   watching     progress, signals, the end of a run
  */
 #include "cli/command.h"
@@ -155,6 +156,11 @@ bool tml_cli_real(const tml_command *command, const char *option, const char *te
 
 /* ---- paths ---- */
 
+/* The tables that the command line names. */
+enum { TABLES_MOST = 64 };
+static tml_table tables[TABLES_MOST];
+static size_t table_count;
+
 bool tml_cli_inputs_good(const tml_command *command, char *const *inputs, int count) {
     if (count == 0) {
         tml_cli_usage(command, "No input is named.");
@@ -162,6 +168,12 @@ bool tml_cli_inputs_good(const tml_command *command, char *const *inputs, int co
     }
     int standard = 0;
     for (int i = 0; i < count; i++) standard += strcmp(inputs[i], "-") == 0;
+    for (size_t i = 0; i < table_count; i++) standard += strcmp(tables[i].path, "-") == 0;
+    for (size_t i = 0; i < table_count; i++) {
+        if (tables[i].columns != NULL) continue;
+        tml_cli_usage(command, "The table '%s' needs --columns after it, to say what they hold.", tables[i].path);
+        return false;
+    }
     if (standard <= 1) return true;
     tml_cli_usage(command, "Standard input, '-', can be read only once.");
     return false;
@@ -178,14 +190,21 @@ static int refuse_output(const char *path, const char *reason, int exit_status) 
     return exit_status;
 }
 
+/* Whether a file that is there is also read. */
+static bool is_read(const struct stat *file, const char *path) {
+    struct stat in;
+    return strcmp(path, "-") != 0 && stat(path, &in) == 0 && in.st_dev == file->st_dev && in.st_ino == file->st_ino;
+}
+
 static int judge_output(const tml_command *command, const char *path, char *const *inputs, int count) {
-    struct stat out, in;
+    struct stat out;
+    bool read = false;
     if (*path == '\0') return tml_cli_usage(command, "The name of an output file is empty.");
     bool exists = stat(path, &out) == 0;
     if (exists && S_ISDIR(out.st_mode)) return refuse_output(path, "this is a folder; name a file in it", TML_EXIT_USAGE);
-    for (int i = 0; exists && i < count; i++)
-        if (strcmp(inputs[i], "-") != 0 && stat(inputs[i], &in) == 0 && in.st_dev == out.st_dev && in.st_ino == out.st_ino)
-            return refuse_output(path, "this is one of the inputs; write to another file", TML_EXIT_USAGE);
+    for (int i = 0; exists && i < count; i++) read = read || is_read(&out, inputs[i]);
+    for (size_t i = 0; exists && i < table_count; i++) read = read || is_read(&out, tables[i].path);
+    if (read) return refuse_output(path, "this is one of the inputs; write to another file", TML_EXIT_USAGE);
     if (exists && !S_ISREG(out.st_mode)) {
         if (access(path, W_OK) == 0) return TML_EXIT_DONE;
         return refuse_output(path, strerror(errno), TML_EXIT_MACHINE);
@@ -207,13 +226,46 @@ bool tml_cli_output_good(const tml_command *command, const char *path, char *con
     return false;
 }
 
-bool tml_cli_read_option(const tml_command *command, int got, const char *value, tml_read_options *options, int *status) {
-    if (got != TML_OPTION_STEREO) return false;
+/* ---- reading ---- */
+
+/* Set one of a table's texts, or say that it stands there already; -1 to go on, or the exit status. */
+static int set_once(const tml_command *command, const char **text, const char *option, const char *value) {
+    if (*text != NULL) return tml_cli_usage(command, "%s is given twice for the same inputs.", option);
+    *text = value;
+    return -1;
+}
+
+static int take_stereo(const tml_command *command, const char *value, tml_read_options *options) {
     options->sum_stereo_pairs = strcmp(value, "sum") == 0;
-    *status = -1;
-    if (!options->sum_stereo_pairs && strcmp(value, "open") != 0)
-        *status = tml_cli_usage(command, "--stereo takes open or sum, not '%s'.", value);
-    return true;
+    if (options->sum_stereo_pairs || strcmp(value, "open") == 0) return -1;
+    return tml_cli_usage(command, "--stereo takes open or sum, not '%s'.", value);
+}
+
+static int take_table(const tml_command *command, const char *path, tml_read_options *options) {
+    if (options->table_count == TABLES_MOST) return tml_cli_usage(command, "No more than %d tables can be read.", TABLES_MOST);
+    tables[options->table_count++] = (tml_table){.path = path};
+    table_count = options->table_count;
+    options->tables = tables;
+    return -1;
+}
+
+static int take_columns(const tml_command *command, int got, const char *value, tml_read_options *options) {
+    const char *option = got == TML_OPTION_COLUMNS ? "--columns" : "--table-form";
+    if (options->table_count == 0) return tml_cli_usage(command, "%s belongs to the --table before it; there is none.", option);
+    tml_table *table = &tables[options->table_count - 1];
+    return set_once(command, got == TML_OPTION_COLUMNS ? &table->columns : &table->form, option, value);
+}
+
+bool tml_cli_read_option(const tml_command *command, int got, const char *value, tml_read_options *options, int *status) {
+    const char **old_names = options->table_count > 0 ? &tables[options->table_count - 1].old_names : &options->old_names;
+    switch (got) {
+    case TML_OPTION_STEREO: *status = take_stereo(command, value, options); return true;
+    case TML_OPTION_TABLE: *status = take_table(command, value, options); return true;
+    case TML_OPTION_COLUMNS:
+    case TML_OPTION_TABLE_FORM: *status = take_columns(command, got, value, options); return true;
+    case TML_OPTION_OLD_NAMES: *status = set_once(command, old_names, "--old-names", value); return true;
+    default: return false;
+    }
 }
 
 int tml_cli_read(char *const *inputs, int count, const tml_read_options *options, bool strict, tml_problem **out) {

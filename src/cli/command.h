@@ -23,14 +23,35 @@ extern const tml_command tml_command_build, tml_command_check, tml_command_bound
 enum { TML_EXIT_DONE = 0, TML_EXIT_FINDING = 1, TML_EXIT_USAGE = 2, TML_EXIT_MACHINE = 3 };
 
 /* Long options that have no letter start here in the commands' getopt tables; --help is common to all. */
-enum { TML_OPTION_HELP = 1000, TML_OPTION_STEREO, TML_OPTION_OWN };
+enum {
+    TML_OPTION_HELP = 1000,
+    TML_OPTION_STEREO,
+    TML_OPTION_TABLE,
+    TML_OPTION_COLUMNS,
+    TML_OPTION_TABLE_FORM,
+    TML_OPTION_OLD_NAMES,
+    TML_OPTION_OWN
+};
 
 /* How inputs are read: options of every command that reads some. Entries for its getopt table, lines for its help, and their
- * taking: *status is -1 to go on, or the exit status after a message. false where `got` is none of them. */
-#define TML_READ_OPTIONS {"stereo", required_argument, NULL, TML_OPTION_STEREO}
+ * taking: *status is -1 to go on, or the exit status after a message. false where `got` is none of them. The tables that they name
+ * are kept in command.c, once for the one command of a run. */
+#define TML_READ_OPTIONS                                                                                                \
+    {"stereo", required_argument, NULL, TML_OPTION_STEREO}, {"table", required_argument, NULL, TML_OPTION_TABLE},       \
+        {"columns", required_argument, NULL, TML_OPTION_COLUMNS},                                                       \
+        {"table-form", required_argument, NULL, TML_OPTION_TABLE_FORM},                                                 \
+        {"old-names", required_argument, NULL, TML_OPTION_OLD_NAMES}
 #define TML_READ_HELP                                                                                                   \
     "      --stereo open|sum    names with x and y, as HBx: every model takes the assignment of x and y that it violates\n"  \
-    "                           least (default), or both members of the pair count, summed\n"
+    "                           least (default), or both members of the pair count, summed\n"                            \
+    "      --table FILE         read restraints from the table FILE, too; it needs --columns\n"                            \
+    "      --columns WORDS      what the columns of the table before it hold, in their order, such as \"chain_1\n"         \
+    "                           residue_1 atom_1 chain_2 residue_2 atom_2 lower upper id\"; '-' passes over one,\n"        \
+    "                           upper@dmax finds one by its heading, chain=A holds for all rows\n"                         \
+    "      --table-form WORDS   how it is written: tab, comma, semicolon, bar or blanks; decimal-comma; nm; heading or\n"  \
+    "                           no-heading; comment=X\n"                                                                   \
+    "      --old-names MAPPING  turn old atom names of the table before it, or of the other inputs where it comes\n"       \
+    "                           before all tables, into present ones: hydrogens-1-2, hydrogens-1-2-crossed or a file\n"
 bool tml_cli_read_option(const tml_command *command, int got, const char *value, tml_read_options *options, int *status);
 
 enum { TML_CLI_THREADS_MOST = 1024 };
@@ -59,10 +80,11 @@ int tml_cli_failed(const tml_error *error);
 /* A remark on standard error: "trammel: …". */
 void tml_cli_remark(const char *format, ...) __attribute__((format(printf, 1, 2)));
 
-/* Inputs as the command line gives them: at least one, standard input at most once. false after a message. */
+/* Inputs as the command line gives them: at least one, standard input at most once, tables with their columns. false after a
+ * message. */
 bool tml_cli_inputs_good(const tml_command *command, char *const *inputs, int count);
 
-/* An output path, before any work: no directory, in a folder that can be written, none of the inputs. *exit_status is set
+/* An output path, before any work: no directory, in a folder that can be written, none of the inputs and tables. *exit_status is set
  * and a message printed where it is not. "-" and NULL are always good. */
 bool tml_cli_output_good(const tml_command *command, const char *path, char *const *inputs, int count, int *exit_status);
 

@@ -16,6 +16,9 @@ tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tm
 tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_error *error);
 bool tml_is_sheet(const char *text);
 
+/* A table, after the other inputs, whose sequence it needs; its text is changed. */
+tml_status tml_read_table(tml_draft *draft, const tml_table *given, char *text, int32_t file, tml_error *error);
+
 /* Whether a parsed document is NEF; readers of other dialects ask the same way. */
 bool tml_is_nef(const tml_star *star);
 

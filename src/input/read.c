@@ -5,10 +5,12 @@
 
 #include "base/memory.h"
 #include "input/draft.h"
+#include "input/oldnames.h"
 #include "input/source.h"
 #include "restraint/map.h"
 
-static tml_status read_one(tml_draft *draft, const char *path, tml_error *error);
+static tml_status read_one(tml_draft *draft, const char *path, const tml_table *table, tml_error *error);
+static tml_status rename_old(tml_draft *draft, const char *mapping, tml_error *error);
 
 tml_status tml_problem_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_problem **out,
                             tml_error *error) {
@@ -21,7 +23,10 @@ tml_status tml_problem_read(const char *const *paths, size_t path_count, const t
     problem->pool = tml_strings_new();
     problem->title = "";
     tml_status status = problem->pool == NULL ? tml_no_memory(error) : TML_OK;
-    for (size_t i = 0; status == TML_OK && i < path_count; i++) status = read_one(&draft, paths[i], error);
+    for (size_t i = 0; status == TML_OK && i < path_count; i++) status = read_one(&draft, paths[i], NULL, error);
+    if (status == TML_OK && options->old_names != NULL) status = rename_old(&draft, options->old_names, error);
+    for (size_t i = 0; status == TML_OK && i < options->table_count; i++)
+        status = read_one(&draft, options->tables[i].path, &options->tables[i], error);
     if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, error);
     if (status == TML_OK) status = tml_restraints_map(&draft.rows, options, problem, error);
     tml_outline_clear(&draft.outline);
@@ -84,7 +89,18 @@ static tml_status read_text(tml_draft *draft, const char *text, size_t length, i
     return status;
 }
 
-static tml_status read_one(tml_draft *draft, const char *path, tml_error *error) {
+static tml_status rename_old(tml_draft *draft, const char *mapping, tml_error *error) {
+    const tml_place nowhere = {.file = -1};
+    tml_old_names names;
+    tml_status status = tml_old_names_load(mapping, draft->problem->pool, &names, error);
+    if (status == TML_OK) status = tml_old_names_apply_rows(&names, draft, error);
+    if (status == TML_OK) status = tml_old_names_note(&names, nowhere, draft->problem, error);
+    tml_old_names_clear(&names);
+    return status;
+}
+
+/* An input, or a table. */
+static tml_status read_one(tml_draft *draft, const char *path, const tml_table *table, tml_error *error) {
     tml_problem *problem = draft->problem;
     char *text = NULL;
     size_t length = 0;
@@ -93,7 +109,11 @@ static tml_status read_one(tml_draft *draft, const char *path, tml_error *error)
         return tml_no_memory(error);
     problem->files[problem->file_count++] = name;
     tml_status status = tml_source_read(path, &text, &length, error);
-    if (status == TML_OK) status = read_text(draft, text, length, (int32_t)problem->file_count - 1, error);
+    int32_t file = (int32_t)problem->file_count - 1;
+    if (status == TML_OK && table != NULL)
+        status = tml_read_table(draft, table, text, file, error);
+    else if (status == TML_OK)
+        status = read_text(draft, text, length, file, error);
     free(text);
     return status;
 }
