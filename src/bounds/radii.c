@@ -18,14 +18,6 @@ static bool is_polar(int element) {
     return element == NITROGEN || element == OXYGEN || element == SULFUR;
 }
 
-/* Elements that make up metal sites: all but hydrogen, helium and the non-metals of the right upper corner. */
-static bool is_metal(int element) {
-    static const int LAST_NON_METALS[][2] = {{1, 2}, {5, 10}, {14, 18}, {33, 36}, {52, 54}, {85, 86}};
-    for (size_t i = 0; i < sizeof LAST_NON_METALS / sizeof *LAST_NON_METALS; i++)
-        if (element >= LAST_NON_METALS[i][0] && element <= LAST_NON_METALS[i][1]) return false;
-    return element > 0;
-}
-
 /* A hydrogen on something other than carbon. */
 static bool is_polar_hydrogen(const tml_molecule *molecule, int32_t atom) {
     if (molecule->atoms[atom].element != HYDROGEN) return false;
@@ -49,7 +41,7 @@ double tml_hard_floor(const tml_molecule *molecule, int32_t a, int32_t b) {
     int element_a = molecule->atoms[a].element, element_b = molecule->atoms[b].element;
     double sum = radii(molecule, a, b);
     if (sum <= 0) return 0;
-    if (is_metal(element_a) || is_metal(element_b)) return element_a == HYDROGEN || element_b == HYDROGEN ? 1.0 : HARD_METAL;
+    if (tml_element_is_metal(element_a) || tml_element_is_metal(element_b)) return element_a == HYDROGEN || element_b == HYDROGEN ? 1.0 : HARD_METAL;
     if (element_a == SULFUR && element_b == SULFUR) return HARD_SULFUR;
     bool polar = may_bond(molecule, a, b) || (is_polar(element_a) && is_polar(element_b));
     return sum - (polar ? HARD_LESS_POLAR : HARD_LESS);
@@ -58,7 +50,7 @@ double tml_hard_floor(const tml_molecule *molecule, int32_t a, int32_t b) {
 double tml_soft_contact(const tml_molecule *molecule, int32_t a, int32_t b) {
     double sum = radii(molecule, a, b);
     if (sum <= 0) return 0;
-    if (is_metal(molecule->atoms[a].element) || is_metal(molecule->atoms[b].element)) return tml_hard_floor(molecule, a, b);
+    if (tml_element_is_metal(molecule->atoms[a].element) || tml_element_is_metal(molecule->atoms[b].element)) return tml_hard_floor(molecule, a, b);
     return sum - (may_bond(molecule, a, b) ? SOFT_LESS_POLAR : SOFT_LESS);
 }
 

@@ -19,6 +19,13 @@ bool tml_is_sheet(const char *text);
 /* A table, after the other inputs, whose sequence it needs; its text is changed. */
 tml_status tml_read_table(tml_draft *draft, const tml_table *given, char *text, int32_t file, tml_error *error);
 
+/* Component dictionaries: those of a CIF; the one that a sheet names, at the path as seen from the sheet's folder; and making templates
+ * of those that residues name, with notes on what they lack, once all inputs are read. */
+tml_status tml_read_components(tml_draft *draft, tml_star *star, int32_t file, tml_error *error);
+tml_status tml_read_component_file(tml_draft *draft, const char *name, const char *path, tml_place place, tml_error *error);
+tml_status tml_make_components(tml_draft *draft, tml_error *error);
+bool tml_is_component(const tml_star *star);
+
 /* Whether a parsed document is NEF; readers of other dialects ask the same way. */
 bool tml_is_nef(const tml_star *star);
 

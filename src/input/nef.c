@@ -300,6 +300,7 @@ static tml_status pass_over(nef *in, const tml_star_loop *loop) {
         if (is_category(in->star, loop, OTHER[i].category))
             return tml_problem_add_note(in->draft->problem, place_of(in, tag), in->error, "%zu %s are not used", loop->row_count,
                                         OTHER[i].name);
+    if (strncasecmp(tag->text, "_chem_comp", 10) == 0) return TML_OK; /* a component dictionary in the same file */
     bool data = strncasecmp(tag->text, "_nef_", 5) != 0; /* the format's own housekeeping needs no mention */
     const char *dot = memchr(tag->text, '.', (size_t)tag->length);
     int shown = dot == NULL ? tag->length : (int)(dot - tag->text);

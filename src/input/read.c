@@ -27,6 +27,7 @@ tml_status tml_problem_read(const char *const *paths, size_t path_count, const t
     if (status == TML_OK && options->old_names != NULL) status = rename_old(&draft, options->old_names, error);
     for (size_t i = 0; status == TML_OK && i < options->table_count; i++)
         status = read_one(&draft, options->tables[i].path, &options->tables[i], error);
+    if (status == TML_OK) status = tml_make_components(&draft, error);
     if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, error);
     if (status == TML_OK) status = tml_restraints_map(&draft.rows, options, problem, error);
     tml_outline_clear(&draft.outline);
@@ -72,11 +73,14 @@ static tml_status read_text(tml_draft *draft, const char *text, size_t length, i
     tml_star star;
     tml_error star_error = {0};
     tml_status status = tml_star_parse(text, length, path, &star, &star_error);
-    if (status == TML_OK && tml_is_nef(&star)) {
-        status = tml_read_nef(draft, &star, file, error);
+    bool is_nef = status == TML_OK && tml_is_nef(&star), is_component = status == TML_OK && tml_is_component(&star);
+    if (is_nef || is_component) {
+        if (is_component) status = tml_read_components(draft, &star, file, error);
+        if (is_nef && status == TML_OK) status = tml_read_nef(draft, &star, file, error);
     } else if (status == TML_OK) {
         status = tml_fail_at(error, TML_BAD_INPUT, path, 1, 1,
-                             "a STAR or CIF document without NEF sequence or restraints; a sheet or a NEF file is expected");
+                             "a STAR or CIF document without NEF sequence or restraints, or components; a sheet, a NEF file or a component "
+                             "dictionary is expected");
     } else if (status == TML_BAD_INPUT && star.frame_count == 0) {
         int shown = first - blank > 40 ? 40 : first - blank;
         status = tml_fail_at(error, TML_BAD_INPUT, path, 1, 1,

@@ -257,6 +257,15 @@ static tml_status link_statement(sheet *s) {
     return no_more(s, 3);
 }
 
+static tml_status component_statement(sheet *s) {
+    const char *name = NULL, *path = NULL;
+    tml_status status = text_at(s, 1, "a residue's name", &name);
+    if (status == TML_OK && strlen(name) > NAME_MOST) status = expected(s, 1, "a residue's name of at most 40 characters");
+    if (status == TML_OK) status = text_at(s, 2, "the path of a component dictionary", &path);
+    if (status == TML_OK) status = no_more(s, 3);
+    return status == TML_OK ? tml_read_component_file(s->draft, name, path, here(s, 1), s->error) : status;
+}
+
 static tml_status chiral_statement(sheet *s) {
     tml_outline *outline = &s->draft->outline;
     tml_outline_chiral chiral = {.place = here(s, 1)};
@@ -368,10 +377,11 @@ static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
     {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
     {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
+    {"component", component_statement},
 };
 
 /* Words of the grammar that this version cannot carry out. */
-static const char *const LATER[] = {"molecule", "component", "alike"};
+static const char *const LATER[] = {"molecule", "alike"};
 
 static tml_status run_statement(sheet *s) {
     char name[64] = "", near[160] = "";

@@ -6,6 +6,7 @@
  */
 #include "molecule/elements.h"
 
+#include <stddef.h>
 #include <strings.h>
 
 typedef struct element {
@@ -50,6 +51,13 @@ static const element *at(int number) {
 
 const char *tml_element_symbol(int number) {
     return at(number)->symbol;
+}
+
+bool tml_element_is_metal(int number) {
+    static const int NON_METALS[][2] = {{1, 2}, {5, 10}, {14, 18}, {33, 36}, {52, 54}, {85, 86}};
+    for (size_t i = 0; i < sizeof NON_METALS / sizeof *NON_METALS; i++)
+        if (number >= NON_METALS[i][0] && number <= NON_METALS[i][1]) return false;
+    return number > 0;
 }
 
 double tml_element_vdw_radius(int number) {

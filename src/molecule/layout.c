@@ -140,15 +140,24 @@ static tml_status find_template(tml_making *making, tml_layout_residue *residue)
     for (const tml_template *form = tml_templates; form->name != NULL; form++)
         if (strcmp(form->name, residue->name) == 0) {
             residue->form = form;
-            return TML_OK;
+            residue->standard = true;
         }
+    for (size_t i = 0; i < making->outline->component_count; i++) {
+        const tml_component *component = making->outline->components[i];
+        if (!component->made || strcmp(component->name, residue->name) != 0) continue;
+        residue->form = &component->form;
+        residue->own = true;
+    }
+    if (residue->form != NULL) return TML_OK;
     char known[256] = "";
     for (const tml_template *form = tml_templates; form->name != NULL; form++) {
         size_t used = strlen(known);
         snprintf(known + used, sizeof known - used, "%s%s", used == 0 ? "" : " ", form->name);
     }
-    return tml_making_fail(making, residue->place, "%s:%s: unknown residue \"%.32s\"; known are %s", residue->chain,
-                           residue->number, residue->name, known);
+    return tml_making_fail(making, residue->place,
+                           "%s:%s: unknown residue \"%.32s\"; a component dictionary (CIF) that describes it can be one more input, or named by "
+                           "`component %.32s FILE` in a sheet; built in are %s",
+                           residue->chain, residue->number, residue->name, residue->name, known);
 }
 
 /* ---- atoms ---- */
@@ -194,7 +203,7 @@ tml_status tml_lay_out_atoms(tml_making *making) {
                                       .element = element_of(row),
                                       .residue = r,
                                       .made = -1,
-                                      .present = !row->optional,
+                                      .present = row->optional != TML_OPTIONAL,
                                       .place = residue->place};
             if (!tml_index_add(making->atom_index, r, row->name, (int32_t)(atom - making->atoms)))
                 return tml_no_memory(making->error);

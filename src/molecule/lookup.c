@@ -135,8 +135,8 @@ int8_t tml_lookup_charge(const tml_making *making, int32_t r, const char *name) 
 }
 
 int32_t tml_lookup_atom(const tml_making *making, int32_t r, const char *name, size_t length) {
-    if (length > 0 && *name == '-') {
-        r = making->residues[r].previous;
+    if (length > 0 && (*name == '-' || *name == '+')) {
+        r = *name == '-' ? making->residues[r].previous : making->residues[r].next;
         name++;
         length--;
     }

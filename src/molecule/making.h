@@ -26,6 +26,7 @@ typedef struct tml_layout_bond { int32_t a, b; double length; tml_bond_kind kind
 typedef struct tml_layout_residue {
     const char *chain, *number, *name, *variant;
     const tml_template *form;  /* NULL for bare atoms */
+    bool standard, own;        /* of a name that is built in; of a component dictionary */
     tml_linking linking;
     bool cis, trans;           /* the peptide bond to the next residue is declared so */
     int32_t previous, next;    /* residues that the chain's bonds lead to; -1 for none */
@@ -85,7 +86,7 @@ tml_status tml_make_terms(tml_making *making);
 /* torsions.c */
 tml_status tml_make_torsions(tml_making *making);
 
-enum { TML_PLANE_MAX = 24 }; /* atoms of a plane in the tables */
+enum { TML_PLANE_MAX = 64 }; /* atoms of a plane in the tables */
 
 /* plane.c: ideal coordinates of a plane from its bonds, angles and torsions; has_xy follows */
 void tml_plane_fill(tml_molecule *molecule, int32_t plane);

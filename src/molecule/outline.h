@@ -8,6 +8,7 @@
 
 #include "base/memory.h"
 #include "base/place.h"
+#include "molecule/component.h"
 
 /* How a residue is linked along its chain; by default worked out from its neighbours in the outline. */
 typedef enum tml_linking {
@@ -64,6 +65,7 @@ typedef struct tml_outline {
     tml_outline_chiral *chirals;   size_t chiral_count, chiral_capacity;
     tml_outline_plane *planes;     size_t plane_count, plane_capacity;
     tml_outline_ends *ends;        size_t ends_count, ends_capacity;
+    tml_component **components;    size_t component_count, component_capacity; /* owned; those that residues name are made */
 } tml_outline;
 
 void tml_outline_clear(tml_outline *outline); /* frees what the outline owns and zeroes it */

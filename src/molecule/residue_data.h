@@ -1,6 +1,6 @@
-/* residue_data.h: the built-in residues as tables: atoms, ideal geometry, planes, handedness.
+/* residue_data.h: residues as tables: atoms, ideal geometry, planes, handedness.
  *
- * Everything is constant data; template.c looks rows up, terms.c turns them into the terms of a molecule. Atom names of the
+ * The built-in ones are constant data, component.c makes others; lookup.c looks rows up, terms.c turns them into the terms of a molecule. Atom names of the
  * neighbouring residues begin with '-' (the one before) or '+' (the one after). Lengths in Å, angles in degrees. Each list of
  * rows ends with one whose first name is NULL. Where several rows would do, the first one counts.
  *
@@ -16,11 +16,13 @@
 
 #include "molecule/polymer.h"
 
-/* One atom and the bond that ties it to an atom named earlier; parent "" for the first atom. */
+enum { TML_OPTIONAL = 1, TML_LEAVING = 2 };
+
+/* One atom and the bond that ties it to another; the bonds to parents hang together without rings. parent "" for the first atom. */
 typedef struct tml_atom_row {
     const char *name, *parent;
-    double length;   /* of the bond to the parent */
-    bool optional;   /* not there unless a variant or a chain's end adds it */
+    double length;    /* of the bond to the parent */
+    uint8_t optional; /* TML_OPTIONAL: not there unless a variant or a chain's end adds it; TML_LEAVING: there until a bond takes its place */
     uint8_t element; /* atomic number; 0: the name's first letter tells */
 } tml_atom_row;
 

@@ -1,9 +1,11 @@
 #include "molecule/making.h"
 
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "base/vector.h"
+#include "molecule/elements.h"
 
 /* Contents: the steps - planes and peptides - angles - centres - what the input adds */
 
@@ -33,6 +35,7 @@ tml_status tml_make_terms(tml_making *making) {
 
 static tml_status add_plane(tml_making *making, int32_t r, const char *names, int32_t first_of_residue);
 static tml_status add_peptide(tml_making *making, int32_t r);
+static int32_t arm_of_peptide(const tml_molecule *molecule, int32_t end, int32_t other, int32_t oxygen);
 
 static tml_status make_planes(tml_making *making) {
     for (int32_t r = 0; r < making->residue_count; r++) {
@@ -55,11 +58,9 @@ static tml_status add_peptide(tml_making *making, int32_t r) {
     if (!tml_grow(&molecule->peptides, &making->peptide_room, (size_t)molecule->peptide_count + 1, sizeof *molecule->peptides))
         return tml_no_memory(making->error);
     tml_peptide *peptide = &molecule->peptides[molecule->peptide_count++];
-    *peptide = (tml_peptide){.ca1 = tml_lookup_atom(making, r, "-CA", 3),
-                             .c = tml_lookup_atom(making, r, "-C", 2),
+    *peptide = (tml_peptide){.c = tml_lookup_atom(making, r, "-C", 2),
                              .o = tml_lookup_atom(making, r, "-O", 2),
                              .n = tml_lookup_atom(making, r, "N", 1),
-                             .ca2 = tml_lookup_atom(making, r, "CA", 2),
                              .residue1 = making->residues[r].previous,
                              .residue2 = r,
                              .plane = -1,
@@ -67,7 +68,24 @@ static tml_status add_peptide(tml_making *making, int32_t r) {
                              .declared = before->cis || before->trans};
     for (int32_t k = molecule->neighbour_first[peptide->c]; k < molecule->neighbour_first[peptide->c + 1]; k++)
         if (molecule->neighbours[k] == peptide->n) peptide->bond = molecule->neighbour_bonds[k];
-    return TML_OK;
+    peptide->ca1 = arm_of_peptide(molecule, peptide->c, peptide->n, peptide->o);
+    peptide->ca2 = arm_of_peptide(molecule, peptide->n, peptide->c, -1);
+    return peptide->ca1 >= 0 && peptide->ca2 >= 0
+               ? TML_OK
+               : tml_making_fail(making, making->residues[r].place, "%s:%s: its bond to the residue before lacks an atom on either side",
+                                 making->residues[r].chain, making->residues[r].number);
+}
+
+/* Where omega is measured: CA, or what stands for it in a cap: another heavy atom, or else a hydrogen. */
+static int32_t arm_of_peptide(const tml_molecule *molecule, int32_t end, int32_t other, int32_t oxygen) {
+    int32_t best = -1;
+    for (int32_t k = molecule->neighbour_first[end]; k < molecule->neighbour_first[end + 1]; k++) {
+        int32_t arm = molecule->neighbours[k];
+        if (arm == other || arm == oxygen) continue;
+        if (strcmp(molecule->atoms[arm].name, "CA") == 0) return arm;
+        if (best < 0 || (molecule->atoms[best].element == 1 && molecule->atoms[arm].element != 1)) best = arm;
+    }
+    return best;
 }
 
 /* Are all of these atoms in an earlier plane of the same residue? */
@@ -119,11 +137,13 @@ static tml_status add_plane(tml_making *making, int32_t r, const char *names, in
     return TML_OK;
 }
 
-/* What a variant or a link left in no listed plane: a carbon with three neighbours, a nitrogen linked to such a one. */
+/* What a variant or a link left in no listed plane: a carbon with three neighbours, a nitrogen linked to such a one. A component's
+ * planes are all there are: its carbons may have hydrogens that it does not list. */
 static void mark_trigonal(tml_making *making) {
     const tml_molecule *molecule = making->molecule;
     for (int32_t i = 0; i < molecule->atom_count; i++)
-        if (!tml_is_bare(making, i) && molecule->atoms[i].element == 6 && tml_degree(molecule, i) == 3)
+        if (!tml_is_bare(making, i) && !making->residues[molecule->atoms[i].residue].own && molecule->atoms[i].element == 6 &&
+            tml_degree(molecule, i) == 3)
             making->planar[i] = true;
     for (int32_t i = 0; i < molecule->bond_count; i++) {
         int32_t a = molecule->bonds[i].a, b = molecule->bonds[i].b;
@@ -143,6 +163,8 @@ static void mark_trigonal(tml_making *making) {
  * Engh & Huber give for most (1.0 to 2.9°, one sigma). */
 static const double ANGLE_TOLERANCE = 5 * TML_PI / 180;
 
+static bool is_open(const tml_making *making, int32_t atom);
+static tml_status add_known_angles(tml_making *making, int32_t centre);
 static tml_status add_angles(tml_making *making, int32_t centre);
 
 static tml_status make_angles(tml_making *making) {
@@ -152,11 +174,45 @@ static tml_status make_angles(tml_making *making) {
     for (int32_t i = 0; i < molecule->atom_count; i++) {
         molecule->angle_first[i] = molecule->angle_count;
         int32_t degree = tml_degree(molecule, i);
-        tml_status status = tml_is_bare(making, i) || degree < 2 || degree > TML_ARMS_MAX ? TML_OK : add_angles(making, i);
+        tml_status status = TML_OK;
+        if (is_open(making, i))
+            status = add_known_angles(making, i);
+        else if (!tml_is_bare(making, i) && degree >= 2)
+            status = add_angles(making, i);
         if (status != TML_OK) return status;
     }
     molecule->angle_first[molecule->atom_count] = molecule->angle_count;
     return TML_OK;
+}
+
+/* A metal, or an atom with more arms than a tetrahedron has: no rule tells its angles, only rows do. */
+static bool is_open(const tml_making *making, int32_t atom) {
+    const tml_molecule *molecule = making->molecule;
+    return !tml_is_bare(making, atom) && (tml_degree(molecule, atom) > TML_ARMS_MAX || tml_element_is_metal(molecule->atoms[atom].element));
+}
+
+static bool reserve_angles(tml_making *making, size_t count) {
+    tml_molecule *molecule = making->molecule;
+    return tml_grow(&molecule->angles, &making->angle_room, (size_t)molecule->angle_count + count, sizeof *molecule->angles);
+}
+
+static tml_status add_known_angles(tml_making *making, int32_t centre) {
+    tml_molecule *molecule = making->molecule;
+    for (int32_t i = molecule->neighbour_first[centre]; i < molecule->neighbour_first[centre + 1]; i++)
+        for (int32_t j = i + 1; j < molecule->neighbour_first[centre + 1]; j++) {
+            int32_t a = molecule->neighbours[i], c = molecule->neighbours[j];
+            double angle = tml_lookup_angle(making, a, centre, c);
+            if (isnan(angle)) continue;
+            if (!reserve_angles(making, 1)) return tml_no_memory(making->error);
+            molecule->angles[molecule->angle_count++] = (tml_angle){a, centre, c, angle, ANGLE_TOLERANCE};
+        }
+    return TML_OK;
+}
+
+/* How a two-armed atom sits on a metal is not told by its other bonds. */
+static bool is_loose(const tml_making *making, const int32_t *arm, int count, double known) {
+    const tml_atom *atoms = making->molecule->atoms;
+    return count == 2 && isnan(known) && (tml_element_is_metal(atoms[arm[0]].element) || tml_element_is_metal(atoms[arm[1]].element));
 }
 
 static tml_status add_angles(tml_making *making, int32_t centre) {
@@ -166,10 +222,10 @@ static tml_status add_angles(tml_making *making, int32_t centre) {
     double angle[TML_ARMS_MAX][TML_ARMS_MAX] = {{0}};
     for (int i = 0; i < count; i++)
         for (int j = i + 1; j < count; j++) angle[i][j] = angle[j][i] = tml_lookup_angle(making, arm[i], centre, arm[j]);
+    if (is_loose(making, arm, count, angle[0][1])) return TML_OK;
     bool open_end = count == 2 && (molecule->atoms[centre].element == 6 || molecule->atoms[centre].element == 7);
     tml_arms_complete(angle, count, making->planar[centre] || open_end);
-    size_t need = (size_t)molecule->angle_count + (size_t)(count * (count - 1) / 2);
-    if (!tml_grow(&molecule->angles, &making->angle_room, need, sizeof *molecule->angles)) return tml_no_memory(making->error);
+    if (!reserve_angles(making, (size_t)(count * (count - 1) / 2))) return tml_no_memory(making->error);
     for (int i = 0; i < count; i++)
         for (int j = i + 1; j < count; j++)
             molecule->angles[molecule->angle_count++] = (tml_angle){arm[i], centre, arm[j], angle[i][j], ANGLE_TOLERANCE};
@@ -185,7 +241,7 @@ static tml_status make_centres(tml_making *making) {
     tml_molecule *molecule = making->molecule;
     for (int32_t i = 0; i < molecule->atom_count; i++) {
         int32_t degree = tml_degree(molecule, i), r = molecule->atoms[i].residue;
-        if (tml_is_bare(making, i) || making->planar[i] || degree < 3 || degree > TML_ARMS_MAX) continue;
+        if (tml_is_bare(making, i) || making->planar[i] || degree < 3 || is_open(making, i)) continue;
         if (!tml_grow(&molecule->centres, &making->centre_room, (size_t)molecule->centre_count + 1, sizeof *molecule->centres))
             return tml_no_memory(making->error);
         const int32_t *arm = &molecule->neighbours[molecule->neighbour_first[i]];

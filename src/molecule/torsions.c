@@ -4,6 +4,7 @@
 #include <string.h>
 
 #include "base/vector.h"
+#include "molecule/elements.h"
 
 /* Contents: one bond after the other - what is known of a bond - other pairs of outer atoms - cis and trans */
 
@@ -141,7 +142,7 @@ static bool of_ring(const tml_making *making, const tml_bond *bond, reference *k
 static bool is_tetrahedral(const tml_making *making, int32_t atom) {
     const tml_molecule *molecule = making->molecule;
     int32_t degree = tml_degree(molecule, atom);
-    if (making->planar[atom] || degree > TML_ARMS_MAX) return false;
+    if (making->planar[atom] || degree > TML_ARMS_MAX || tml_element_is_metal(molecule->atoms[atom].element)) return false;
     return degree >= 3 || (degree == 2 && (molecule->atoms[atom].element == 8 || molecule->atoms[atom].element == 16));
 }
 

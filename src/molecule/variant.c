@@ -32,7 +32,9 @@ static bool runs_on(const tml_layout_residue *a, const tml_layout_residue *b) {
 /* Neighbours in a chain are linked unless one says otherwise; a break lies between two that both say so, or where a residue
  * that says so meets a jump of numbers. */
 static bool linked(const tml_layout_residue *a, const tml_layout_residue *b) {
-    if (a->form == NULL || b->form == NULL || a->form->family != b->form->family || *a->form->family->tail == '\0') return false;
+    if (a->form == NULL || b->form == NULL || a->form->family->polymer != b->form->family->polymer ||
+        *a->form->family->tail == '\0' || *b->form->family->head == '\0')
+        return false;
     if (a->linking == TML_LINKING_END || a->linking == TML_LINKING_SINGLE) return false;
     if (b->linking == TML_LINKING_START || b->linking == TML_LINKING_SINGLE) return false;
     bool a_breaks = a->linking == TML_LINKING_BREAK, b_breaks = b->linking == TML_LINKING_BREAK;

@@ -1,0 +1,736 @@
+#include "molecule/component.h"
+
+#include <math.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "base/vector.h"
+#include "molecule/component_making.h"
+#include "molecule/elements.h"
+
+/* Contents: the steps - what the coordinates are worth - planes - atoms - bonds - angles - torsions - centres - charges - rows */
+
+static tml_status make_topology(tml_component_making *making);
+static tml_status judge_coordinates(tml_component_making *making);
+static tml_status make_planes(tml_component_making *making);
+static tml_status make_atoms(tml_component_making *making);
+static bool make_bonds(tml_component_making *making);
+static bool make_angles(tml_component_making *making);
+static tml_status make_torsions(tml_component_making *making);
+static tml_status make_centres(tml_component_making *making);
+static bool make_charges(tml_component_making *making);
+static tml_status end_rows(tml_component_making *making);
+
+tml_status tml_component_make(tml_component *component, tml_strings *pool, tml_error *error) {
+    tml_component_making making = {.component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1};
+    making.dropped = tml_alloc(component->atom_count, sizeof *making.dropped);
+    making.flat = tml_alloc(component->atom_count, sizeof *making.flat);
+    tml_status status = making.dropped == NULL || making.flat == NULL ? tml_no_memory(error) : make_topology(&making);
+    if (status == TML_OK) status = judge_coordinates(&making);
+    if (status == TML_OK) status = tml_component_join_chain(&making);
+    if (status == TML_OK) status = make_planes(&making);
+    if (status == TML_OK) status = make_atoms(&making);
+    if (status == TML_OK && !(make_bonds(&making) && make_angles(&making))) status = tml_no_memory(error);
+    if (status == TML_OK) status = make_torsions(&making);
+    if (status == TML_OK) status = make_centres(&making);
+    if (status == TML_OK && !make_charges(&making)) status = tml_no_memory(error);
+    if (status == TML_OK) status = tml_component_add_ends(&making);
+    if (status == TML_OK) status = end_rows(&making);
+    tml_topology_clear(&making.topology);
+    free(making.dropped);
+    free(making.flat);
+    component->made = status == TML_OK;
+    return status;
+}
+
+void tml_component_free(tml_component *component) {
+    if (component == NULL) return;
+    free(component->atoms);
+    free(component->bonds);
+    free(component->angles);
+    free(component->torsions);
+    free(component->centres);
+    free(component->plane_atoms);
+    free(component->atom_rows);
+    free(component->bond_rows);
+    free(component->angle_rows);
+    free(component->torsion_rows);
+    free(component->centre_rows);
+    free(component->charge_rows);
+    free(component->planes);
+    free(component);
+}
+
+tml_status tml_component_note(tml_component_making *making, const char *format, ...) {
+    tml_component *component = making->component;
+    char text[512];
+    int used = snprintf(text, sizeof text, "component %.32s: ", component->name);
+    va_list arguments;
+    va_start(arguments, format);
+    vsnprintf(text + used, sizeof text - (size_t)used, format, arguments);
+    va_end(arguments);
+    if (component->note_count == (int)(sizeof component->notes / sizeof *component->notes)) return TML_OK;
+    const char *kept = tml_strings_add(making->pool, text);
+    if (kept == NULL) return tml_no_memory(making->error);
+    component->notes[component->note_count++] = kept;
+    return TML_OK;
+}
+
+static tml_status make_topology(tml_component_making *making) {
+    const tml_component *component = making->component;
+    tml_topology *topology = &making->topology;
+    if (!tml_topology_new(topology, (int32_t)component->atom_count, (int32_t)component->bond_count)) return tml_no_memory(making->error);
+    int32_t hydrogens = 0, carbons = 0;
+    for (size_t i = 0; i < component->atom_count; i++) {
+        topology->elements[i] = component->atoms[i].element;
+        topology->charges[i] = component->atoms[i].charge;
+        hydrogens += component->atoms[i].element == 1;
+        carbons += component->atoms[i].element == 6;
+    }
+    for (size_t i = 0; i < component->bond_count; i++)
+        topology->bonds[i] = (tml_topology_bond){component->bonds[i].a, component->bonds[i].b, component->bonds[i].order, 0};
+    if (!tml_topology_finish(topology)) return tml_no_memory(making->error);
+    if (hydrogens == 0 && carbons > 1) return tml_component_note(making, "it lists no hydrogens, and is built without any");
+    return TML_OK;
+}
+
+/* ---- what the coordinates are worth ---- */
+
+static const double *place_of(const tml_component_making *making, int32_t atom) {
+    return making->component->atoms[atom].xyz;
+}
+
+static bool all_placed(const tml_component_making *making, const int32_t *atoms, int count) {
+    for (int k = 0; k < count; k++)
+        if (isnan(place_of(making, atoms[k])[0])) return false;
+    return making->placed;
+}
+
+/* Coordinates whose bonds are nowhere near what elements allow are no coordinates: zeros, a drawing. */
+static tml_status judge_coordinates(tml_component_making *making) {
+    static const double SHORTEST = 0.75, LONGEST = 1.35; /* of the usual length */
+    const tml_component *component = making->component;
+    bool any = false;
+    for (size_t i = 0; i < component->atom_count; i++) any = any || !isnan(component->atoms[i].xyz[0]);
+    making->placed = any;
+    for (size_t i = 0; any && i < component->bond_count; i++) {
+        const int32_t ends[2] = {component->bonds[i].a, component->bonds[i].b};
+        if (!all_placed(making, ends, 2)) continue;
+        double found = tml_distance(place_of(making, ends[0]), place_of(making, ends[1])),
+               usual = tml_topology_length(&making->topology, (int32_t)i);
+        if (found >= SHORTEST * usual && found <= LONGEST * usual) continue;
+        making->placed = false;
+        return tml_component_note(making, "its coordinates are not used: %.32s and %.32s are bonded, but stand %.2f Å apart",
+                                  component->atoms[ends[0]].name, component->atoms[ends[1]].name, found);
+    }
+    return TML_OK;
+}
+
+static double measured_angle(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
+    const int32_t atoms[3] = {a, b, c};
+    if (!all_placed(making, atoms, 3)) return NAN;
+    return tml_angle_of(place_of(making, a), place_of(making, b), place_of(making, c)) * 180 / TML_PI;
+}
+
+/* Signed volume of three unit arms; NAN without coordinates. */
+static double measured_volume(const tml_component_making *making, int32_t centre, const int32_t arms[3]) {
+    const int32_t atoms[4] = {centre, arms[0], arms[1], arms[2]};
+    if (!all_placed(making, atoms, 4)) return NAN;
+    double volume = tml_volume_of(place_of(making, centre), place_of(making, arms[0]), place_of(making, arms[1]), place_of(making, arms[2]));
+    for (int k = 0; k < 3; k++) volume /= tml_distance(place_of(making, centre), place_of(making, arms[k]));
+    return volume;
+}
+
+/* ---- planes ---- */
+
+static tml_status given_planes(tml_component_making *making);
+static tml_status planes_of_topology(tml_component_making *making);
+
+static tml_status make_planes(tml_component_making *making) {
+    return making->component->plane_atom_count > 0 ? given_planes(making) : planes_of_topology(making);
+}
+
+/* Atoms of the backbone have their plane in the rows of all amino acids. */
+static bool is_backbone(const tml_component_making *making, int32_t atom) {
+    return making->ca >= 0 && (atom == making->n || atom == making->ca || atom == making->c || atom == making->o);
+}
+
+bool tml_component_add_plane(tml_component_making *making, const char *const *names, size_t count) {
+    tml_component *component = making->component;
+    size_t length = 0;
+    for (size_t i = 0; i < count; i++) length += strlen(names[i]) + 1;
+    char *text = tml_alloc(length + 1, 1);
+    if (text == NULL) return false;
+    for (size_t i = 0; i < count; i++) {
+        strcat(text, names[i]);
+        if (i + 1 < count) strcat(text, " ");
+    }
+    const char *kept = tml_strings_add(making->pool, text);
+    free(text);
+    if (kept == NULL || !tml_grow(&component->planes, &component->plane_capacity, component->plane_count + 1, sizeof *component->planes))
+        return false;
+    component->planes[component->plane_count++] = kept;
+    return true;
+}
+
+/* A plane of these atoms, as far as they are there; those with two bonds in it are flat. */
+static bool add_plane(tml_component_making *making, const int32_t *atoms, size_t count) {
+    enum { SMALLEST = 4, ROOM = 64 };
+    const char *names[ROOM];
+    size_t kept = 0, outside = 0;
+    for (size_t i = 0; i < count; i++) {
+        if (making->dropped[atoms[i]] || kept == ROOM) continue;
+        names[kept++] = making->component->atoms[atoms[i]].name;
+        outside += !is_backbone(making, atoms[i]);
+    }
+    for (size_t i = 0; i < count; i++) {
+        int inside = 0;
+        for (size_t k = 0; k < count; k++) inside += tml_topology_bond_between(&making->topology, atoms[i], atoms[k]) >= 0;
+        if (inside >= 2 && tml_topology_degree(&making->topology, atoms[i]) <= 3) making->flat[atoms[i]] = true;
+    }
+    if (kept < SMALLEST || outside == 0) return true;
+    return tml_component_add_plane(making, names, kept);
+}
+
+static bool add_plane_about(tml_component_making *making, int32_t atom);
+
+/* Planes as the dictionary lists them; one too large for the tables goes atom by atom. */
+static tml_status given_planes(tml_component_making *making) {
+    enum { MOST = 64 };
+    const tml_component *component = making->component;
+    for (size_t first = 0, next; first < component->plane_atom_count; first = next) {
+        int32_t atoms[MOST];
+        size_t count = 0;
+        for (next = first; next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
+             next++)
+            if (count < MOST) atoms[count++] = component->plane_atoms[next].atom;
+        bool good = true;
+        if (next - first <= MOST)
+            good = add_plane(making, atoms, count);
+        else
+            for (size_t i = first; i < next && good; i++) good = add_plane_about(making, component->plane_atoms[i].atom);
+        if (!good) return tml_no_memory(making->error);
+    }
+    return TML_OK;
+}
+
+/* An atom and all its neighbours. */
+static bool add_plane_about(tml_component_making *making, int32_t atom) {
+    const tml_topology *topology = &making->topology;
+    int32_t atoms[4] = {atom}, degree = tml_topology_degree(topology, atom);
+    if (degree != 3) return true;
+    for (int32_t k = 0; k < 3; k++) atoms[1 + k] = topology->neighbours[topology->first[atom] + k];
+    return add_plane(making, atoms, 4);
+}
+
+/* Trigonal, and so in the coordinates too: nitrogen beside a double bond may be a pyramid. */
+static bool is_trigonal(const tml_component_making *making, int32_t atom) {
+    static const double FLAT = 0.25; /* of the volume of unit arms; a tetrahedron's is 0.77 */
+    const tml_topology *topology = &making->topology;
+    if (topology->shapes[atom] != TML_SHAPE_TRIGONAL) return false;
+    if (tml_topology_degree(topology, atom) != 3) return true;
+    double volume = measured_volume(making, atom, &topology->neighbours[topology->first[atom]]);
+    return isnan(volume) || fabs(volume) < FLAT;
+}
+
+static bool ring_is_flat(const tml_component_making *making, int32_t ring) {
+    enum { SMALLEST = 5, LARGEST = 7 };
+    static const double MOST_TURN = 15; /* degrees about its bonds */
+    const tml_topology *topology = &making->topology;
+    const int32_t *atoms = &topology->ring_atoms[topology->ring_first[ring]];
+    int32_t size = tml_topology_ring_size(topology, ring);
+    if (size < SMALLEST || size > LARGEST) return false;
+    for (int32_t i = 0; i < size; i++)
+        if (!is_trigonal(making, atoms[i])) return false;
+    for (int32_t i = 0; i < size; i++) {
+        const int32_t four[4] = {atoms[i], atoms[(i + 1) % size], atoms[(i + 2) % size], atoms[(i + 3) % size]};
+        if (!all_placed(making, four, 4)) continue;
+        double turn = tml_dihedral_of(place_of(making, four[0]), place_of(making, four[1]), place_of(making, four[2]), place_of(making, four[3]));
+        if (fabs(turn) * 180 / TML_PI > MOST_TURN) return false;
+    }
+    return true;
+}
+
+/* An atom and its neighbours into a set without repetition; false where it would grow too large. */
+static bool join(const tml_topology *topology, int32_t atom, bool with_neighbours, int32_t *set, size_t *count, size_t most) {
+    for (int32_t k = topology->first[atom] - 1; k < (with_neighbours ? topology->first[atom + 1] : topology->first[atom]); k++) {
+        int32_t next = k < topology->first[atom] ? atom : topology->neighbours[k];
+        size_t i = 0;
+        while (i < *count && set[i] != next) i++;
+        if (i < *count) continue;
+        if (*count == most) return false;
+        set[(*count)++] = next;
+    }
+    return true;
+}
+
+enum { FUSED_MOST = 48 };
+
+/* A flat ring with what hangs on it and the flat rings that share bonds with it; `taken` marks the rings. */
+static bool add_ring_system(tml_component_making *making, int32_t ring, bool *flat, bool *taken) {
+    const tml_topology *topology = &making->topology;
+    int32_t set[FUSED_MOST];
+    size_t count = 0;
+    for (int32_t k = topology->ring_first[ring]; k < topology->ring_first[ring + 1]; k++)
+        join(topology, topology->ring_atoms[k], true, set, &count, FUSED_MOST);
+    taken[ring] = true;
+    for (bool grown = true; grown;) {
+        grown = false;
+        for (int32_t r = 0; r < topology->ring_count; r++) {
+            if (taken[r] || !flat[r]) continue;
+            size_t shared = 0, before = count;
+            for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++)
+                for (size_t i = 0; i < count; i++) shared += set[i] == topology->ring_atoms[k];
+            if (shared < 3) continue; /* a shared bond and, as its neighbour, one more atom of the ring at each end of it */
+            bool fits = true;
+            for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1] && fits; k++)
+                fits = join(topology, topology->ring_atoms[k], true, set, &count, FUSED_MOST);
+            if (!fits)
+                count = before;
+            else
+                taken[r] = grown = true;
+        }
+    }
+    return add_plane(making, set, count);
+}
+
+static tml_status planes_of_topology(tml_component_making *making) {
+    const tml_topology *topology = &making->topology;
+    bool *flat = tml_alloc((size_t)topology->ring_count, sizeof *flat), *taken = tml_alloc((size_t)topology->ring_count, sizeof *taken);
+    bool room = flat != NULL && taken != NULL;
+    for (int32_t r = 0; room && r < topology->ring_count; r++) flat[r] = ring_is_flat(making, r);
+    for (int32_t r = 0; room && r < topology->ring_count; r++)
+        if (flat[r] && !taken[r]) room = add_ring_system(making, r, flat, taken);
+    for (int32_t i = 0; room && i < topology->bond_count; i++) {
+        const tml_topology_bond *bond = &topology->bonds[i];
+        if (!tml_topology_is_stiff(topology, i) || !is_trigonal(making, bond->a) || !is_trigonal(making, bond->b)) continue;
+        if (bond->ring > 0 && bond->ring <= 7) continue; /* the ring's own plane, or none */
+        int32_t set[8];
+        size_t count = 0;
+        join(topology, bond->a, true, set, &count, 8);
+        join(topology, bond->b, true, set, &count, 8);
+        room = add_plane(making, set, count);
+    }
+    for (int32_t i = 0; room && i < topology->atom_count; i++)
+        if (is_trigonal(making, i)) {
+            making->flat[i] = true;
+            room = add_plane_about(making, i);
+        }
+    free(flat);
+    free(taken);
+    return room ? TML_OK : tml_no_memory(making->error);
+}
+
+/* ---- atoms ---- */
+
+static double length_of(const tml_component_making *making, int32_t bond);
+
+bool tml_component_add_atom(tml_component *component, tml_atom_row row) {
+    if (!tml_grow(&component->atom_rows, &component->atom_row_capacity, component->atom_row_count + 1, sizeof *component->atom_rows))
+        return false;
+    component->atom_rows[component->atom_row_count++] = row;
+    return true;
+}
+
+typedef struct walk { int32_t *parent, *queue, head, tail; } walk;
+
+/* Breadth first along bonds from what the queue holds: `parent` gets the atom that each was reached from, plus one. */
+static void walk_on(const tml_component_making *making, walk *w, bool leaving) {
+    const tml_topology *topology = &making->topology;
+    for (; w->head < w->tail; w->head++)
+        for (int32_t k = topology->first[w->queue[w->head]]; k < topology->first[w->queue[w->head] + 1]; k++) {
+            int32_t next = topology->neighbours[k];
+            if (w->parent[next] != 0 || making->dropped[next] || (making->component->atoms[next].leaving && !leaving)) continue;
+            w->parent[next] = w->queue[w->head] + 1;
+            w->queue[w->tail++] = next;
+        }
+}
+
+/* A tree over each connected part; -1 for its root. Leaving atoms are reached last, so that nothing that stays hangs on them. */
+static void span(const tml_component_making *making, int32_t *parent, int32_t *queue) {
+    walk w = {parent, queue, 0, 0};
+    for (int pass = 0; pass < 2; pass++) {
+        w.head = 0;
+        if (pass == 1) walk_on(making, &w, true);
+        for (int32_t root = 0; root < making->topology.atom_count; root++) {
+            if (parent[root] != 0 || making->dropped[root] || (making->component->atoms[root].leaving && pass == 0)) continue;
+            parent[root] = -1;
+            queue[w.tail++] = root;
+            walk_on(making, &w, pass == 1);
+        }
+    }
+}
+
+static tml_status make_atoms(tml_component_making *making) {
+    tml_component *component = making->component;
+    int32_t *parent = tml_alloc(component->atom_count, sizeof *parent), *queue = tml_alloc(component->atom_count, sizeof *queue);
+    bool room = parent != NULL && queue != NULL;
+    if (room) span(making, parent, queue);
+    for (size_t i = 0; room && i < component->atom_count; i++) {
+        const tml_component_atom *atom = &component->atoms[i];
+        if (making->dropped[i]) continue;
+        tml_atom_row row = {.name = atom->name, .parent = "", .element = atom->element, .optional = atom->leaving ? TML_LEAVING : 0};
+        if (parent[i] > 0) {
+            row.parent = component->atoms[parent[i] - 1].name;
+            row.length = length_of(making, tml_topology_bond_between(&making->topology, (int32_t)i, parent[i] - 1));
+        }
+        room = tml_component_add_atom(component, row);
+    }
+    free(parent);
+    free(queue);
+    return room ? TML_OK : tml_no_memory(making->error);
+}
+
+/* ---- bonds ---- */
+
+/* To hydrogen: nuclear; others as the dictionary has it, as its coordinates have it, or as the elements have it. */
+static double length_of(const tml_component_making *making, int32_t index) {
+    const tml_component_bond *bond = &making->component->bonds[index];
+    const tml_topology *topology = &making->topology;
+    bool hydrogen = topology->elements[bond->a] == 1 || topology->elements[bond->b] == 1;
+    int32_t heavy = topology->elements[bond->a] == 1 ? bond->b : bond->a;
+    double usual = tml_topology_length(topology, index);
+    if (hydrogen && !isnan(tml_hydrogen_length(topology->elements[heavy], false))) return usual;
+    if (!isnan(bond->length)) return bond->length;
+    const int32_t ends[2] = {bond->a, bond->b};
+    return all_placed(making, ends, 2) ? tml_distance(place_of(making, bond->a), place_of(making, bond->b)) : usual;
+}
+
+static bool is_parent(const tml_component *component, const char *child, const char *parent) {
+    for (size_t i = 0; i < component->atom_row_count; i++)
+        if (component->atom_rows[i].name == child) return component->atom_rows[i].parent == parent;
+    return false;
+}
+
+static bool add_bond(tml_component *component, tml_bond_row row) {
+    if (!tml_grow(&component->bond_rows, &component->bond_row_capacity, component->bond_row_count + 1, sizeof *component->bond_rows))
+        return false;
+    component->bond_rows[component->bond_row_count++] = row;
+    return true;
+}
+
+static bool make_bonds(tml_component_making *making) {
+    tml_component *component = making->component;
+    for (size_t i = 0; i < component->bond_count; i++) {
+        int32_t a = component->bonds[i].a, b = component->bonds[i].b;
+        if (making->dropped[a] || making->dropped[b]) continue;
+        const char *first = component->atoms[a].name, *second = component->atoms[b].name;
+        if (is_parent(component, first, second) || is_parent(component, second, first)) continue;
+        if (!add_bond(component, (tml_bond_row){first, second, length_of(making, (int32_t)i), ""})) return false;
+    }
+    return true;
+}
+
+/* ---- angles ---- */
+
+bool tml_component_add_angle(tml_component *component, const char *a, const char *b, const char *c, double degrees) {
+    if (!tml_grow(&component->angle_rows, &component->angle_row_capacity, component->angle_row_count + 1, sizeof *component->angle_rows))
+        return false;
+    component->angle_rows[component->angle_row_count++] = (tml_angle_row){a, b, c, degrees, ""};
+    return true;
+}
+
+static double angle_of(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
+    const tml_component *component = making->component;
+    for (size_t i = 0; i < component->angle_count; i++) {
+        const tml_component_angle *angle = &component->angles[i];
+        if (angle->b == b && ((angle->a == a && angle->c == c) || (angle->a == c && angle->c == a))) return angle->degrees;
+    }
+    double measured = measured_angle(making, a, b, c);
+    return isnan(measured) ? tml_topology_angle(&making->topology, a, b, c) : measured;
+}
+
+/* Angles between heavy arms, and with hydrogen where nothing else fixes it: on two arms. The others follow from these (arms.c). About
+ * metals and atoms of five and more arms, what the dictionary knows. */
+static bool make_angles(tml_component_making *making) {
+    const tml_topology *topology = &making->topology;
+    const tml_component_atom *atoms = making->component->atoms;
+    for (int32_t b = 0; b < topology->atom_count; b++) {
+        if (making->dropped[b] || (b == making->c && *making->component->family.tail != '\0')) continue;
+        int32_t degree = tml_topology_degree(topology, b);
+        bool open = topology->shapes[b] == TML_SHAPE_OTHER;
+        for (int32_t i = topology->first[b]; i < topology->first[b + 1]; i++)
+            for (int32_t j = i + 1; j < topology->first[b + 1]; j++) {
+                int32_t a = topology->neighbours[i], c = topology->neighbours[j];
+                if (making->dropped[a] || making->dropped[c]) continue;
+                bool hydrogen = topology->elements[a] == 1 || topology->elements[c] == 1;
+                if (hydrogen && degree > 2 && !open) continue;
+                double degrees = angle_of(making, a, b, c);
+                if (!isnan(degrees) && !tml_component_add_angle(making->component, atoms[a].name, atoms[b].name, atoms[c].name, degrees))
+                    return false;
+            }
+    }
+    return true;
+}
+
+/* ---- torsions ---- */
+
+typedef struct turn { int32_t a, d; double degrees; } turn;
+
+static bool known_turn(const tml_component_making *making, int32_t bond, turn *found);
+
+static bool shares_plane(const tml_component_making *making, int32_t b, int32_t c);
+
+/* About bonds within planar groups and double bonds: 0 or 180°. Double bonds of which nobody says which are counted. */
+static tml_status make_torsions(tml_component_making *making) {
+    tml_component *component = making->component;
+    const tml_topology *topology = &making->topology;
+    int unknown = 0;
+    const char *example[2] = {"", ""};
+    for (int32_t i = 0; i < topology->bond_count; i++) {
+        int32_t b = topology->bonds[i].a, c = topology->bonds[i].b;
+        if (!making->flat[b] || !making->flat[c] || making->dropped[b] || making->dropped[c]) continue;
+        if (is_backbone(making, b) && is_backbone(making, c)) continue;
+        if (tml_topology_degree(topology, b) < 2 || tml_topology_degree(topology, c) < 2) continue;
+        bool stiff = tml_topology_is_stiff(topology, i);
+        if (!stiff && !shares_plane(making, b, c)) continue;
+        turn found;
+        if (known_turn(making, i, &found)) {
+            if (!tml_grow(&component->torsion_rows, &component->torsion_row_capacity, component->torsion_row_count + 1,
+                          sizeof *component->torsion_rows))
+                return tml_no_memory(making->error);
+            component->torsion_rows[component->torsion_row_count++] =
+                (tml_torsion_row){component->atoms[found.a].name, component->atoms[b].name, component->atoms[c].name,
+                                  component->atoms[found.d].name, found.degrees, 0};
+        } else if (stiff && topology->bonds[i].order == TML_ORDER_DOUBLE && unknown++ == 0) {
+            example[0] = component->atoms[b].name;
+            example[1] = component->atoms[c].name;
+        }
+    }
+    if (unknown == 0) return TML_OK;
+    return tml_component_note(making, "it does not say what is cis and what trans about %.32s=%.32s%s; either may come", example[0], example[1],
+                              unknown > 1 ? " and others" : "");
+}
+
+/* Does a plane that the dictionary lists hold the bond with an arm on either side? */
+static bool shares_plane(const tml_component_making *making, int32_t b, int32_t c) {
+    const tml_component *component = making->component;
+    const tml_topology *topology = &making->topology;
+    for (size_t first = 0, next; first < component->plane_atom_count; first = next) {
+        bool has_b = false, has_c = false, beside_b = false, beside_c = false;
+        for (next = first; next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
+             next++) {
+            int32_t atom = component->plane_atoms[next].atom;
+            has_b = has_b || atom == b;
+            has_c = has_c || atom == c;
+            beside_b = beside_b || (atom != c && tml_topology_bond_between(topology, atom, b) >= 0);
+            beside_c = beside_c || (atom != b && tml_topology_bond_between(topology, atom, c) >= 0);
+        }
+        if (has_b && has_c && beside_b && beside_c) return true;
+    }
+    return false;
+}
+
+static bool listed_turn(const tml_component_making *making, int32_t b, int32_t c, turn *found);
+static bool same_arms(const tml_component_making *making, int32_t atom, int32_t other);
+
+/* From the coordinates, the dictionary's torsions, the ring that the bond is in, or because it makes no difference. */
+static bool known_turn(const tml_component_making *making, int32_t bond, turn *found) {
+    static const double OFF = 35; /* degrees */
+    const tml_topology *topology = &making->topology;
+    int32_t b = topology->bonds[bond].a, c = topology->bonds[bond].b;
+    if (listed_turn(making, b, c, found)) return true;
+    int32_t a = -1, d = -1;
+    for (int32_t i = topology->first[b]; i < topology->first[b + 1]; i++)
+        for (int32_t j = topology->first[c]; j < topology->first[c + 1]; j++) {
+            const int32_t four[4] = {topology->neighbours[i], b, c, topology->neighbours[j]};
+            if (four[0] == c || four[3] == b || four[0] == four[3] || making->dropped[four[0]] || making->dropped[four[3]]) continue;
+            int32_t ring = tml_topology_ring_of(topology, four[0], b, c);
+            if (ring >= 0 && ring == tml_topology_ring_of(topology, b, c, four[3]) && tml_topology_ring_size(topology, ring) <= 7) {
+                *found = (turn){four[0], four[3], 0};
+                return true;
+            }
+            if (a < 0) {
+                a = four[0];
+                d = four[3];
+            }
+            if (!all_placed(making, four, 4)) continue;
+            double angle = fabs(tml_dihedral_of(place_of(making, four[0]), place_of(making, b), place_of(making, c), place_of(making, four[3]))) *
+                           180 / TML_PI;
+            if (angle > OFF && angle < 180 - OFF) continue;
+            *found = (turn){four[0], four[3], angle < 90 ? 0 : 180};
+            return true;
+        }
+    if (a < 0 || !(same_arms(making, b, c) || same_arms(making, c, b))) return false;
+    *found = (turn){a, d, 180};
+    return true;
+}
+
+/* A torsion of the dictionary that leaves no doubt: 0 or 180°, within a few degrees. */
+static bool listed_turn(const tml_component_making *making, int32_t b, int32_t c, turn *found) {
+    static const double OFF = 10, WIDEST = 15;
+    const tml_component *component = making->component;
+    if (making->placed) return false; /* listed values may stand for one of several minima; the coordinates do not */
+    for (size_t i = 0; i < component->torsion_count; i++) {
+        const tml_component_torsion *torsion = &component->torsions[i];
+        bool forwards = torsion->b == b && torsion->c == c, backwards = torsion->b == c && torsion->c == b;
+        double angle = fabs(remainder(torsion->degrees, 360));
+        if ((!forwards && !backwards) || torsion->spread > WIDEST || (angle > OFF && angle < 180 - OFF)) continue;
+        if (making->dropped[torsion->a] || making->dropped[torsion->d]) continue;
+        *found = (turn){forwards ? torsion->a : torsion->d, forwards ? torsion->d : torsion->a, angle < 90 ? 0 : 180};
+        return true;
+    }
+    return false;
+}
+
+/* Has an atom but one arm beside `other`, or two of a kind? */
+static bool same_arms(const tml_component_making *making, int32_t atom, int32_t other) {
+    const tml_topology *topology = &making->topology;
+    int32_t rank = -1;
+    for (int32_t k = topology->first[atom]; k < topology->first[atom + 1]; k++) {
+        int32_t next = topology->neighbours[k];
+        if (next == other) continue;
+        if (rank >= 0 && topology->ranks[next] != rank) return false;
+        rank = topology->ranks[next];
+    }
+    return tml_topology_degree(topology, atom) == 3;
+}
+
+/* ---- centres ---- */
+
+static int arms_of(const tml_component_making *making, int32_t atom, int32_t arms[4]);
+static const tml_component_centre *listed_centre(const tml_component_making *making, int32_t atom);
+static int sign_of(const tml_component_making *making, int32_t atom, int32_t arms[4], int count, bool *asked);
+
+static tml_status make_centres(tml_component_making *making) {
+    tml_component *component = making->component;
+    const tml_topology *topology = &making->topology;
+    int unknown = 0;
+    const char *example = "";
+    for (int32_t i = 0; i < topology->atom_count; i++) {
+        int32_t arms[4], degree = tml_topology_degree(topology, i);
+        if (making->dropped[i] || making->flat[i] || topology->shapes[i] == TML_SHAPE_OTHER || degree < 3) continue;
+        if (making->ca >= 0 && (i == making->n || i == making->c)) continue;
+        int count = arms_of(making, i, arms);
+        if (count < 3) continue;
+        bool asked = false;
+        int sign = sign_of(making, i, arms, count, &asked);
+        if (sign == 0 && asked && unknown++ == 0) example = component->atoms[i].name;
+        if (sign == 0 && making->ca >= 0 && degree == 4 && topology->ranks[arms[0]] != topology->ranks[arms[2]])
+            continue; /* the rows of all amino acids may know better */
+        if (!tml_grow(&component->centre_rows, &component->centre_row_capacity, component->centre_row_count + 1, sizeof *component->centre_rows))
+            return tml_no_memory(making->error);
+        component->centre_rows[component->centre_row_count++] =
+            (tml_centre_row){component->atoms[i].name, component->atoms[arms[0]].name, component->atoms[arms[1]].name,
+                             component->atoms[arms[2]].name, (int8_t)sign};
+    }
+    if (unknown == 0) return TML_OK;
+    return tml_component_note(making, "it gives no handedness for %.32s%s; either hand may come", example, unknown > 1 ? " and others" : "");
+}
+
+/* Neighbours that are there, those that may leave last. */
+static int arms_of(const tml_component_making *making, int32_t atom, int32_t arms[4]) {
+    const tml_topology *topology = &making->topology;
+    int count = 0;
+    for (int pass = 0; pass < 2; pass++)
+        for (int32_t k = topology->first[atom]; k < topology->first[atom + 1]; k++) {
+            int32_t next = topology->neighbours[k];
+            if (!making->dropped[next] && making->component->atoms[next].leaving == (pass == 1) && count < 4) arms[count++] = next;
+        }
+    return count;
+}
+
+static const tml_component_centre *listed_centre(const tml_component_making *making, int32_t atom) {
+    const tml_component *component = making->component;
+    for (size_t i = 0; i < component->centre_count; i++) {
+        const tml_component_centre *centre = &component->centres[i];
+        if (centre->c != atom) continue;
+        bool good = true;
+        for (int k = 0; k < 3; k++)
+            good = good && !making->dropped[centre->arms[k]] && tml_topology_bond_between(&making->topology, atom, centre->arms[k]) >= 0;
+        if (good) return centre;
+    }
+    return NULL;
+}
+
+/* The hand of three arms, 0 for none that is known; arms change to those that the dictionary lists. `asked`: the graph tells all
+ * arms apart, so that a hand should be known. */
+static int sign_of(const tml_component_making *making, int32_t atom, int32_t arms[4], int count, bool *asked) {
+    static const double SMALLEST = 0.1; /* of the volume of unit arms */
+    const tml_topology *topology = &making->topology;
+    int equal = 0, most_equal = 1, hydrogens = 0;
+    for (int i = 0; i < count; i++) {
+        int same = 0;
+        for (int k = 0; k < count; k++) same += topology->ranks[arms[k]] == topology->ranks[arms[i]];
+        equal += same > 1;
+        most_equal = same > most_equal ? same : most_equal;
+        hydrogens += topology->elements[arms[i]] == 1;
+    }
+    bool turns_over = topology->elements[atom] == 7 && (count == 3 || hydrogens > 0);
+    *asked = equal == 0 && !turns_over && topology->shapes[atom] == TML_SHAPE_TETRAHEDRAL && (count == 4 || topology->elements[atom] != 6);
+    const tml_component_centre *listed = listed_centre(making, atom);
+    if (listed != NULL && listed->sign != 0) {
+        for (int k = 0; k < 3; k++) arms[k] = listed->arms[k];
+        return listed->sign;
+    }
+    if ((listed != NULL && equal == 0) || most_equal >= 3 || turns_over) return 0;
+    double volume = measured_volume(making, atom, arms);
+    if (!isnan(volume) && fabs(volume) > SMALLEST) return volume > 0 ? 1 : -1;
+    return 0;
+}
+
+/* ---- charges ---- */
+
+static bool add_charge(tml_component *component, const char *atom, int charge) {
+    if (!tml_grow(&component->charge_rows, &component->charge_row_capacity, component->charge_row_count + 1, sizeof *component->charge_rows))
+        return false;
+    component->charge_rows[component->charge_row_count++] = (tml_charge_row){atom, (int8_t)charge, ""};
+    return true;
+}
+
+/* Where the dictionary has no formal charges: a nitrogen with four arms has one more, an oxygen with one single bond one less, and of
+ * two oxygens that share a double bond the last-named bears the charge. */
+static int charge_by_valence(const tml_component_making *making, int32_t atom) {
+    const tml_topology *topology = &making->topology;
+    int32_t first = topology->first[atom], degree = tml_topology_degree(topology, atom);
+    if (topology->elements[atom] == 7) return degree == 4;
+    if (topology->elements[atom] != 8 || degree != 1) return 0;
+    int32_t centre = topology->neighbours[first];
+    tml_order order = topology->bonds[topology->via[first]].order;
+    if (order == TML_ORDER_SINGLE) return topology->elements[centre] == 1 || tml_element_is_metal(topology->elements[centre]) ? 0 : -1;
+    if (order != TML_ORDER_DELOCALISED) return 0;
+    int others = 0;
+    for (int32_t k = topology->first[centre]; k < topology->first[centre + 1]; k++) {
+        int32_t next = topology->neighbours[k];
+        if (topology->elements[next] != 8 || tml_topology_degree(topology, next) != 1) continue;
+        if (next > atom) return 0;
+        others += next < atom;
+    }
+    return others == 0 ? 0 : topology->elements[centre] == 6 || topology->elements[centre] == 7 ? -1 : 0;
+}
+
+static bool make_charges(tml_component_making *making) {
+    tml_component *component = making->component;
+    for (size_t i = 0; i < component->atom_count; i++) {
+        int32_t atom = (int32_t)i;
+        int charge = component->charges_given ? component->atoms[i].charge : charge_by_valence(making, atom);
+        if (charge == 0 || making->dropped[i] || (making->ca >= 0 && atom == making->n)) continue;
+        if (!add_charge(component, component->atoms[i].name, charge)) return false;
+    }
+    return true;
+}
+
+/* ---- rows ---- */
+
+/* Each list ends with a row without a name: growing zeroes it. */
+static tml_status end_rows(tml_component_making *making) {
+    tml_component *c = making->component;
+    if (!tml_component_add_atom(c, (tml_atom_row){0}) || !add_bond(c, (tml_bond_row){0}) ||
+        !tml_component_add_angle(c, NULL, NULL, NULL, 0) ||
+        !tml_grow(&c->torsion_rows, &c->torsion_row_capacity, c->torsion_row_count + 1, sizeof *c->torsion_rows) ||
+        !tml_grow(&c->centre_rows, &c->centre_row_capacity, c->centre_row_count + 1, sizeof *c->centre_rows) ||
+        !add_charge(c, NULL, 0) || !tml_grow(&c->planes, &c->plane_capacity, c->plane_count + 1, sizeof *c->planes))
+        return tml_no_memory(making->error);
+    c->form = (tml_template){.name = c->name,
+                             .family = &c->family,
+                             .atoms = c->atom_rows,
+                             .bonds = c->bond_rows,
+                             .angles = c->angle_rows,
+                             .torsions = c->torsion_rows,
+                             .centres = c->centre_rows,
+                             .charges = c->charge_rows,
+                             .planes = c->planes};
+    return TML_OK;
+}
