@@ -7,7 +7,7 @@
 #include "base/vector.h"
 #include "ensemble/ensemble.h"
 #include "ensemble/fragment.h"
-#include "ensemble/superpose.h"
+#include "base/superpose.h"
 #include "molecule/elements.h"
 #include "sheets.h"
 

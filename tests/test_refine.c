@@ -22,6 +22,8 @@ typedef struct model {
     int32_t plane_atoms[4], neighbour_first[ATOMS + 1], neighbours[16];
     double plane_xy[8];
     tml_distance_restraint distances[4];
+    tml_alike alike;
+    int32_t alike_atoms[9];
     tml_alternative alternatives[6];
     int32_t group_atoms[10];
     tml_dihedral_restraint dihedrals[2];
@@ -57,6 +59,14 @@ static void make_model(model *m) {
                                .centres = m->centres, .centre_count = 2, .planes = &m->plane, .plane_count = 1,
                                .plane_atoms = m->plane_atoms, .plane_xy = m->plane_xy, .plane_atom_count = 4,
                                .neighbour_first = m->neighbour_first, .neighbours = m->neighbours};
+
+    /* Three chains' worth of atoms that are alike. */
+    memcpy(m->alike_atoms, (int32_t[]){0, 1, 2, 5, 6, 7, 8, 9, 10}, sizeof m->alike_atoms);
+    m->alike = (tml_alike){.count = 3, .copies = 3};
+    molecule->alike = &m->alike;
+    molecule->alike_count = 1;
+    molecule->alike_atoms = m->alike_atoms;
+    molecule->alike_atom_count = 9;
 
     /* Two peptide bonds that meet in one residue give it phi (1 5 6 7) and psi (5 6 7 10). */
     m->residue.name = "ALA";
@@ -147,6 +157,8 @@ GRADIENT(planes, .plane = 10)
 GRADIENT(distance_sums_and_choices, .restraint = 5, .restraint_bend = 0.5, .restraint_fade = 0.7)
 GRADIENT(dihedral_intervals, .dihedral = 5, .dihedral_bend = 0.3)
 GRADIENT(backbone_preference, .backbone = 3)
+GRADIENT(alike_shapes, .alike = 2)
+GRADIENT(symmetric_arrangement, .symmetric = 2, .symmetric_bend = 0.4)
 GRADIENT(repulsion, .repulsion = 5, .radius_scale = 1.0)
 
 /* Flat centres need a planar atom with three bonded neighbours in the group. */

@@ -83,6 +83,7 @@ typedef struct tml_read_options {
     const tml_table *tables; /* read after the other inputs, whose sequence they need */
     size_t table_count;
     const char *old_names;   /* the same as in a table, for the restraints of the other inputs */
+    bool alike_chains;     /* chains of the same residues take the same shape, as if a sheet said that they are alike */
 } tml_read_options;
 
 /* Read inputs (sheet, NEF; told by content; "-" for standard input, gzip understood) into one problem.
@@ -191,6 +192,7 @@ typedef struct tml_measures {
     double bond_rms, bond_max, angle_rms;
     double plane_max;       /* largest r.m.s. distance of a planar group from its best plane, Å */
     int32_t overlaps;       /* pairs more than three bonds apart, closer than their radii by 0.6 Å (1.0 for polar pairs) */
+    double alike_rms;       /* between the chains that are alike, heavy atoms, the worst two, Å; NAN where there are none */
     double backbone_usual;  /* share of residues in the usual regions of phi and psi; NAN where there are none */
 } tml_measures;
 

@@ -260,6 +260,10 @@ bool tml_cli_read_option(const tml_command *command, int got, const char *value,
     const char **old_names = options->table_count > 0 ? &tables[options->table_count - 1].old_names : &options->old_names;
     switch (got) {
     case TML_OPTION_STEREO: *status = take_stereo(command, value, options); return true;
+    case TML_OPTION_ALIKE:
+        options->alike_chains = true;
+        *status = -1;
+        return true;
     case TML_OPTION_TABLE: *status = take_table(command, value, options); return true;
     case TML_OPTION_COLUMNS:
     case TML_OPTION_TABLE_FORM: *status = take_columns(command, got, value, options); return true;

@@ -26,6 +26,7 @@ enum { TML_EXIT_DONE = 0, TML_EXIT_FINDING = 1, TML_EXIT_USAGE = 2, TML_EXIT_MAC
 enum {
     TML_OPTION_HELP = 1000,
     TML_OPTION_STEREO,
+    TML_OPTION_ALIKE,
     TML_OPTION_TABLE,
     TML_OPTION_COLUMNS,
     TML_OPTION_TABLE_FORM,
@@ -37,13 +38,15 @@ enum {
  * taking: *status is -1 to go on, or the exit status after a message. false where `got` is none of them. The tables that they name
  * are kept in command.c, once for the one command of a run. */
 #define TML_READ_OPTIONS                                                                                                \
-    {"stereo", required_argument, NULL, TML_OPTION_STEREO}, {"table", required_argument, NULL, TML_OPTION_TABLE},       \
+    {"stereo", required_argument, NULL, TML_OPTION_STEREO}, {"alike", no_argument, NULL, TML_OPTION_ALIKE},             \
+        {"table", required_argument, NULL, TML_OPTION_TABLE},                                                           \
         {"columns", required_argument, NULL, TML_OPTION_COLUMNS},                                                       \
         {"table-form", required_argument, NULL, TML_OPTION_TABLE_FORM},                                                 \
         {"old-names", required_argument, NULL, TML_OPTION_OLD_NAMES}
 #define TML_READ_HELP                                                                                                   \
     "      --stereo open|sum    names with x and y, as HBx: every model takes the assignment of x and y that it violates\n"  \
     "                           least (default), or both members of the pair count, summed\n"                            \
+    "      --alike              chains of the same residues take the same shape, as with the sheet's statement\n"       \
     "      --table FILE         read restraints from the table FILE, too; it needs --columns\n"                            \
     "      --columns WORDS      what the columns of the table before it hold, in their order, such as \"chain_1\n"         \
     "                           residue_1 atom_1 chain_2 residue_2 atom_2 lower upper id\"; '-' passes over one,\n"        \

@@ -18,7 +18,7 @@
 #include "base/vector.h"
 #include "embed/embed.h"
 #include "ensemble/cis.h"
-#include "ensemble/superpose.h"
+#include "base/superpose.h"
 #include "refine/refine.h"
 #include "sample/metrize.h"
 

@@ -2,6 +2,7 @@
  *
  *   restraints   distances, dihedrals
  *   geometry     bonds, angles, planes, hands, peptide bonds
+ *   alike        chains that are to have one shape
  *   contacts     pairs that overlap, over a grid of cells
  *   backbone     share of usual phi and psi
  */
@@ -11,6 +12,7 @@
 #include <string.h>
 
 #include "base/memory.h"
+#include "base/superpose.h"
 #include "base/vector.h"
 #include "ensemble/ensemble.h"
 #include "molecule/elements.h"
@@ -22,6 +24,7 @@ static void measure_geometry(const tml_molecule *molecule, const double *xyz, tm
 static void measure_planes(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static void measure_peptides(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static bool measure_overlaps(const tml_molecule *molecule, const double *xyz, tml_measures *out);
+static bool measure_alike(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 static bool measure_backbone(const tml_molecule *molecule, const double *xyz, tml_measures *out);
 
 tml_status tml_measure(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out, tml_error *error) {
@@ -30,7 +33,7 @@ tml_status tml_measure(const tml_problem *problem, const bool *swapped, const do
     measure_geometry(&problem->molecule, xyz, out);
     measure_planes(&problem->molecule, xyz, out);
     measure_peptides(&problem->molecule, xyz, out);
-    if (!measure_overlaps(&problem->molecule, xyz, out) || !measure_backbone(&problem->molecule, xyz, out)) return tml_no_memory(error);
+    if (!measure_alike(&problem->molecule, xyz, out) || !measure_overlaps(&problem->molecule, xyz, out) || !measure_backbone(&problem->molecule, xyz, out)) return tml_no_memory(error);
     return TML_OK;
 }
 
@@ -116,6 +119,27 @@ static void measure_peptides(const tml_molecule *molecule, const double *xyz, tm
         out->cis_undeclared += omega < OFF && !peptide->cis && !proline;
         out->omega_off += (peptide->cis ? omega : 180.0 - omega) > OFF;
     }
+}
+
+/* ---- alike chains ---- */
+
+/* The worst two copies, each superposed on the other. */
+static bool measure_alike(const tml_molecule *molecule, const double *xyz, tml_measures *out) {
+    out->alike_rms = molecule->alike_count > 0 ? 0 : NAN;
+    for (int32_t s = 0; s < molecule->alike_count; s++) {
+        const tml_alike *set = &molecule->alike[s];
+        const int32_t *atoms = &molecule->alike_atoms[set->first];
+        size_t count = (size_t)set->count;
+        double *copies = tml_alloc((size_t)set->copies * count * 3, sizeof *copies);
+        tml_motion motion;
+        if (copies == NULL) return false;
+        for (size_t i = 0; i < (size_t)set->copies * count; i++) memcpy(&copies[3 * i], &xyz[3 * atoms[i]], 3 * sizeof *copies);
+        for (int32_t c = 0; c < set->copies; c++)
+            for (int32_t d = 0; d < c; d++)
+                out->alike_rms = fmax(out->alike_rms, tml_superpose(&copies[3 * count * (size_t)c], &copies[3 * count * (size_t)d], NULL, set->count, &motion));
+        free(copies);
+    }
+    return true;
 }
 
 /* ---- contacts ---- */

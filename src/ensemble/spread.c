@@ -11,7 +11,7 @@
 
 #include "base/memory.h"
 #include "ensemble/ensemble.h"
-#include "ensemble/superpose.h"
+#include "base/superpose.h"
 
 /* A residue is well defined where the r.m.s. spread of its backbone about the mean is at most this, Å. */
 static const double LAST_CUTOFF = 1.5, FIRST_CUTOFF = 6.0, CUTOFF_STEP = 0.75;

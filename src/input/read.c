@@ -28,6 +28,7 @@ tml_status tml_problem_read(const char *const *paths, size_t path_count, const t
     for (size_t i = 0; status == TML_OK && i < options->table_count; i++)
         status = read_one(&draft, options->tables[i].path, &options->tables[i], error);
     if (status == TML_OK) status = tml_make_components(&draft, error);
+    if (status == TML_OK && options->alike_chains && !tml_outline_find_alike(&draft.outline)) status = tml_no_memory(error);
     if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, error);
     if (status == TML_OK) status = tml_restraints_map(&draft.rows, options, problem, error);
     tml_outline_clear(&draft.outline);

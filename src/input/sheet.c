@@ -221,6 +221,22 @@ static tml_status variant_statement(sheet *s) {
     return status == TML_OK ? no_more(s, 4) : status;
 }
 
+static tml_status alike_statement(sheet *s) {
+    tml_outline *outline = &s->draft->outline;
+    if (s->count < 3) return expected(s, s->count, s->count < 2 ? "a chain" : "another chain that is alike");
+    tml_outline_alike alike = {.chains = tml_alloc((size_t)s->count, sizeof *alike.chains), .place = here(s, 1)};
+    if (alike.chains == NULL) return tml_no_memory(s->error);
+    tml_status status = TML_OK;
+    for (int i = 1; i < s->count && status == TML_OK; i++) status = text_at(s, i, "a chain", &alike.chains[alike.chain_count++]);
+    if (status == TML_OK && !tml_grow(&outline->alike, &outline->alike_capacity, outline->alike_count + 1, sizeof *outline->alike))
+        status = tml_no_memory(s->error);
+    if (status == TML_OK)
+        outline->alike[outline->alike_count++] = alike;
+    else
+        free(alike.chains);
+    return status;
+}
+
 static tml_status ends_statement(sheet *s) {
     static const char *const WORDS[] = {"charged", "neutral", "open"};
     tml_outline *outline = &s->draft->outline;
@@ -377,11 +393,11 @@ static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
     {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
     {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
-    {"component", component_statement},
+    {"alike", alike_statement},      {"component", component_statement},
 };
 
 /* Words of the grammar that this version cannot carry out. */
-static const char *const LATER[] = {"molecule", "alike"};
+static const char *const LATER[] = {"molecule"};
 
 static tml_status run_statement(sheet *s) {
     char name[64] = "", near[160] = "";

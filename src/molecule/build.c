@@ -22,6 +22,7 @@ tml_status tml_molecule_build(const tml_outline *outline, const char *const *fil
     if (status == TML_OK) status = make_bonds(&making);
     if (status == TML_OK) status = list_neighbours(&making);
     if (status == TML_OK) status = tml_make_terms(&making);
+    if (status == TML_OK) status = tml_make_alike(&making);
     tml_index_free(making.atom_index);
     free(making.residues);
     free(making.atoms);

@@ -10,6 +10,8 @@ void tml_molecule_clear(tml_molecule *molecule) {
     free(molecule->atoms);
     free(molecule->residues);
     free(molecule->chains);
+    free(molecule->alike);
+    free(molecule->alike_atoms);
     free(molecule->bonds);
     free(molecule->angles);
     free(molecule->torsions);

@@ -83,6 +83,9 @@ bool tml_is_bare(const tml_making *making, int32_t atom); /* of no template */
 /* terms.c: planes, angles, centres, torsions of the made atoms */
 tml_status tml_make_terms(tml_making *making);
 
+/* alike.c: chains that take the same shape */
+tml_status tml_make_alike(tml_making *making);
+
 /* torsions.c */
 tml_status tml_make_torsions(tml_making *making);
 

@@ -76,6 +76,10 @@ typedef struct tml_peptide {
 
 typedef struct tml_chain { const char *code; int32_t first_residue, residue_count; tml_ends ends; } tml_chain;
 
+/* Chains that take the same shape: the heavy atom i of copy c is alike_atoms[first + c * count + i]. Atoms that a half turn
+ * exchanges (a carboxylate's oxygens, the CH of a phenyl ring) are left out. */
+typedef struct tml_alike { int32_t first, count, copies; } tml_alike;
+
 typedef struct tml_molecule {
     tml_atom *atoms;       int32_t atom_count;
     tml_residue *residues; int32_t residue_count;
@@ -87,6 +91,8 @@ typedef struct tml_molecule {
     tml_plane *planes;     int32_t plane_count;
     int32_t *plane_atoms;  double *plane_xy; int32_t plane_atom_count;
     tml_peptide *peptides; int32_t peptide_count;
+    tml_alike *alike;      int32_t alike_count;
+    int32_t *alike_atoms;  int32_t alike_atom_count;
     int32_t *neighbour_first, *neighbours; /* bonded atoms of atom i: neighbours[neighbour_first[i] … neighbour_first[i+1]-1] */
     int32_t *neighbour_bonds;              /* the bond that leads to each of them */
     int32_t *angle_first;                  /* angles around atom i: angle_first[i] … angle_first[i+1]-1 */

@@ -56,6 +56,13 @@ typedef struct tml_outline_plane {
     tml_place place;
 } tml_outline_plane;
 
+/* Chains that are the same molecule and take the same shape. */
+typedef struct tml_outline_alike {
+    const char **chains; /* owned by the outline */
+    size_t chain_count;
+    tml_place place;
+} tml_outline_alike;
+
 typedef struct tml_outline_ends { const char *chain; tml_ends ends; tml_place place; } tml_outline_ends;
 
 typedef struct tml_outline {
@@ -66,7 +73,11 @@ typedef struct tml_outline {
     tml_outline_plane *planes;     size_t plane_count, plane_capacity;
     tml_outline_ends *ends;        size_t ends_count, ends_capacity;
     tml_component **components;    size_t component_count, component_capacity; /* owned; those that residues name are made */
+    tml_outline_alike *alike;      size_t alike_count, alike_capacity;
 } tml_outline;
+
+/* State that all chains of the same residues are alike, but for those that are stated to be already. false without memory. */
+bool tml_outline_find_alike(tml_outline *outline);
 
 void tml_outline_clear(tml_outline *outline); /* frees what the outline owns and zeroes it */
 

@@ -36,11 +36,11 @@ static json_t *model_json(const tml_model *model, int32_t index) {
                                  tml_json_rounded(of->distance_max), "rms", tml_json_rounded(of->distance_rms));
     json_t *dihedral = json_pack("{s:[o,o], s:o}", "above", above(5, of->dihedral_over_5), above(10, of->dihedral_over_10), "max",
                                  tml_json_rounded(of->dihedral_max));
-    json_t *geometry = json_pack("{s:i, s:i, s:i, s:o, s:o, s:o, s:o, s:i, s:o}", "wrong_handed", of->wrong_handed,
+    json_t *geometry = json_pack("{s:i, s:i, s:i, s:o, s:o, s:o, s:o, s:i, s:o, s:o}", "wrong_handed", of->wrong_handed,
                                  "cis_undeclared", of->cis_undeclared, "omega_off", of->omega_off, "bond_rms",
                                  tml_json_rounded(of->bond_rms), "bond_max", tml_json_rounded(of->bond_max), "angle_rms",
                                  tml_json_rounded(of->angle_rms), "plane_max", tml_json_rounded(of->plane_max), "overlaps", of->overlaps, "backbone_usual",
-                                 tml_json_rounded(of->backbone_usual));
+                                 tml_json_rounded(of->backbone_usual), "alike_rms", tml_json_rounded(of->alike_rms));
     return json_pack("{s:i, s:i, s:o, s:b, s:b, s:o, s:o, s:o, s:o, s:o}", "model", index + 1, "trial", model->trial, "error",
                      tml_json_rounded(model->error), "passed", model->passed, "mirrored", model->mirrored, "other_image_error",
                      tml_json_rounded(model->other_error), "distance", distance, "dihedral", dihedral, "geometry", geometry,
@@ -104,6 +104,26 @@ static json_t *stereo_pairs(const tml_ensemble *ensemble) {
     return list;
 }
 
+/* Restraints with alternatives within chains and between them, and model by model the share of the sum that lies between. */
+static json_t *between_chains(const tml_ensemble *ensemble) {
+    const tml_problem *problem = ensemble->problem;
+    json_t *list = json_array();
+    for (int32_t i = 0; i < problem->restraints.distance_count; i++) {
+        const tml_distance_restraint *at = &problem->restraints.distances[i];
+        json_t *shares = NULL;
+        for (int32_t m = 0; m < ensemble->model_count; m++) {
+            const tml_model *model = &ensemble->models[m];
+            double share = tml_between_chains(&problem->restraints, &problem->molecule, at, model->swapped, model->xyz);
+            if (isnan(share)) break;
+            if (m == 0) shares = json_array();
+            tml_json_append(&shares, tml_json_rounded(share));
+        }
+        if (shares != NULL)
+            tml_json_append(&list, json_pack("{s:o, s:o, s:o}", "list", tml_json_text(at->list), "id", tml_json_text(at->id), "share_between", shares));
+    }
+    return list;
+}
+
 tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error) {
     const tml_problem *problem = ensemble->problem;
     const tml_timing *time = &ensemble->timing;
@@ -132,6 +152,7 @@ tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradi
     snprintf(seed, sizeof seed, "%llu", (unsigned long long)ensemble->seed);
     tml_json_put(&root, "seed", ensemble->seed <= INT64_MAX ? json_integer((json_int_t)ensemble->seed) : json_string(seed));
     tml_json_put(&root, "contradictions", findings(problem, found));
+    tml_json_put(&root, "within_or_between_chains", between_chains(ensemble));
     tml_json_put(&root, "stereo_pairs", stereo_pairs(ensemble));
     tml_json_put(&root, "notes", notes(problem));
     tml_json_put(&root, "passing", json_string(tml_words_passing));

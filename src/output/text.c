@@ -16,6 +16,7 @@ static void tell_models(tml_file *file, const tml_ensemble *ensemble);
 static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_error *error);
 static void tell_agreement(tml_file *file, const tml_ensemble *ensemble);
 static void tell_hands(tml_file *file, const tml_ensemble *ensemble);
+static void tell_chains(tml_file *file, const tml_ensemble *ensemble);
 static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, int32_t most,
                      const char *what);
 static void tell_conflicts(tml_file *file, const tml_problem *problem, const tml_contradictions *found);
@@ -74,6 +75,7 @@ tml_status tml_print_build(FILE *out, const tml_ensemble *ensemble, const tml_co
     }
     tell_agreement(file, ensemble);
     tell_hands(file, ensemble);
+    tell_chains(file, ensemble);
     tell_conflicts(file, ensemble->problem, found);
     tell_unmapped(file, ensemble->problem);
     tell_notes(file, ensemble->problem);
@@ -297,6 +299,45 @@ static void tell_hands(tml_file *file, const tml_ensemble *ensemble) {
                            doubtful);
     tell_cis(file, &ensemble->problem->molecule);
     tell_stereo(file, ensemble);
+}
+
+/* Chains that are alike, and restraints that may lie within a chain or between two. */
+static void tell_chains(tml_file *file, const tml_ensemble *ensemble) {
+    const tml_problem *problem = ensemble->problem;
+    int32_t both = 0, between = 0, within = 0;
+    for (int32_t i = 0; i < problem->restraints.distance_count && ensemble->model_count > 0; i++) {
+        int32_t mostly = 0;
+        double share = 0;
+        for (int32_t m = 0; m < ensemble->model_count && !isnan(share); m++) {
+            const tml_model *model = &ensemble->models[m];
+            share = tml_between_chains(&problem->restraints, &problem->molecule, &problem->restraints.distances[i], model->swapped, model->xyz);
+            mostly += share > 0.5;
+        }
+        if (isnan(share)) continue;
+        both++;
+        between += mostly == ensemble->model_count;
+        within += mostly == 0;
+    }
+    if (problem->molecule.alike_count == 0 && both == 0) return;
+    heading(file, "Chains");
+    double worst = 0;
+    for (int32_t m = 0; m < ensemble->model_count; m++) worst = fmax(worst, ensemble->models[m].measures.alike_rms);
+    for (int32_t s = 0; s < problem->molecule.alike_count; s++) {
+        const tml_alike *set = &problem->molecule.alike[s];
+        const int32_t *atoms = &problem->molecule.alike_atoms[set->first];
+        for (int32_t c = 0; c < set->copies && set->count > 0; c++)
+            tml_file_print(file, "%s%s", c == 0 ? "" : c + 1 < set->copies ? ", " : " and ",
+                           problem->molecule.residues[problem->molecule.atoms[atoms[c * set->count]].residue].chain);
+        tml_file_print(file, " are alike, over %d heavy atoms each%s.\n", set->count,
+                       set->copies > 3 ? "; their arrangement is left to the restraints" : ", and arranged symmetrically");
+    }
+    if (problem->molecule.alike_count > 0)
+        tml_file_print(file, "After superposition no two of them are farther apart than %.2f Å r.m.s. in any model.\n", worst);
+    if (both > 0)
+        tml_file_paragraph(file, WIDTH, "", "  ",
+                           "%d restraint%s may lie within a chain or between two: within in all models %d, between in all %d; the "
+                           "summary tells model by model.",
+                           both, plural(both), within, between);
 }
 
 /* ---- check ---- */

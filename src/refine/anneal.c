@@ -13,22 +13,22 @@
 static const tml_weights SOFT = {
     .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
     .restraint = 15, .restraint_bend = 1.0, .restraint_fade = 1000, .dihedral = 60, .dihedral_bend = 20 DEGREES,
-    .repulsion = 0.5, .radius_scale = 0.8,
+    .repulsion = 0.5, .radius_scale = 0.8, .alike = 0.02, .symmetric = 0, .symmetric_bend = 1,
 };
 static const tml_weights SOFT_END = {
     .bond = 200, .angle = 60, .planar = 30, .volume = 8, .flat = 8,
     .restraint = 30, .restraint_bend = 1.0, .restraint_fade = 1000, .dihedral = 60, .dihedral_bend = 20 DEGREES,
-    .repulsion = 0.5, .radius_scale = 0.8,
+    .repulsion = 0.5, .radius_scale = 0.8, .alike = 0.1, .symmetric = 0.5, .symmetric_bend = 1,
 };
 static const tml_weights FIRM = {
     .bond = 1000, .angle = 300, .planar = 100, .volume = 40, .flat = 40,
     .restraint = 60, .restraint_bend = 0.3, .restraint_fade = 1.0, .dihedral = 200, .dihedral_bend = 20 DEGREES,
-    .repulsion = 20, .radius_scale = 1.0, .backbone = 1,
+    .repulsion = 20, .radius_scale = 1.0, .alike = 2, .symmetric = 5, .symmetric_bend = 1, .backbone = 1,
 };
 const tml_weights TML_FINAL_WEIGHTS = {
     .bond = 2000, .angle = 500, .planar = 100, .volume = 40, .flat = 40, .plane = 100,
     .restraint = 150, .restraint_bend = 0.2, .restraint_fade = 0.3, .dihedral = 200, .dihedral_bend = 20 DEGREES,
-    .repulsion = 30, .radius_scale = 1.0, .backbone = 1,
+    .repulsion = 30, .radius_scale = 1.0, .alike = 2, .symmetric = 5, .symmetric_bend = 1, .backbone = 1,
 };
 
 /* A stretch of dynamics in which temperature changes linearly and every weight geometrically from its start to its end. */

@@ -426,6 +426,7 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     if (refiner->choice_count > 0) energy += choices(refiner, scene->sum_pairs, weights, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
     if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);
+    if (refiner->problem->molecule.alike_count > 0) energy += tml_alike_energy(scene, weights);
     if (weights->repulsion > 0) energy += repulsion(scene, weights->repulsion, weights->radius_scale, f);
     return energy;
 }

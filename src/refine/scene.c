@@ -36,7 +36,8 @@ tml_status tml_scene_new(const tml_refiner *refiner, tml_scene **out, tml_error 
     scene->cells = tml_alloc(1, sizeof *scene->cells);
     scene->sum_pairs = tml_alloc((size_t)refiner->sum_pair_count, sizeof *scene->sum_pairs);
     scene->swapped = tml_alloc((size_t)refiner->problem->restraints.stereo_count, sizeof *scene->swapped);
-    bool room = scene->x != NULL && scene->f != NULL && scene->v != NULL && scene->listed_at != NULL && scene->cells != NULL &&
+    scene->copies = tml_alloc(6 * count, sizeof *scene->copies);
+    bool room = scene->copies != NULL && scene->x != NULL && scene->f != NULL && scene->v != NULL && scene->listed_at != NULL && scene->cells != NULL &&
                 scene->sum_pairs != NULL && scene->swapped != NULL;
     if (room && refiner->sum_pair_count > 0)
         memcpy(scene->sum_pairs, refiner->sum_pairs, (size_t)refiner->sum_pair_count * sizeof *scene->sum_pairs);
@@ -84,6 +85,7 @@ void tml_scene_free(tml_scene *scene) {
     free(scene->near_contact);
     free(scene->sum_pairs);
     free(scene->swapped);
+    free(scene->copies);
     free(scene);
 }
 

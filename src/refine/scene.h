@@ -20,6 +20,7 @@ typedef struct tml_scene {
     bool heavy_only;         /* hydrogens are left out of the list */
     tml_pair *sum_pairs;     /* the refiner's, with the swapped stereo pairs' members exchanged */
     bool *swapped;           /* per stereo pair of the restraints */
+    double *copies;          /* work space of alike.c: two copies of a chain */
     struct tml_cells *cells; /* work space of neighbour.c */
 } tml_scene;
 
@@ -47,8 +48,13 @@ typedef struct tml_weights {
     double restraint_fade;
     double dihedral, dihedral_bend;          /* k·δ², linear beyond bend radians */
     double repulsion, radius_scale;          /* k·(scale·contact - d)² where closer */
+    double alike;                            /* k·(distance after superposition)² of atoms of chains that are alike */
+    double symmetric, symmetric_bend;        /* k/points·(difference of distances that symmetry makes equal)², linear beyond bend Å */
     double backbone;                         /* height of the preference for usual phi and psi; 0 leaves it out */
 } tml_weights;
+
+/* Energy of what keeps chains alike, its forces added to scene->f. */
+double tml_alike_energy(tml_scene *scene, const tml_weights *weights);
 
 /* Let every open stereo pair take the assignment of less error at the scene's positions, one after the other until none changes.
  * Returns whether any did. */

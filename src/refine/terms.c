@@ -4,6 +4,7 @@
  *   volumes      all four triples of a tetrahedral centre; flat centres
  *   restraints   sums over pairs, choices, dihedrals
  *   backbones    phi and psi of each residue
+ *   points       of alike chains, whose distances symmetry makes equal
  *   contacts     classes of atoms, and the pairs that do not repel each other
  */
 #include "refine/terms.h"
@@ -23,6 +24,7 @@ static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, 
 static tml_status make_sums(tml_refiner *refiner, tml_error *error);
 static tml_status make_torsions(tml_refiner *refiner, tml_error *error);
 static tml_status make_backbones(tml_refiner *refiner, tml_error *error);
+static tml_status make_points(tml_refiner *refiner, tml_error *error);
 static tml_status make_contacts(tml_refiner *refiner, const tml_geometry *table, tml_error *error);
 
 tml_status tml_refiner_new(const tml_problem *problem, bool free_backbone, tml_refiner **out, tml_error *error) {
@@ -38,6 +40,7 @@ tml_status tml_refiner_new(const tml_problem *problem, bool free_backbone, tml_r
     if (status == TML_OK) status = make_sums(refiner, error);
     if (status == TML_OK) status = make_torsions(refiner, error);
     if (status == TML_OK && !free_backbone) status = make_backbones(refiner, error);
+    if (status == TML_OK) status = make_points(refiner, error);
     if (status == TML_OK) status = make_contacts(refiner, &table, error);
     tml_geometry_clear(&table);
     if (status != TML_OK) {
@@ -65,6 +68,8 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->torsions);
     free(refiner->arcs);
     free(refiner->backbones);
+    free(refiner->points);
+    free(refiner->point_first);
     tml_contacts_clear(&refiner->contacts);
     free(refiner->near_mask);
     free(refiner->far_first);
@@ -386,6 +391,39 @@ static tml_status make_backbones(tml_refiner *refiner, tml_error *error) {
             (tml_backbone_term){{before->c, before->n, before->ca2, after->c, after->n}, strcmp(name, "GLY") == 0, strcmp(name, "PRO") == 0};
     }
     free(into);
+    return TML_OK;
+}
+
+/* ---- points ---- */
+
+/* Points of a chain that stand for it in the distances between copies: one atom a residue, at most so many. */
+enum { MOST_POINTS = 48, MOST_COPIES = 3 };
+
+/* The alpha carbon, a nucleotide's C1', or a residue's first atom of the set. */
+static bool stands_for_residue(const tml_molecule *molecule, const int32_t *atoms, int32_t i) {
+    const tml_atom *atom = &molecule->atoms[atoms[i]];
+    if (molecule->residues[atom->residue].polymer == TML_POLYMER_PROTEIN) return strcmp(atom->name, "CA") == 0;
+    return i == 0 || molecule->atoms[atoms[i - 1]].residue != atom->residue;
+}
+
+static tml_status make_points(tml_refiner *refiner, tml_error *error) {
+    const tml_molecule *molecule = &refiner->problem->molecule;
+    refiner->points = tml_alloc((size_t)molecule->alike_count * MOST_POINTS, sizeof *refiner->points);
+    refiner->point_first = tml_alloc((size_t)molecule->alike_count + 1, sizeof *refiner->point_first);
+    if (refiner->points == NULL || refiner->point_first == NULL) return tml_no_memory(error);
+    for (int32_t s = 0; s < molecule->alike_count; s++) {
+        const tml_alike *set = &molecule->alike[s];
+        const int32_t *atoms = &molecule->alike_atoms[set->first];
+        int32_t *points = &refiner->points[refiner->point_first[s]], all = 0, taken = 0, seen = 0;
+        for (int32_t i = 0; i < set->count; i++) all += stands_for_residue(molecule, atoms, i);
+        int32_t wanted = set->copies > MOST_COPIES ? 0 : all < MOST_POINTS ? all : MOST_POINTS;
+        for (int32_t i = 0; i < set->count && taken < wanted; i++) {
+            if (!stands_for_residue(molecule, atoms, i)) continue;
+            if ((int64_t)seen * wanted >= (int64_t)taken * all) points[taken++] = i; /* evenly along the chain */
+            seen++;
+        }
+        refiner->point_first[s + 1] = refiner->point_first[s] + taken;
+    }
     return TML_OK;
 }
 

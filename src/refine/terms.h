@@ -63,6 +63,8 @@ struct tml_refiner {
     tml_open_use *open_uses;    int32_t open_use_count; /* by stereo pair */
     tml_torsion_term *torsions; int32_t torsion_count;
     tml_torsion_arc *arcs;             /* per dihedral interval */
+    int32_t *points;           /* of the molecule's first set of alike chains, then of the next: places among its atoms … */
+    int32_t *point_first;      /* … set s has points[point_first[s] … point_first[s+1]-1]; none for more than three copies */
     tml_basin basins[TML_BASINS];
     tml_backbone_term *backbones; int32_t backbone_count;
     tml_contacts contacts;             /* what repels whom, and from how near */

@@ -66,6 +66,22 @@ double tml_restraint_distance(const tml_restraints *restraints, const tml_distan
     return pow(restraint->average ? sum / (double)pairs : sum, -1.0 / 6.0);
 }
 
+double tml_between_chains(const tml_restraints *restraints, const tml_molecule *molecule, const tml_distance_restraint *restraint,
+                          const bool *swapped, const double *xyz) {
+    double sum[2] = {0};
+    bool any[2] = {false};
+    int64_t pairs = 0;
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++) {
+        const tml_alternative *alternative = &restraints->alternatives[k];
+        const tml_atom *a = &molecule->atoms[restraints->group_atoms[alternative->first_a]];
+        const tml_atom *b = &molecule->atoms[restraints->group_atoms[alternative->first_b]];
+        bool between = molecule->residues[a->residue].chain_index != molecule->residues[b->residue].chain_index;
+        any[between] = true;
+        sum[between] += sum_over(restraints, alternative, swapped, xyz, &pairs);
+    }
+    return any[0] && any[1] ? sum[1] / (sum[0] + sum[1]) : NAN;
+}
+
 static double beyond(const tml_distance_restraint *restraint, double distance) {
     return distance > restraint->upper ? distance - restraint->upper : distance < restraint->lower ? distance - restraint->lower : 0;
 }

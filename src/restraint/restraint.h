@@ -86,6 +86,11 @@ double tml_alternative_distance(const tml_restraints *restraints, const tml_alte
 double tml_restraint_distance(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
                               const double *xyz);
 
+/* The share of a restraint's Σ r⁻⁶ that pairs between different chains have, 0 to 1; NAN where all alternatives lie within chains or
+ * all between them, so that nothing is to be told apart. */
+double tml_between_chains(const tml_restraints *restraints, const tml_molecule *molecule, const tml_distance_restraint *restraint,
+                          const bool *swapped, const double *xyz);
+
 /* By how much a restraint is violated: Å beyond a limit (positive above, negative below the lower; 0 within); radians, >= 0. */
 double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
                               const double *xyz);

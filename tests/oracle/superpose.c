@@ -4,7 +4,7 @@
 #include <stdlib.h>
 
 #include "base/memory.h"
-#include "ensemble/superpose.h"
+#include "base/superpose.h"
 
 int main(void) {
     int count;

@@ -1,4 +1,4 @@
-#include "ensemble/superpose.h"
+#include "base/superpose.h"
 
 #include <lapacke.h>
 #include <math.h>
