@@ -107,7 +107,6 @@ Test(sheet, mistakes_are_told_with_their_line) {
 
 Test(sheet, statements_of_later_versions_are_named_as_such) {
     read_bad("sheet 1\nmolecule L 1 LIG smiles \"C\"\n", 2, "not yet understood");
-    read_bad("sheet 1\nalike A B\n", 2, "not yet understood");
 }
 
 Test(sheet, no_prefix_of_a_sheet_is_ever_more_than_refused) {
