@@ -206,6 +206,11 @@ static bool looks_like_heading(const table *t) {
     return numbers > 0;
 }
 
+static bool is_heading(const table *t) {
+    if (t->layout.by_heading || t->layout.heading == TML_HEADING_YES) return true;
+    return t->layout.heading == TML_HEADING_AUTO && looks_like_heading(t);
+}
+
 static tml_status find_heading(table *t, tml_column *column) {
     char near[320] = "", (*names)[33];
     for (int i = 0; i < t->count; i++) {
@@ -265,9 +270,7 @@ static tml_status read_line(table *t, char *line, char *end) {
     if (t->layout.separator == 0) t->layout.separator = separator_of(t, line, end);
     tml_status status = split_line(t, line, end);
     if (status != TML_OK) return status;
-    bool heading = t->layout.by_heading || t->layout.heading == TML_HEADING_YES ||
-                   (t->layout.heading == TML_HEADING_AUTO && looks_like_heading(t));
-    if (first && heading) return read_heading(t);
+    if (first && is_heading(t)) return read_heading(t);
     status = check_width(t);
     if (status == TML_OK && t->rows == INT32_MAX) return tml_fail_at(t->error, TML_TOO_LARGE, t->path, t->line, 0, "too many rows");
     t->rows++;
@@ -443,8 +446,8 @@ static const struct { const char *name, *atoms[4]; } ANGLES[] = {
 
 /* The side chains along which chi is counted: chi1 is about the bond of the second and third atom, chi2 about the next one. The
  * same source. */
-static const struct { const char *residues, *atoms[7]; } SIDE_CHAINS[] = {
-    {"ARG", {"N", "CA", "CB", "CG", "CD", "NE", "CZ"}}, {"LYS", {"N", "CA", "CB", "CG", "CD", "CE", "NZ"}},
+static const struct { const char *residues, *atoms[8]; } SIDE_CHAINS[] = {
+    {"ARG", {"N", "CA", "CB", "CG", "CD", "NE", "CZ", "NH1"}}, {"LYS", {"N", "CA", "CB", "CG", "CD", "CE", "NZ"}},
     {"GLN GLU", {"N", "CA", "CB", "CG", "CD", "OE1"}},  {"MET", {"N", "CA", "CB", "CG", "SD", "CE"}},
     {"ASN ASP", {"N", "CA", "CB", "CG", "OD1"}},        {"PRO", {"N", "CA", "CB", "CG", "CD"}},
     {"HIS", {"N", "CA", "CB", "CG", "ND1"}},            {"ILE", {"N", "CA", "CB", "CG1", "CD1"}},
@@ -453,7 +456,7 @@ static const struct { const char *residues, *atoms[7]; } SIDE_CHAINS[] = {
     {"VAL", {"N", "CA", "CB", "CG1"}},
 };
 
-static const char *const CHIS[] = {"CHI1", "CHI2", "CHI3", "CHI4"};
+static const char *const CHIS[] = {"CHI1", "CHI2", "CHI3", "CHI4", "CHI5"};
 
 static tml_status unknown_angle(table *t, const tml_column *column) {
     char name[NAME_MOST + 1], near[120] = "", text[200];
@@ -465,7 +468,7 @@ static tml_status unknown_angle(table *t, const tml_column *column) {
     for (size_t i = 0; i < sizeof ANGLES / sizeof *ANGLES; i++) tml_nearest_offer(&nearest, ANGLES[i].name);
     for (size_t i = 0; i < sizeof CHIS / sizeof *CHIS; i++) tml_nearest_offer(&nearest, CHIS[i]);
     tml_nearest_append(&nearest, near, sizeof near);
-    snprintf(text, sizeof text, "phi, psi, omega or chi1 to chi4 (the nearest: %s)", near);
+    snprintf(text, sizeof text, "phi, psi, omega or chi1 to chi5 (the nearest: %s)", near);
     return expected(t, column, text);
 }
 
@@ -475,7 +478,7 @@ static const char *const *side_chain(const char *residue, int chi) {
         const char *found = strstr(SIDE_CHAINS[i].residues, residue);
         if (found == NULL || strlen(residue) != 3) continue;
         int atoms = 0;
-        while (atoms < 7 && SIDE_CHAINS[i].atoms[atoms] != NULL) atoms++;
+        while (atoms < 8 && SIDE_CHAINS[i].atoms[atoms] != NULL) atoms++;
         return chi + 4 <= atoms ? &SIDE_CHAINS[i].atoms[chi] : NULL;
     }
     return NULL;
@@ -536,7 +539,7 @@ static tml_status width_at(table *t, const tml_column *column, double *out) {
 
 static tml_status read_target(table *t, bool distance, limits *out) {
     const tml_column *both = column_at(t, TML_COLUMN_ERROR);
-    double target, minus, plus;
+    double target = NAN, minus = NAN, plus = NAN;
     tml_status status = number_at(t, column_at(t, TML_COLUMN_TARGET), distance ? "a distance" : "an angle in degrees", &target);
     if (status == TML_OK) status = width_at(t, both != NULL ? both : column_at(t, TML_COLUMN_MINUS), &minus);
     if (status == TML_OK) status = width_at(t, both != NULL ? both : column_at(t, TML_COLUMN_PLUS), &plus);

@@ -152,6 +152,24 @@ static tml_status build_way(const char *const *paths, size_t count) {
     return status;
 }
 
+/* The path is the sheet; the table beside it is read with it. */
+static tml_status table_way(const char *const *paths, size_t count) {
+    const char *const text = "first\tchain\tsecond\tfar\tto\nA:2:HB1\tA\tLYS4\tx\t5\nA:1:HA,A:2:HA\tA\t4\tx\t4\n";
+    tml_error error = {0};
+    tml_problem *problem = NULL;
+    tml_table table = {.path = in_folder("rows.txt"), .columns = "address_1@first chain_2@chain residue_2@second upper@to atom_2=N list='a b'",
+                       .form = "tab comment=!", .old_names = "hydrogens-1-2"};
+    tml_read_options options = {.tables = &table, .table_count = 1, .old_names = "hydrogens-1-2"};
+    FILE *file = fopen(table.path, "w");
+    if (file == NULL) return TML_IO;
+    fputs(text, file);
+    fclose(file);
+    tml_status status = tml_problem_read(paths, count, &options, &problem, &error);
+    tml_problem_free(problem);
+    unlink(table.path);
+    return status;
+}
+
 static tml_status derive_way(const char *const *paths, size_t count) {
     tml_error error = {0};
     tml_coordinates coordinates;
@@ -207,6 +225,7 @@ int main(void) {
     fail_each(check_way, "tests/cli/contradicted.sheet", 400);
     fail_each(build_way, "tests/cli/five-ring.sheet", 200);
     fail_each(build_way, "tests/cli/peptide.sheet", 60);
+    fail_each(table_way, "tests/cli/peptide.sheet", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.pdb", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.cif", 300);
     const char *const names[] = {"derived.sheet", "check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json"};

@@ -1,6 +1,6 @@
 /* Prints the restraints of input files, mapped to atoms, as tab-separated rows for the oracle scripts.
  *
- *   dump_restraints FILE…
+ *   dump_restraints FILE… [--table FILE COLUMNS FORM OLD_NAMES]…    where - is no form and no old names
  *
  * atom index chain number residue name
  * distance list id lower upper average range; then for each alternative: alternative combination atoms_a atoms_b
@@ -8,6 +8,7 @@
  * unmapped list id reason; note text
  */
 #include <stdio.h>
+#include <string.h>
 
 #include "input/problem.h"
 
@@ -51,10 +52,21 @@ static void print(const tml_problem *problem) {
     for (size_t i = 0; i < problem->note_count; i++) printf("note\t%s\n", problem->notes[i].text);
 }
 
+static const char *given(const char *text) {
+    return strcmp(text, "-") == 0 ? NULL : text;
+}
+
 int main(int argc, char **argv) {
+    enum { TABLES_MOST = 16 };
     tml_error error = {0};
     tml_problem *problem = NULL;
-    tml_status status = tml_problem_read((const char *const *)argv + 1, (size_t)argc - 1, NULL, &problem, &error);
+    tml_table tables[TABLES_MOST];
+    tml_read_options options = {.tables = tables};
+    int inputs = 1;
+    while (inputs < argc && strcmp(argv[inputs], "--table") != 0) inputs++;
+    for (int i = inputs; i + 4 < argc && options.table_count < TABLES_MOST; i += 5)
+        tables[options.table_count++] = (tml_table){argv[i + 1], argv[i + 2], given(argv[i + 3]), given(argv[i + 4])};
+    tml_status status = tml_problem_read((const char *const *)argv + 1, (size_t)inputs - 1, &options, &problem, &error);
     if (status == TML_OK)
         print(problem);
     else
