@@ -220,6 +220,80 @@ const tml_measures *tml_ensemble_measures(const tml_ensemble *ensemble, int32_t 
  */
 tml_status tml_ensemble_write(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error);
 
+/* ---- comparing models ---- */
+
+typedef struct tml_comparison tml_comparison; /* models of a file on top of each other, and perhaps on a reference */
+
+typedef struct tml_compare_options {
+    const char *core;  /* where models are superposed: "spread" (default; the residues that hold together), "order" (those with order
+                          parameters of phi and psi of 0.9 or more), "all", or stretches of residues such as "A:8-69,B:8-68" */
+    const char *atoms; /* superposed atoms: words as of `derive --atoms`, joined by commas; default "backbone" */
+    double cut;        /* models no further apart on average are one cluster, Å; negative (default): where a penalty is least */
+    int threads;       /* 0 for all */
+} tml_compare_options;
+
+void tml_compare_defaults(tml_compare_options *options);
+
+/* Compare the models of a file (PDB or mmCIF; "-" for standard input, gzip understood) with each other, and with those of another
+ * one unless that is NULL. Atoms that not all models have, and waters, take no part.
+ *
+ * out   filled with TML_OK only; the caller frees it with tml_comparison_free
+ * Returns TML_OK, TML_BAD_INPUT (also: one model alone, no atoms in common), TML_TOO_LARGE, TML_NO_MEMORY, TML_IO or
+ * TML_INTERRUPTED.
+ */
+tml_status tml_compare(const char *models, const char *reference, const tml_compare_options *options, const tml_watch *watch,
+                       tml_comparison **out, tml_error *error);
+void tml_comparison_free(tml_comparison *comparison);
+
+/* Distances are r.m.s. distances of the superposed atoms after superposition, Å; NAN where there is nothing to measure. */
+typedef struct tml_compare_facts {
+    int32_t models, atoms, residues;              /* atoms that all models have, and their residues */
+    int32_t core_residues, superposed_atoms;
+    double pair_mean, pair_least, pair_greatest;  /* between two models */
+    double mean_to_mean;                          /* from the models to their mean structure, on average */
+    int32_t medoid;                               /* the model nearest to all others, 0-based */
+    int32_t clusters;
+    double cut;                                   /* the greatest mean distance at which clusters were joined */
+    int32_t reference_models, reference_medoid;   /* 0 without a reference; 0-based */
+    int32_t common_atoms;                         /* superposed atoms that the reference has, too */
+    bool chains_exchanged;                        /* alike chains fit the reference better in another order than their codes tell */
+    double reference_mean;                        /* from the models to the reference's medoid, on average */
+    double mean_to_reference, medoid_to_reference; /* from the mean structure, and from the medoid */
+} tml_compare_facts;
+
+void tml_comparison_facts(const tml_comparison *comparison, tml_compare_facts *facts);
+
+typedef struct tml_compared_model {
+    double to_others, to_mean, to_reference; /* to_others: mean */
+    int32_t cluster;                         /* from 0, the largest first */
+} tml_compared_model;
+
+/* Strings live as long as the comparison. */
+typedef struct tml_compared_residue {
+    const char *chain, *number, *name;
+    double spread, heavy_spread; /* r.m.s. distance from the mean place: of the chosen atoms, and of all but hydrogens */
+    double order_phi, order_psi; /* 0 … 1; NAN where the torsion is missing */
+    bool core;                   /* takes part in the superposition */
+} tml_compared_residue;
+
+typedef struct tml_compared_atom {
+    int32_t residue;
+    const char *name;
+    double spread;
+    bool superposed;
+} tml_compared_atom;
+
+/* 0-based; false past the end. */
+bool tml_comparison_model(const tml_comparison *comparison, int32_t index, tml_compared_model *model);
+bool tml_comparison_residue(const tml_comparison *comparison, int32_t index, tml_compared_residue *residue);
+bool tml_comparison_atom(const tml_comparison *comparison, int32_t index, tml_compared_atom *atom);
+
+/* Between two models; NAN where an index is out of range. */
+double tml_comparison_pair(const tml_comparison *comparison, int32_t model_1, int32_t model_2);
+
+/* A model as superposed: three doubles an atom, in the order of tml_comparison_atom; NULL past the end. */
+const double *tml_comparison_coordinates(const tml_comparison *comparison, int32_t model);
+
 #ifdef __cplusplus
 }
 #endif

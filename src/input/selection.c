@@ -1,6 +1,7 @@
 #include "input/selection.h"
 
 #include <ctype.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "molecule/elements.h"
@@ -68,4 +69,69 @@ tml_status tml_selection_check(const char *atoms, tml_error *error) {
         word += length;
         if (*word == '\0') return TML_OK;
     }
+}
+
+/* ---- stretches of residues ---- */
+
+/* A residue's number and insertion code; false where the text does not begin with one. *at goes behind it. */
+static bool read_code(const char **at, long *number, char *insertion) {
+    enum { MOST_DIGITS = 9 };
+    const char *digits = *at + (**at == '-');
+    size_t length = strspn(digits, "0123456789");
+    if (length == 0 || length > MOST_DIGITS) return false;
+    *number = strtol(*at, NULL, 10);
+    *at = digits + length;
+    *insertion = isalpha((unsigned char)**at) ? *(*at)++ : ' ';
+    return true;
+}
+
+/* The first word of `text`, which a comma or the end closes. */
+static bool read_stretch(const char *text, tml_stretch *out) {
+    size_t length = strcspn(text, ","), chain = strcspn(text, ":,");
+    const char *at = text, *end = text + length;
+    *out = (tml_stretch){.word = text, .length = length};
+    if (length == 0) return false;
+    bool bare = chain == length && (isdigit((unsigned char)*text) || *text == '-');
+    if (!bare) {
+        out->chain = text;
+        out->chain_length = chain;
+        at = text + chain + (text[chain] == ':');
+        if (chain == 0) return false;
+    }
+    if (at == end) {
+        out->whole = text[chain] != ':'; /* "A:" asks for something and does not say what */
+        return out->whole;
+    }
+    if (!read_code(&at, &out->first, &out->first_insertion)) return false;
+    out->last = out->first;
+    out->last_insertion = out->first_insertion;
+    if (*at == '-' && (at++, !read_code(&at, &out->last, &out->last_insertion))) return false;
+    return at == end && (out->first < out->last || (out->first == out->last && out->first_insertion <= out->last_insertion));
+}
+
+bool tml_stretch_next(const char **text, tml_stretch *out) {
+    if (**text == '\0' || !read_stretch(*text, out)) return false;
+    *text += out->length + ((*text)[out->length] == ',');
+    return true;
+}
+
+tml_status tml_stretches_check(const char *text, tml_error *error) {
+    tml_stretch stretch;
+    for (const char *at = text;; at += strcspn(at, ",") + 1) {
+        if (!read_stretch(at, &stretch))
+            return tml_fail(error, TML_BAD_INPUT, "'%.*s' is no stretch of residues; A:8-69, A:12, 8-69 or A would be",
+                            stretch.length > 64 ? 64 : (int)stretch.length, at);
+        if (at[stretch.length] == '\0') return TML_OK;
+    }
+}
+
+bool tml_stretch_holds(const tml_stretch *stretch, const tml_site_residue *residue) {
+    long number;
+    char insertion;
+    const char *code = residue->number;
+    if (stretch->chain != NULL && !word_is(stretch->chain, stretch->chain_length, residue->chain)) return false;
+    if (stretch->whole) return true;
+    if (!read_code(&code, &number, &insertion) || *code != '\0') return false;
+    if (number < stretch->first || (number == stretch->first && insertion < stretch->first_insertion)) return false;
+    return number < stretch->last || (number == stretch->last && insertion <= stretch->last_insertion);
 }

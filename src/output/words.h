@@ -3,6 +3,7 @@
 #define TML_WORDS_H
 
 #include "bounds/bounds.h"
+#include "ensemble/compare.h"
 #include "ensemble/ensemble.h"
 #include "output/file.h"
 
@@ -30,5 +31,12 @@ bool tml_repair_of(const tml_problem *problem, const tml_contradiction *conflict
 /* Distance restraints by range, each id once. */
 void tml_count_ranges(const tml_problem *problem, int32_t counts[TML_RANGE_COUNT]);
 extern const char *const tml_range_words[TML_RANGE_COUNT]; /* intra, sequential, medium, long, inter_chain */
+
+/* How the core of a comparison was chosen, and by which rule its clusters were cut; one sentence's worth each. */
+void tml_say_core(const tml_comparison *comparison, char *text, size_t size);
+void tml_say_cut(const tml_comparison *comparison, char *text, size_t size);
+
+/* An atom or a residue of a comparison; without the chain where the file has none. */
+void tml_say_compared_atom(const tml_comparison *comparison, int32_t atom, char *text, size_t size);
 
 #endif
