@@ -1,5 +1,5 @@
 #!/bin/sh
-# Small jobs on invented data: an ensemble of a protein of 52 residues, a slip in the restraints of a hairpin, a ring of beads.
+# Small jobs on invented data: an ensemble of a protein of 52 residues, a table beside it, a slip in the restraints of a hairpin, a ring of beads.
 set -eu
 program=${BUILD:-build}/trammel
 out=$(mktemp -d)
@@ -14,6 +14,8 @@ show() {
 }
 
 show build restraints/veilin.nef -o "$out/veilin.pdb" --summary "$out/veilin.json"
+show check restraints/veilin.nef --table restraints/veilin-labels.csv --table-form 'nm decimal-comma' \
+    --columns 'residue_1@first residue_2@second target@distance error@error chain=A atom_1=CB atom_2=CB'
 show check restraints/hairpin.sheet
 show check restraints/hairpin.sheet restraints/hairpin-slip.sheet
 show build restraints/crosslinks.sheet -n 5 -o "$out/crosslinks.cif"

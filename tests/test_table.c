@@ -3,7 +3,8 @@
 
 #include "given_text.h"
 
-static const char SEQUENCE[] = "sheet 1\nsequence A 5 LYS GLY ALA PRO SER VAL\nsequence B 1 LEU HIS\natom P bead\natom Q bead\n";
+static const char SEQUENCE[] =
+    "sheet 1\nsequence A 5 LYS GLY ALA PRO SER VAL\nsequence B 1 LEU HIS\natom P bead\natom Q bead\n";
 #define USUAL "chain_1 residue_1 atom_1 chain_2 residue_2 atom_2 lower upper"
 
 static void put(char *path, const char *text) {
@@ -15,7 +16,8 @@ static void put(char *path, const char *text) {
 }
 
 /* The sequence above, and a table; old_names is a mapping's name or, with a line end in it, its text. */
-static tml_status read_table(const char *text, const char *columns, const char *form, const char *old_names, tml_problem **problem, tml_error *error) {
+static tml_status read_table(const char *text, const char *columns, const char *form, const char *old_names,
+                             tml_problem **problem, tml_error *error) {
     char sheet[32], path[32], mapping[32] = "";
     put(sheet, SEQUENCE);
     put(path, text);
@@ -46,13 +48,15 @@ static tml_problem *good(const char *text, const char *columns, const char *form
     return good_with(text, columns, form, NULL);
 }
 
-static void refused_with(const char *text, const char *columns, const char *form, const char *old_names, long line, long column, const char *says) {
+static void refused_with(const char *text, const char *columns, const char *form, const char *old_names, long line, long column,
+                         const char *says) {
     tml_problem *problem = NULL;
     tml_error error;
     tml_status status = read_table(text, columns, form, old_names, &problem, &error);
     cr_assert_eq(status, TML_BAD_INPUT, "status %d: %s\n%s", status, columns, text);
     cr_assert_null(problem);
-    cr_assert(error.line == line && error.column == column, "%s\nis refused at %ld:%ld: %s", text, error.line, error.column, error.message);
+    cr_assert(error.line == line && error.column == column, "%s\nis refused at %ld:%ld: %s", text, error.line, error.column,
+              error.message);
     cr_assert_not_null(strstr(error.message, says), "%s\nis refused with: %s", text, error.message);
 }
 
@@ -61,7 +65,8 @@ static void refused(const char *text, const char *columns, const char *form, lon
 }
 
 /* The only restraint is between these atoms, with these limits. */
-static void holds(const char *text, const char *columns, const char *form, const char *a, const char *b, double lower, double upper) {
+static void holds(const char *text, const char *columns, const char *form, const char *a, const char *b, double lower,
+                  double upper) {
     tml_problem *problem = good(text, columns, form);
     const tml_restraints *r = &problem->restraints;
     char name[64];
@@ -156,7 +161,8 @@ Test(table, addresses_in_one_column) {
 
 Test(table, further_columns_are_passed_over_only_where_that_is_said) {
     holds("A 5 HA A 6 H 1.8 3.5 x y\n", USUAL " ...", NULL, "A:5:HA", "A:6:H", 1.8, 3.5);
-    holds("x A 5 HA A 6 H 1.8 y 3.5\n", "- chain_1 residue_1 atom_1 chain_2 residue_2 atom_2 lower - upper", NULL, "A:5:HA", "A:6:H", 1.8, 3.5);
+    holds("x A 5 HA A 6 H 1.8 y 3.5\n", "- chain_1 residue_1 atom_1 chain_2 residue_2 atom_2 lower - upper", NULL, "A:5:HA",
+          "A:6:H", 1.8, 3.5);
     refused("A 5 HA A 6 H 1.8 3.5 x y\n", USUAL, NULL, 1, 22, "the row has 10 fields apart by blanks; the columns name 8");
     refused("A 5 HA A 6 H 1.8\n", USUAL, NULL, 1, 17, "the row ends after 7 fields");
 }
@@ -191,7 +197,8 @@ Test(table, words_for_columns_are_checked) {
         {"address_1 address_2 upper", "comma decimal-comma", "cannot be both"},
         {"address_1 address_2 upper@u", "no-heading", "needs a heading line"},
     };
-    for (size_t i = 0; i < sizeof CASES / sizeof *CASES; i++) refused("A:5:HA A:6:H 3\n", CASES[i].columns, CASES[i].form, 0, 0, CASES[i].says);
+    for (size_t i = 0; i < sizeof CASES / sizeof *CASES; i++)
+        refused("A:5:HA A:6:H 3\n", CASES[i].columns, CASES[i].form, 0, 0, CASES[i].says);
 }
 
 /* ---- what the rows say ---- */
@@ -259,7 +266,8 @@ Test(table, numbers_are_numbers) {
 }
 
 Test(table, equal_ids_are_alternatives_and_rows_without_one_stand_alone) {
-    tml_problem *problem = good("A:5:HA A:6:H 3 n1\nA:5:HA A:7:H 3 n1\nA:5:HA A:9:H 3 -\nA:5:HA A:9:H 3 -\n", "address_1 address_2 upper id", NULL);
+    tml_problem *problem = good("A:5:HA A:6:H 3 n1\nA:5:HA A:7:H 3 n1\nA:5:HA A:9:H 3 -\nA:5:HA A:9:H 3 -\n",
+                                "address_1 address_2 upper id", NULL);
     cr_assert_eq(problem->restraints.distance_count, 3);
     cr_assert_eq(distance_by_id(problem, "n1")->alternative_count, 2);
     cr_assert_eq(distance_by_id(problem, "row4")->alternative_count, 1);
@@ -297,13 +305,15 @@ Test(table, dihedrals_by_name) {
     dihedral_is("A 5 LYS CHI4 180 30\n", named, (const char *[]){"A:5:CG", "A:5:CD", "A:5:CE", "A:5:NZ"}, 150, 60);
     dihedral_is("A 9 SER CHI1 60 30\n", named, (const char *[]){"A:9:N", "A:9:CA", "A:9:CB", "A:9:OG"}, 30, 60);
     dihedral_is("B 2 HIS chi2 -90 30\n", named, (const char *[]){"B:2:CA", "B:2:CB", "B:2:CG", "B:2:ND1"}, -120, 60);
-    dihedral_is("A 6 PHI 170 -170\n", "chain residue angle lower upper", (const char *[]){"A:5:C", "A:6:N", "A:6:CA", "A:6:C"}, 170, 20);
+    dihedral_is("A 6 PHI 170 -170\n", "chain residue angle lower upper", (const char *[]){"A:5:C", "A:6:N", "A:6:CA", "A:6:C"},
+                170, 20);
     refused("A 6 GLY PHY -60 20\n", named, NULL, 1, 9, "the nearest: PHI");
     refused("A 6 ALA PHI -60 20\n", named, NULL, 1, 5, "A:6 is GLY in the sequence");
 }
 
 Test(table, angles_that_a_residue_lacks_are_unmapped) {
-    tml_problem *problem = good("A 5 PHI -60 20\nA 10 PSI -45 20\nA 7 CHI1 60 20\nA 9 CHI2 60 20\nC 1 PHI -60 20\n", "chain residue angle target error", NULL);
+    tml_problem *problem = good("A 5 PHI -60 20\nA 10 PSI -45 20\nA 7 CHI1 60 20\nA 9 CHI2 60 20\nC 1 PHI -60 20\n",
+                                "chain residue angle target error", NULL);
     cr_assert_eq(problem->restraints.dihedral_count, 0);
     cr_assert_eq(problem->restraints.unmapped_count, 5);
     tml_problem_free(problem);
@@ -312,7 +322,8 @@ Test(table, angles_that_a_residue_lacks_are_unmapped) {
 Test(table, dihedrals_by_four_atoms) {
     dihedral_is("A:5:C A:6:N A:6:CA A:6:C -80 -40\n", "address_1 address_2 address_3 address_4 lower upper",
                 (const char *[]){"A:5:C", "A:6:N", "A:6:CA", "A:6:C"}, -80, 40);
-    refused("A:5:C,A:5:CA\tA:6:N\tA:6:CA\tA:6:C\t-80\t-40\n", "address_1 address_2 address_3 address_4 lower upper", NULL, 1, 1, "one atom");
+    refused("A:5:C,A:5:CA\tA:6:N\tA:6:CA\tA:6:C\t-80\t-40\n", "address_1 address_2 address_3 address_4 lower upper", NULL, 1, 1,
+            "one atom");
 }
 
 /* ---- old names ---- */
@@ -321,10 +332,12 @@ static void renamed(const char *address, const char *mapping, const char *now) {
     char text[80], name[64];
     snprintf(text, sizeof text, "%s P 3\n", address);
     tml_problem *problem = good_with(text, "address_1 address_2 upper", NULL, mapping);
-    cr_assert_eq(problem->restraints.distance_count, 1, "%s: %s", address, problem->restraints.unmapped_count > 0 ? problem->restraints.unmapped[0].reason : "");
+    cr_assert_eq(problem->restraints.distance_count, 1, "%s: %s", address,
+                 problem->restraints.unmapped_count > 0 ? problem->restraints.unmapped[0].reason : "");
     tml_problem_atom(problem, problem->restraints.group_atoms[0], name, sizeof name);
     cr_assert_str_eq(name, now);
-    cr_assert(has_note(problem, strcmp(address, now) == 0 ? "0 of 2 atom names changed" : "1 of 2 atom names changed, the first of them"));
+    cr_assert(has_note(problem, strcmp(address, now) == 0 ? "0 of 2 atom names changed"
+                                                          : "1 of 2 atom names changed, the first of them"));
     tml_problem_free(problem);
 }
 

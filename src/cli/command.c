@@ -26,7 +26,8 @@
 
 /* Names and words of the inputs may hold anything; a terminal shall not act on it. */
 static void print_plainly(const char *text, FILE *out) {
-    for (const unsigned char *at = (const unsigned char *)text; *at != '\0'; at++) fputc(*at < ' ' || *at == 127 ? '?' : *at, out);
+    for (const unsigned char *at = (const unsigned char *)text; *at != '\0'; at++)
+        fputc(*at < ' ' || *at == 127 ? '?' : *at, out);
 }
 
 int tml_cli_help(const tml_command *command) {

@@ -81,7 +81,8 @@ bool tml_column_is_number(tml_column_kind kind) {
 /* ---- words ---- */
 
 static tml_status bad_word(parser *p, const char *text) {
-    return tml_fail_at(p->error, TML_BAD_INPUT, p->path, 0, 0, "word %d of its %s, '%s': %s", p->number, p->option, p->word, text);
+    return tml_fail_at(p->error, TML_BAD_INPUT, p->path, 0, 0, "word %d of its %s, '%s': %s", p->number, p->option, p->word,
+                       text);
 }
 
 static bool is_blank(char c) {
@@ -168,13 +169,14 @@ static tml_status column_word(parser *p) {
     if (skipped) return TML_OK;
     if (out->slot[column.kind][column.atom] >= 0) return bad_word(p, "this column is named twice");
     const char *value = p->word + p->sign + 1;
-    if (sign != '\0' && *value == '\0') return bad_word(p, sign == '@' ? "a heading is expected after '@'" : "a value is expected after '='");
+    if (sign != '\0' && *value == '\0')
+        return bad_word(p, sign == '@' ? "a heading is expected after '@'" : "a value is expected after '='");
     if (out->count == TML_COLUMNS_MOST) return bad_word(p, "there are too many columns");
     if (sign == '@' && (column.heading = tml_strings_add(p->pool, value)) == NULL) return tml_no_memory(p->error);
     if (sign == '=' && (column.fixed = tml_strings_add(p->pool, value)) == NULL) return tml_no_memory(p->error);
     if ((column.word = tml_strings_add_part(p->pool, p->word, p->sign)) == NULL) return tml_no_memory(p->error);
     out->by_heading = out->by_heading || sign == '@';
-    out->slot[column.kind][column.atom] = (int8_t)out->count;
+    out->slot[column.kind][column.atom] = out->count;
     out->columns[out->count++] = column;
     return TML_OK;
 }
@@ -193,14 +195,16 @@ static tml_status agree_on_atom(parser *p, int atom) {
     const tml_layout *out = p->out;
     char text[160];
     bool address = out->slot[TML_COLUMN_ADDRESS][atom] >= 0, name = out->slot[TML_COLUMN_ATOM][atom] >= 0;
-    bool residue = tml_layout_column(out, TML_COLUMN_RESIDUE, atom) != NULL, chain = tml_layout_column(out, TML_COLUMN_CHAIN, atom) != NULL;
+    bool residue = tml_layout_column(out, TML_COLUMN_RESIDUE, atom) != NULL,
+         chain = tml_layout_column(out, TML_COLUMN_CHAIN, atom) != NULL;
     bool residue_name = tml_layout_column(out, TML_COLUMN_RESIDUE_NAME, atom) != NULL;
     if (!address && !name)
         snprintf(text, sizeof text, "atom_%d or address_%d is missing", atom + 1, atom + 1);
     else if (address && (name || residue))
         snprintf(text, sizeof text, "address_%d holds residue and atom; these need no column of their own", atom + 1);
     else if (residue && !chain)
-        snprintf(text, sizeof text, "residue_%d needs chain_%d; where the table has none, add chain_%d=A or chain=A", atom + 1, atom + 1, atom + 1);
+        snprintf(text, sizeof text, "residue_%d needs chain_%d; where the table has none, add chain_%d=A or chain=A", atom + 1,
+                 atom + 1, atom + 1);
     else if (!address && !residue && (chain || residue_name))
         snprintf(text, sizeof text, "residue_%d is missing", atom + 1);
     else
@@ -217,8 +221,10 @@ static tml_status agree_on_limits(parser *p, bool dihedral) {
     if (!target && (error || sides)) return disagree(p, "error, minus and plus need target");
     if (error && sides) return disagree(p, "either error, or minus and plus");
     if (!dihedral) return TML_OK;
-    if (limits && !(has(p, TML_COLUMN_LOWER) && has(p, TML_COLUMN_UPPER))) return disagree(p, "a dihedral needs both lower and upper");
-    if (sides && !(has(p, TML_COLUMN_MINUS) && has(p, TML_COLUMN_PLUS))) return disagree(p, "a dihedral needs both minus and plus");
+    if (limits && !(has(p, TML_COLUMN_LOWER) && has(p, TML_COLUMN_UPPER)))
+        return disagree(p, "a dihedral needs both lower and upper");
+    if (sides && !(has(p, TML_COLUMN_MINUS) && has(p, TML_COLUMN_PLUS)))
+        return disagree(p, "a dihedral needs both minus and plus");
     return p->out->nanometres ? disagree(p, "nm is for distances; dihedrals are in degrees") : TML_OK;
 }
 
@@ -226,7 +232,8 @@ static tml_status agree(parser *p) {
     tml_layout *out = p->out;
     bool angle = has(p, TML_COLUMN_ANGLE);
     int most = 0;
-    if (out->count == 0) return disagree(p, "none is named; such as: chain_1 residue_1 atom_1 chain_2 residue_2 atom_2 lower upper");
+    if (out->count == 0)
+        return disagree(p, "none is named; such as: chain_1 residue_1 atom_1 chain_2 residue_2 atom_2 lower upper");
     for (int i = 0; i < out->count; i++)
         if (out->columns[i].atom < TML_TABLE_ATOMS && out->columns[i].atom >= most) most = out->columns[i].atom + 1;
     if (angle && most > 0) return disagree(p, "an angle's name goes with chain and residue, not with atoms");
@@ -237,7 +244,8 @@ static tml_status agree(parser *p) {
     for (int atom = 0; status == TML_OK && !angle && atom < out->atom_count; atom++) status = agree_on_atom(p, atom);
     if (status == TML_OK) status = agree_on_limits(p, out->atom_count == 4);
     if (status == TML_OK && out->by_heading && out->heading == TML_HEADING_NO) return disagree(p, "'@' needs a heading line");
-    if (status == TML_OK && out->decimal_comma && out->separator == ',') return disagree(p, "a comma cannot be both separator and decimal sign");
+    if (status == TML_OK && out->decimal_comma && out->separator == ',')
+        return disagree(p, "a comma cannot be both separator and decimal sign");
     return status;
 }
 

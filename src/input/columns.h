@@ -48,7 +48,7 @@ typedef struct tml_layout {
     bool more;       /* further fields are passed over */
     bool by_heading; /* a column is found by its heading */
     int atom_count;  /* 2 for distances, 4 for dihedrals; 4 with an angle's name */
-    int8_t slot[TML_COLUMN_KINDS][TML_TABLE_ATOMS + 1]; /* index into columns, -1 for none */
+    int slot[TML_COLUMN_KINDS][TML_TABLE_ATOMS + 1]; /* index into columns, -1 for none */
     char separator;  /* '\t' ',' ';' '|', ' ' for any blanks, 0: told from the first row */
     bool decimal_comma, nanometres;
     tml_heading heading;

@@ -82,10 +82,10 @@ static bool add_row(tml_old_names *names, tml_old_row row, bool *twice) {
 
 static bool add_pair(tml_old_names *names, size_t which, const char *residue, const char *stem, tml_strings *pool) {
     bool twice;
-    for (char digit = '1'; digit <= '2'; digit++) {
+    for (int second = 0; second < 2; second++) {
         char old[8], now[8];
-        snprintf(old, sizeof old, "%s%c", stem, digit);
-        snprintf(now, sizeof now, "%s%c", stem, digit == '1' ? BUILT_IN[which].one : BUILT_IN[which].two);
+        snprintf(old, sizeof old, "%s%c", stem, second ? '2' : '1');
+        snprintf(now, sizeof now, "%s%c", stem, second ? BUILT_IN[which].two : BUILT_IN[which].one);
         tml_old_row row = {residue, tml_strings_add(pool, old), tml_strings_add(pool, now)};
         if (row.old == NULL || row.now == NULL || !add_row(names, row, &twice)) return false;
     }
@@ -128,25 +128,31 @@ static words words_of(const char *line, size_t length) {
 }
 
 static bool is_head(const words *w) {
-    return w->count == 2 && w->length[0] == 9 && memcmp(w->text[0], "old-names", 9) == 0 && w->length[1] == 1 && *w->text[1] == '1';
+    return w->count == 2 && w->length[0] == 9 && memcmp(w->text[0], "old-names", 9) == 0 && w->length[1] == 1 &&
+           *w->text[1] == '1';
 }
 
-static tml_status read_row(tml_old_names *out, const words *w, const char *path, long line, const char *start, tml_strings *pool,
-                           tml_error *error) {
+static tml_status read_row(tml_old_names *out, const words *w, const char *path, long line, const char *start,
+                           tml_strings *pool, tml_error *error) {
     const char *parts[3];
     bool twice = false;
     if (w->count != 3)
         return tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w->text[0] - start) + 1,
-                           "%s words where three are expected: residue, old name, new name", w->count > 3 ? "more than three" : w->count == 2 ? "two" : "one");
+                           "%s words where three are expected: residue, old name, new name",
+                           w->count > 3    ? "more than three"
+                           : w->count == 2 ? "two"
+                                           : "one");
     for (int i = 0; i < 3; i++) {
         if (w->length[i] > NAME_MOST)
-            return tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w->text[i] - start) + 1, "a name of at most %d characters is expected", NAME_MOST);
+            return tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w->text[i] - start) + 1,
+                               "a name of at most %d characters is expected", NAME_MOST);
         parts[i] = tml_strings_add_part(pool, w->text[i], (size_t)w->length[i]);
         if (parts[i] == NULL) return tml_no_memory(error);
     }
     if (!add_row(out, (tml_old_row){parts[0], parts[1], parts[2]}, &twice)) return tml_no_memory(error);
     if (!twice) return TML_OK;
-    return tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w->text[1] - start) + 1, "%s of %s has a new name already", parts[1], parts[0]);
+    return tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w->text[1] - start) + 1, "%s of %s has a new name already",
+                       parts[1], parts[0]);
 }
 
 static tml_status load_file(tml_old_names *out, const char *path, tml_strings *pool, tml_error *error) {
@@ -157,21 +163,24 @@ static tml_status load_file(tml_old_names *out, const char *path, tml_strings *p
     tml_status status = tml_source_read(path, &text, &length, error);
     if (status != TML_OK && status != TML_NO_MEMORY && error != NULL) {
         size_t used = strlen(error->message);
-        snprintf(error->message + used, sizeof error->message - used, "; the built-in mappings are %s and %s", BUILT_IN[0].name, BUILT_IN[1].name);
+        snprintf(error->message + used, sizeof error->message - used, "; the built-in mappings are %s and %s", BUILT_IN[0].name,
+                 BUILT_IN[1].name);
     }
     for (const char *at = text; status == TML_OK && *at != '\0';) {
         size_t span = strcspn(at, "\n");
         words w = words_of(at, span);
         line++;
         if (w.count > 0 && !begun && !is_head(&w))
-            status = tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w.text[0] - at) + 1, "found '%.*s' where 'old-names 1', which begins every mapping, is expected",
+            status = tml_fail_at(error, TML_BAD_INPUT, path, line, (long)(w.text[0] - at) + 1,
+                                 "found '%.*s' where 'old-names 1', which begins every mapping, is expected",
                                  w.length[0] > 40 ? 40 : w.length[0], w.text[0]);
         else if (w.count > 0 && begun)
             status = read_row(out, &w, path, line, at, pool, error);
         begun = begun || w.count > 0;
         at += span + (at[span] != '\0');
     }
-    if (status == TML_OK && !begun) status = tml_fail_at(error, TML_BAD_INPUT, path, 0, 0, "the mapping is empty; 'old-names 1' is expected");
+    if (status == TML_OK && !begun)
+        status = tml_fail_at(error, TML_BAD_INPUT, path, 0, 0, "the mapping is empty; 'old-names 1' is expected");
     free(text);
     return status;
 }
@@ -185,8 +194,8 @@ static const tml_old_row *row_of(const tml_old_names *names, const char *residue
     return row < 0 ? NULL : &names->rows[row];
 }
 
-/* Whether a name can only be a present one, and the mapping moves names on in a row: with HB1 to HB2 and HB2 to HB3, a HB3 tells
- * that HB2 is not what the mapping takes it for. */
+/* Whether a name can only be a present one, and the mapping moves names on in a row: with HB1 to HB2 and HB2 to HB3, a HB3
+ * tells that HB2 is not what the mapping takes it for. */
 static bool is_mixed(const tml_old_names *names, const char *residue, const char *name) {
     const tml_old_row *to = row_of(names, residue, name, 1);
     return to != NULL && strcmp(to->old, to->now) != 0 && row_of(names, residue, to->old, 1) != NULL;
@@ -206,19 +215,22 @@ tml_status tml_old_names_apply(tml_old_names *names, const char *residue, tml_ad
     }
     const tml_old_row *row = row_of(names, residue, wanted, 0);
     if (row == NULL && is_mixed(names, residue, wanted))
-        return tml_fail_at(error, TML_BAD_INPUT, problem->files[address->place.file], address->place.line, address->place.column,
-                           "%s:%s:%s: %s is no old name of %s in '%s', but what its %s becomes; old and present names are mixed",
-                           address->chain, address->number, address->atom, wanted, residue, names->label,
-                           row_of(names, residue, wanted, 1)->old);
+        return tml_fail_at(
+            error, TML_BAD_INPUT, problem->files[address->place.file], address->place.line, address->place.column,
+            "%s:%s:%s: %s is no old name of %s in '%s', but what its %s becomes; old and present names are mixed",
+            address->chain, address->number, address->atom, wanted, residue, names->label,
+            row_of(names, residue, wanted, 1)->old);
     const char *now = row == NULL ? wanted : row->now;
     if (strcmp(now, address->atom) == 0) return TML_OK;
     if (names->changed++ == 0)
-        snprintf(names->first, sizeof names->first, "%.40s of %.32s:%.32s (%.20s) to %.40s", address->atom, address->chain, address->number, residue, now);
+        snprintf(names->first, sizeof names->first, "%.40s of %.32s:%.32s (%.20s) to %.40s", address->atom, address->chain,
+                 address->number, residue, now);
     address->atom = now;
     return TML_OK;
 }
 
-static tml_status apply_in(tml_old_names *names, const tml_roll *roll, tml_address *address, tml_problem *problem, tml_error *error) {
+static tml_status apply_in(tml_old_names *names, const tml_roll *roll, tml_address *address, tml_problem *problem,
+                           tml_error *error) {
     int32_t residue = tml_roll_find(roll, address->chain, address->number);
     return tml_old_names_apply(names, residue < 0 ? NULL : roll->outline->residues[residue].name, address, problem, error);
 }
@@ -230,14 +242,15 @@ tml_status tml_old_names_apply_rows(tml_old_names *names, tml_draft *draft, tml_
     for (size_t i = 0; status == TML_OK && i < rows->address_count; i++)
         status = apply_in(names, &roll, &rows->addresses[i], draft->problem, error);
     for (size_t i = 0; status == TML_OK && i < rows->dihedral_count; i++)
-        for (int k = 0; status == TML_OK && k < 4; k++) status = apply_in(names, &roll, &rows->dihedrals[i].atoms[k], draft->problem, error);
+        for (int k = 0; status == TML_OK && k < 4; k++)
+            status = apply_in(names, &roll, &rows->dihedrals[i].atoms[k], draft->problem, error);
     tml_roll_clear(&roll);
     return status;
 }
 
 tml_status tml_old_names_note(const tml_old_names *names, tml_place place, tml_problem *problem, tml_error *error) {
     if (names->label == NULL) return TML_OK;
-    return tml_problem_add_note(problem, place, error, "old names by '%.200s': %lld of %lld atom names changed%s%s", names->label,
-                                (long long)names->changed, (long long)names->seen, names->changed > 0 ? ", the first of them " : "",
-                                names->first);
+    return tml_problem_add_note(problem, place, error, "old names by '%.200s': %lld of %lld atom names changed%s%s",
+                                names->label, (long long)names->changed, (long long)names->seen,
+                                names->changed > 0 ? ", the first of them " : "", names->first);
 }

@@ -14,7 +14,8 @@ static bool enter(tml_roll *roll, int32_t residue, int32_t *chains, int32_t *las
         roll->after[last[chain]] = residue;
     }
     last[chain] = residue;
-    return tml_index_find(roll->index, chain, entered->number) >= 0 || tml_index_add(roll->index, chain, entered->number, residue);
+    return tml_index_find(roll->index, chain, entered->number) >= 0 ||
+           tml_index_add(roll->index, chain, entered->number, residue);
 }
 
 bool tml_roll_make(const tml_outline *outline, tml_roll *out) {
@@ -23,7 +24,8 @@ bool tml_roll_make(const tml_outline *outline, tml_roll *out) {
     out->before = tml_alloc(outline->residue_count, sizeof *out->before);
     out->after = tml_alloc(outline->residue_count, sizeof *out->after);
     int32_t *last = tml_alloc(outline->residue_count, sizeof *last); /* of each chain */
-    bool room = out->index != NULL && out->before != NULL && out->after != NULL && last != NULL && outline->residue_count < INT32_MAX;
+    bool room =
+        out->index != NULL && out->before != NULL && out->after != NULL && last != NULL && outline->residue_count < INT32_MAX;
     for (size_t i = 0; room && i < outline->residue_count; i++) room = enter(out, (int32_t)i, &chains, last);
     free(last);
     return room;

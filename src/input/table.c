@@ -73,7 +73,8 @@ static tml_status tell(table *t) {
         status = tml_problem_add_note(t->problem, place, t->error, "this line is taken as the table's heading");
     place.line = 0;
     if (status == TML_OK && t->floored > 0)
-        status = tml_problem_add_note(t->problem, place, t->error, "%d rows have an error wider than their distance; their lower limit is 0", t->floored);
+        status = tml_problem_add_note(t->problem, place, t->error,
+                                      "%d rows have an error wider than their distance; their lower limit is 0", t->floored);
     if (status == TML_OK && t->layout.nanometres)
         status = tml_problem_add_note(t->problem, place, t->error, "distances are read in nm");
     return status == TML_OK ? tml_old_names_note(&t->old_names, place, t->problem, t->error) : status;
@@ -100,9 +101,10 @@ static tml_status expected(table *t, const tml_column *column, const char *what)
     field value = value_of(t, column);
     int shown = value.length > SHOWN_MOST ? SHOWN_MOST : value.length;
     if (value.length == 0)
-        return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column), "%s: the field is empty where %s is expected", column->word, what);
-    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column), "%s: found '%.*s' where %s is expected", column->word, shown,
-                       value.text, what);
+        return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column),
+                           "%s: the field is empty where %s is expected", column->word, what);
+    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column), "%s: found '%.*s' where %s is expected",
+                       column->word, shown, value.text, what);
 }
 
 /* ---- lines ---- */
@@ -214,10 +216,12 @@ static bool is_heading(const table *t) {
 static tml_status find_heading(table *t, tml_column *column) {
     char near[320] = "", (*names)[33];
     for (int i = 0; i < t->count; i++) {
-        if ((size_t)t->fields[i].length != strlen(column->heading) || memcmp(t->fields[i].text, column->heading, (size_t)t->fields[i].length) != 0)
+        if ((size_t)t->fields[i].length != strlen(column->heading) ||
+            memcmp(t->fields[i].text, column->heading, (size_t)t->fields[i].length) != 0)
             continue;
         if (column->field >= 0)
-            return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, t->fields[i].column, "%s: two columns have the heading '%s'", column->word, column->heading);
+            return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, t->fields[i].column,
+                               "%s: two columns have the heading '%s'", column->word, column->heading);
         column->field = i;
     }
     if (column->field >= 0) return TML_OK;
@@ -231,8 +235,9 @@ static tml_status find_heading(table *t, tml_column *column) {
     }
     tml_nearest_append(&nearest, near, sizeof near);
     free(names);
-    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, 1, "%s: no heading '%s' in this line, whose fields are apart by %s; the nearest: %s",
-                       column->word, column->heading, separator_name(t->layout.separator), near);
+    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, 1,
+                       "%s: no heading '%s' in this line, whose fields are apart by %s; the nearest: %s", column->word,
+                       column->heading, separator_name(t->layout.separator), near);
 }
 
 static tml_status read_heading(table *t) {
@@ -247,13 +252,16 @@ static tml_status read_heading(table *t) {
 
 static tml_status check_width(table *t) {
     char text[200];
-    const char *apart = separator_name(t->layout.separator), *who = t->layout.by_heading ? "the heading has" : "the columns name";
+    const char *apart = separator_name(t->layout.separator),
+               *who = t->layout.by_heading ? "the heading has" : "the columns name";
     bool more = t->layout.more && !t->layout.by_heading;
     if (t->wide == 0) t->wide = t->layout.positions;
-    if (t->count == t->wide + 1 && t->fields[t->count - 1].length == 0 && t->layout.separator != ' ') t->count--; /* one more at the end */
+    if (t->count == t->wide + 1 && t->fields[t->count - 1].length == 0 && t->layout.separator != ' ')
+        t->count--; /* one more at the end */
     if (t->count == t->wide || (more && t->count > t->wide)) return TML_OK;
     if (t->count < t->wide) {
-        snprintf(text, sizeof text, "the row ends after %d field%s apart by %s; %s %d", t->count, t->count == 1 ? "" : "s", apart, who, t->wide);
+        snprintf(text, sizeof text, "the row ends after %d field%s apart by %s; %s %d", t->count, t->count == 1 ? "" : "s",
+                 apart, who, t->wide);
         return fail_column(t, t->end_column, text);
     }
     snprintf(text, sizeof text, "the row has %d fields apart by %s; %s %d%s", t->count, apart, who, t->wide,
@@ -266,13 +274,15 @@ static tml_status read_line(table *t, char *line, char *end) {
     const char *start = line;
     while (start < end && is_blank(*start)) start++;
     size_t mark = strlen(t->layout.comment);
-    if (start == end || (mark > 0 && (size_t)(end - start) >= mark && memcmp(start, t->layout.comment, mark) == 0)) return TML_OK;
+    if (start == end || (mark > 0 && (size_t)(end - start) >= mark && memcmp(start, t->layout.comment, mark) == 0))
+        return TML_OK;
     if (t->layout.separator == 0) t->layout.separator = separator_of(t, line, end);
     tml_status status = split_line(t, line, end);
     if (status != TML_OK) return status;
     if (first && is_heading(t)) return read_heading(t);
     status = check_width(t);
-    if (status == TML_OK && t->rows == INT32_MAX) return tml_fail_at(t->error, TML_TOO_LARGE, t->path, t->line, 0, "too many rows");
+    if (status == TML_OK && t->rows == INT32_MAX)
+        return tml_fail_at(t->error, TML_TOO_LARGE, t->path, t->line, 0, "too many rows");
     t->rows++;
     return status == TML_OK ? read_row(t) : status;
 }
@@ -282,7 +292,8 @@ static tml_status read_lines(table *t, char *text) {
     while (status == TML_OK && *text != '\0') {
         size_t length = strcspn(text, "\n");
         char *end = text + length, *next = *end == '\0' ? end : end + 1;
-        if (length >= INT32_MAX || t->line == INT32_MAX) return tml_fail_at(t->error, TML_TOO_LARGE, t->path, t->line, 0, "too many lines, or too long a line");
+        if (length >= INT32_MAX || t->line == INT32_MAX)
+            return tml_fail_at(t->error, TML_TOO_LARGE, t->path, t->line, 0, "too many lines, or too long a line");
         if (length > 0 && end[-1] == '\r') end--;
         t->line++;
         status = read_line(t, text, end);
@@ -333,9 +344,11 @@ static const tml_column *column_at(const table *t, tml_column_kind kind) {
 /* ---- addresses ---- */
 
 /* The one-letter codes of IUPAC-IUB, J. Biol. Chem. 243 (1968) 3557. */
-static const struct { char letter; const char *name; } LETTERS[] = {
-    {'A', "ALA"}, {'R', "ARG"}, {'N', "ASN"}, {'D', "ASP"}, {'C', "CYS"}, {'Q', "GLN"}, {'E', "GLU"}, {'G', "GLY"}, {'H', "HIS"}, {'I', "ILE"},
-    {'L', "LEU"}, {'K', "LYS"}, {'M', "MET"}, {'F', "PHE"}, {'P', "PRO"}, {'S', "SER"}, {'T', "THR"}, {'W', "TRP"}, {'Y', "TYR"}, {'V', "VAL"},
+static const struct { char letter; const char *name;
+} LETTERS[] = {
+    {'A', "ALA"}, {'R', "ARG"}, {'N', "ASN"}, {'D', "ASP"}, {'C', "CYS"}, {'Q', "GLN"}, {'E', "GLU"},
+    {'G', "GLY"}, {'H', "HIS"}, {'I', "ILE"}, {'L', "LEU"}, {'K', "LYS"}, {'M', "MET"}, {'F', "PHE"},
+    {'P', "PRO"}, {'S', "SER"}, {'T', "THR"}, {'W', "TRP"}, {'Y', "TYR"}, {'V', "VAL"},
 };
 
 static bool same_residue(const char *name, const char *text, int length) {
@@ -360,7 +373,8 @@ static tml_status check_residue(table *t, const tml_column *column, tml_address 
     const char *name = t->roll.outline->residues[residue].name;
     address->residue = name;
     if (same_residue(name, told, length)) return TML_OK;
-    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column), "%s: found '%.*s' where %s:%s is %s in the sequence", column->word,
+    return tml_fail_at(t->error, TML_BAD_INPUT, t->path, t->line, column_of(t, column),
+                       "%s: found '%.*s' where %s:%s is %s in the sequence", column->word,
                        length > SHOWN_MOST ? SHOWN_MOST : length, told, address->chain, address->number, name);
 }
 
@@ -380,7 +394,8 @@ static tml_status finish_address(table *t, int atom, const tml_column *holder, t
     tml_status status = *address->number == '\0' ? TML_OK : settle_residue(t, atom, holder, address);
     int32_t residue = tml_roll_find(&t->roll, address->chain, address->number);
     if (status != TML_OK) return status;
-    return tml_old_names_apply(&t->old_names, residue < 0 ? NULL : t->roll.outline->residues[residue].name, address, t->problem, t->error);
+    return tml_old_names_apply(&t->old_names, residue < 0 ? NULL : t->roll.outline->residues[residue].name, address, t->problem,
+                               t->error);
 }
 
 static tml_status by_columns(table *t, int atom, tml_address *out) {
@@ -394,9 +409,11 @@ static tml_status by_columns(table *t, int atom, tml_address *out) {
 }
 
 /* One of the addresses of a field: atom, residue:atom where the chain has a column, or chain:residue:atom where it has none. */
-static tml_status part_of_address(table *t, int atom, const tml_column *column, const char *text, int length, tml_address *out) {
+static tml_status part_of_address(table *t, int atom, const tml_column *column, const char *text, int length,
+                                  tml_address *out) {
     const tml_column *chain = tml_layout_column(&t->layout, TML_COLUMN_CHAIN, atom);
-    const char *what = chain == NULL ? "an atom as chain:residue:atom, such as A:7:CA," : "an atom as residue:atom, such as 7:CA,";
+    const char *what =
+        chain == NULL ? "an atom as chain:residue:atom, such as A:7:CA," : "an atom as residue:atom, such as 7:CA,";
     const char *start[3] = {text}, *end = text + length;
     int parts = 1;
     if (length > NAME_MOST) return expected(t, column, what);
@@ -409,7 +426,8 @@ static tml_status part_of_address(table *t, int atom, const tml_column *column, 
         if (start[i] == end || *start[i] == ':') return expected(t, column, what);
     if (chain != NULL ? parts != 2 : parts == 2) return expected(t, column, what);
     tml_status status = pooled(t, start[parts - 1], (int)(end - start[parts - 1]), &out->atom);
-    if (status == TML_OK && parts > 1) status = pooled(t, start[parts - 2], (int)(start[parts - 1] - start[parts - 2]) - 1, &out->number);
+    if (status == TML_OK && parts > 1)
+        status = pooled(t, start[parts - 2], (int)(start[parts - 1] - start[parts - 2]) - 1, &out->number);
     if (status == TML_OK && parts == 3) status = pooled(t, start[0], (int)(start[1] - start[0]) - 1, &out->chain);
     if (status == TML_OK && parts == 2) status = name_at(t, chain, "a chain", &out->chain);
     return status == TML_OK ? finish_address(t, atom, column, out) : status;
@@ -419,7 +437,11 @@ static tml_status part_of_address(table *t, int atom, const tml_column *column, 
 static tml_status read_atoms(table *t, int atom, tml_address *out, int room, int *count) {
     const tml_column *column = tml_layout_column(&t->layout, TML_COLUMN_ADDRESS, atom);
     const tml_column *place = column != NULL ? column : tml_layout_column(&t->layout, TML_COLUMN_ATOM, atom);
-    tml_address blank = {.chain = t->none, .number = t->none, .residue = t->none, .atom = t->none, .place = {t->file, t->line, column_of(t, place)}};
+    tml_address blank = {.chain = t->none,
+                         .number = t->none,
+                         .residue = t->none,
+                         .atom = t->none,
+                         .place = {t->file, t->line, column_of(t, place)}};
     *count = 1;
     *out = blank;
     if (column == NULL) return by_columns(t, atom, out);
@@ -484,8 +506,8 @@ static const char *const *side_chain(const char *residue, int chi) {
     return NULL;
 }
 
-/* An atom of an angle. Past a chain's end, and for a chi that a residue lacks, the name is one that no residue has: mapping tells
- * of it as of every other name that is not there. */
+/* An atom of an angle. Past a chain's end, and for a chi that a residue lacks, the name is one that no residue has: mapping
+ * tells of it as of every other name that is not there. */
 static tml_status angle_atom(table *t, const char *name, int32_t residue, tml_address *out) {
     int32_t there = *name == '-' ? t->roll.before[residue] : *name == '+' ? t->roll.after[residue] : residue;
     char past[NAME_MOST + 16];
@@ -543,7 +565,8 @@ static tml_status read_target(table *t, bool distance, limits *out) {
     tml_status status = number_at(t, column_at(t, TML_COLUMN_TARGET), distance ? "a distance" : "an angle in degrees", &target);
     if (status == TML_OK) status = width_at(t, both != NULL ? both : column_at(t, TML_COLUMN_MINUS), &minus);
     if (status == TML_OK) status = width_at(t, both != NULL ? both : column_at(t, TML_COLUMN_PLUS), &plus);
-    if (status == TML_OK && distance && target < 0) status = expected(t, column_at(t, TML_COLUMN_TARGET), "a distance, which is never negative,");
+    if (status == TML_OK && distance && target < 0)
+        status = expected(t, column_at(t, TML_COLUMN_TARGET), "a distance, which is never negative,");
     out->lower = target - minus;
     out->upper = target + plus;
     if (distance && out->lower < 0) {
@@ -565,7 +588,8 @@ static tml_status read_interval(table *t, bool distance, limits *out) {
 }
 
 static tml_status read_limits(table *t, bool distance, limits *out) {
-    const tml_column *id = column_at(t, TML_COLUMN_ID), *list = column_at(t, TML_COLUMN_LIST), *weight = column_at(t, TML_COLUMN_WEIGHT);
+    const tml_column *id = column_at(t, TML_COLUMN_ID), *list = column_at(t, TML_COLUMN_LIST),
+                     *weight = column_at(t, TML_COLUMN_WEIGHT);
     char own[24];
     bool target = column_at(t, TML_COLUMN_TARGET) != NULL;
     tml_status status = target ? read_target(t, distance, out) : read_interval(t, distance, out);
@@ -579,7 +603,8 @@ static tml_status read_limits(table *t, bool distance, limits *out) {
     }
     snprintf(own, sizeof own, "row%d", t->rows);
     out->alone = id == NULL || is_open(value_of(t, id));
-    status = out->alone ? pooled(t, own, (int)strlen(own), &out->id) : name_at(t, id, "an id of at most 40 characters", &out->id);
+    status =
+        out->alone ? pooled(t, own, (int)strlen(own), &out->id) : name_at(t, id, "an id of at most 40 characters", &out->id);
     if (status != TML_OK) return status;
     return list == NULL || is_open(value_of(t, list)) ? pooled(t, "table", 5, &out->list)
                                                       : name_at(t, list, "a list's name of at most 40 characters", &out->list);

@@ -40,16 +40,16 @@ class Tables(harness.CommandTest):
         self.assertIn('far.csv:2', out)
 
     def test_usage(self):
-        self.write('far.csv', 'P,R,4,5\n')
+        far = ['--table', self.write('far.csv', 'P,R,4,5\n'), '--columns']
         self.usage('check', 'ring.sheet', '--table', 'far.csv', says='needs --columns')
         self.usage('check', 'ring.sheet', '--columns', 'atom_1', says='there is none')
         self.usage('check', 'ring.sheet', '--table-form', 'nm', says='there is none')
         self.usage('check', '--table', 'far.csv', '--columns', 'atom_1 atom_2 lower upper', says='No input')
         self.usage('check', '-', '--table', '-', '--columns', 'atom_1 atom_2 lower upper', says='only once')
-        self.usage('check', 'ring.sheet', '--table', 'far.csv', '--columns', 'a', '--columns', 'b', says='twice')
-        self.usage('check', 'ring.sheet', '--table', 'far.csv', '--columns', 'atom_1 atom_2 lower uper', says='far.csv: word 4 of its columns')
+        self.usage('check', 'ring.sheet', *far, 'a', '--columns', 'b', says='twice')
+        self.usage('check', 'ring.sheet', *far, 'atom_1 atom_2 lower uper', says='far.csv: word 4 of its columns')
         self.usage('check', 'ring.sheet', '--table', 'no.csv', '--columns', 'atom_1 atom_2 lower upper', says='no.csv')
-        self.usage('bounds', 'ring.sheet', '--table', 'far.csv', '--columns', 'atom_1 atom_2 lower upper', '-o', 'far.csv', says='one of the inputs')
+        self.usage('bounds', 'ring.sheet', *far, 'atom_1 atom_2 lower upper', '-o', 'far.csv', says='one of the inputs')
         self.assertEqual(self.read('far.csv'), b'P,R,4,5\n')
 
     def test_a_bad_row_has_a_place(self):

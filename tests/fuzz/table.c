@@ -1,12 +1,15 @@
-/* Any bytes as a table, its columns and form in its first lines: it is read or refused with a reason, and what is read has finite
- * numbers, in order, and lies inside the rows.
+/* Any bytes as a table, its columns and form in its first lines: it is read or refused with a reason, and what is read has
+ * finite numbers, in order, and lies inside the rows.
  *
- * The first line is the columns, the second the form, the third the mapping of old names; then comes the table.
+ * The first line is the columns, the second the form, the third the mapping of old names: the name of one that is built in, or
+ * the text of a file, with | for its line ends. Then comes the table.
  */
 #include <math.h>
 #include <stdint.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
+#include <unistd.h>
 
 #include "input/draft.h"
 #include "restraint/map.h"
@@ -21,6 +24,21 @@ static char *next_line(char **text) {
     *text = *end == '\0' ? end : end + 1;
     *end = '\0';
     return line;
+}
+
+/* The mapping that a line means; NULL for none. Its text goes to a file that has no name any more. */
+static const char *old_names(char *line) {
+    static char path[64];
+    static FILE *file;
+    if (*line == '\0') return NULL;
+    if (strncmp(line, "hydrogens", 9) == 0) return strstr(line, "crossed") != NULL ? "hydrogens-1-2-crossed" : "hydrogens-1-2";
+    if (file == NULL && (file = tmpfile()) == NULL) abort();
+    for (char *at = line; *at != '\0'; at++)
+        if (*at == '|') *at = '\n';
+    rewind(file);
+    if (ftruncate(fileno(file), 0) != 0 || fputs(line, file) == EOF || fflush(file) != 0) abort();
+    snprintf(path, sizeof path, "/dev/fd/%d", fileno(file));
+    return path;
 }
 
 static void check_name(const char *name) {
@@ -63,14 +81,14 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     memcpy(text, data, size);
     text[size] = '\0';
     tml_table table = {.path = "fuzz", .columns = next_line(&rest), .form = next_line(&rest)};
-    const char *mapping = next_line(&rest);
-    if (strncmp(mapping, "hydrogens", 9) == 0) table.old_names = strstr(mapping, "crossed") != NULL ? "hydrogens-1-2-crossed" : "hydrogens-1-2";
+    table.old_names = old_names(next_line(&rest));
 
     tml_draft draft = {.problem = problem};
     tml_status status = tml_read_sheet(&draft, MOLECULE, 0, &error);
     if (status == TML_OK) status = tml_read_table(&draft, &table, rest, 1, &error);
     if (status == TML_OK) check_rows(&draft.rows);
-    if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, &error);
+    if (status == TML_OK)
+        status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, &error);
     if (status == TML_OK) status = tml_restraints_map(&draft.rows, &DEFAULTS, problem, &error);
     if (status != TML_OK && ((status != TML_BAD_INPUT && status != TML_TOO_LARGE) || *error.message == '\0')) abort();
     tml_outline_clear(&draft.outline);

@@ -157,8 +157,10 @@ static tml_status table_way(const char *const *paths, size_t count) {
     const char *const text = "first\tchain\tsecond\tfar\tto\nA:2:HB1\tA\tLYS4\tx\t5\nA:1:HA,A:2:HA\tA\t4\tx\t4\n";
     tml_error error = {0};
     tml_problem *problem = NULL;
-    tml_table table = {.path = in_folder("rows.txt"), .columns = "address_1@first chain_2@chain residue_2@second upper@to atom_2=N list='a b'",
-                       .form = "tab comment=!", .old_names = "hydrogens-1-2"};
+    tml_table table = {.path = in_folder("rows.txt"),
+                       .columns = "address_1@first chain_2@chain residue_2@second upper@to atom_2=N list='a b'",
+                       .form = "tab comment=!",
+                       .old_names = "hydrogens-1-2"};
     tml_read_options options = {.tables = &table, .table_count = 1, .old_names = "hydrogens-1-2"};
     FILE *file = fopen(table.path, "w");
     if (file == NULL) return TML_IO;

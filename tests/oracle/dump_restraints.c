@@ -48,7 +48,8 @@ static void print(const tml_problem *problem) {
     for (int32_t i = 0; i < restraints->distance_count; i++) print_distance(restraints, &restraints->distances[i]);
     for (int32_t i = 0; i < restraints->dihedral_count; i++) print_dihedral(restraints, &restraints->dihedrals[i]);
     for (int32_t i = 0; i < restraints->unmapped_count; i++)
-        printf("unmapped\t%s\t%s\t%s\n", restraints->unmapped[i].list, restraints->unmapped[i].id, restraints->unmapped[i].reason);
+        printf("unmapped\t%s\t%s\t%s\n", restraints->unmapped[i].list, restraints->unmapped[i].id,
+               restraints->unmapped[i].reason);
     for (size_t i = 0; i < problem->note_count; i++) printf("note\t%s\n", problem->notes[i].text);
 }
 
