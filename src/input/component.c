@@ -321,8 +321,8 @@ static tml_status refuse_twins(reader *in) {
 
 static tml_status order_of(const reader *in, const tml_star_value *value, tml_order *out) {
     static const struct { const char *word; tml_order order; } WORDS[] = {
-        {"sing", TML_ORDER_SINGLE},  {"doub", TML_ORDER_DOUBLE},      {"trip", TML_ORDER_TRIPLE}, {"quad", TML_ORDER_TRIPLE},
-        {"arom", TML_ORDER_AROMATIC}, {"delo", TML_ORDER_DELOCALISED}, {"pi", TML_ORDER_DELOCALISED}, {"metal", TML_ORDER_SINGLE},
+        {"sin", TML_ORDER_SINGLE},  {"dou", TML_ORDER_DOUBLE},      {"tri", TML_ORDER_TRIPLE}, {"quad", TML_ORDER_TRIPLE},
+        {"aro", TML_ORDER_AROMATIC}, {"del", TML_ORDER_DELOCALISED}, {"pi", TML_ORDER_DELOCALISED}, {"metal", TML_ORDER_SINGLE},
         {"poly", TML_ORDER_SINGLE},  {"coval", TML_ORDER_SINGLE},     {"coord", TML_ORDER_SINGLE}, {"dative", TML_ORDER_SINGLE}};
     *out = TML_ORDER_SINGLE;
     if (tml_star_is_null(value)) return TML_OK;

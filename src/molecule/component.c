@@ -27,7 +27,8 @@ tml_status tml_component_make(tml_component *component, tml_strings *pool, tml_e
     tml_component_making making = {.component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1};
     making.dropped = tml_alloc(component->atom_count, sizeof *making.dropped);
     making.flat = tml_alloc(component->atom_count, sizeof *making.flat);
-    tml_status status = making.dropped == NULL || making.flat == NULL ? tml_no_memory(error) : make_topology(&making);
+    making.doubted = tml_alloc(component->atom_count, sizeof *making.doubted);
+    tml_status status = making.dropped == NULL || making.flat == NULL || making.doubted == NULL ? tml_no_memory(error) : make_topology(&making);
     if (status == TML_OK) status = judge_coordinates(&making);
     if (status == TML_OK) status = tml_component_join_chain(&making);
     if (status == TML_OK) status = make_planes(&making);
@@ -41,6 +42,7 @@ tml_status tml_component_make(tml_component *component, tml_strings *pool, tml_e
     tml_topology_clear(&making.topology);
     free(making.dropped);
     free(making.flat);
+    free(making.doubted);
     component->made = status == TML_OK;
     return status;
 }
@@ -108,24 +110,29 @@ static bool all_placed(const tml_component_making *making, const int32_t *atoms,
     return making->placed;
 }
 
-/* Coordinates whose bonds are nowhere near what elements allow are no coordinates: zeros, a drawing. */
+/* Atoms whose bonds are nowhere near what elements allow have no coordinates: zeros, a drawing. Where they are many, none have. */
 static tml_status judge_coordinates(tml_component_making *making) {
     static const double SHORTEST = 0.75, LONGEST = 1.35; /* of the usual length */
-    const tml_component *component = making->component;
-    bool any = false;
-    for (size_t i = 0; i < component->atom_count; i++) any = any || !isnan(component->atoms[i].xyz[0]);
-    making->placed = any;
-    for (size_t i = 0; any && i < component->bond_count; i++) {
-        const int32_t ends[2] = {component->bonds[i].a, component->bonds[i].b};
-        if (!all_placed(making, ends, 2)) continue;
-        double found = tml_distance(place_of(making, ends[0]), place_of(making, ends[1])),
-               usual = tml_topology_length(&making->topology, (int32_t)i);
-        if (found >= SHORTEST * usual && found <= LONGEST * usual) continue;
-        making->placed = false;
-        return tml_component_note(making, "its coordinates are not used: %.32s and %.32s are bonded, but stand %.2f Å apart",
-                                  component->atoms[ends[0]].name, component->atoms[ends[1]].name, found);
-    }
-    return TML_OK;
+    enum { ONE_IN = 10 };
+    tml_component *component = making->component;
+    size_t placed = 0, bad = 0, first = 0;
+    for (size_t i = 0; i < component->atom_count; i++) placed += !isnan(component->atoms[i].xyz[0]);
+    making->placed = placed > 0;
+    for (int pass = 0; pass < 2 && placed > 0; pass++) /* find them; then forget them */
+        for (size_t i = 0; i < component->bond_count; i++) {
+            const int32_t ends[2] = {component->bonds[i].a, component->bonds[i].b};
+            double found = tml_distance(place_of(making, ends[0]), place_of(making, ends[1])),
+                   usual = tml_topology_length(&making->topology, (int32_t)i);
+            if (isnan(found) || (found >= SHORTEST * usual && found <= LONGEST * usual)) continue;
+            if (pass == 0 && bad++ == 0) first = i;
+            for (int k = 0; pass == 1 && k < 2; k++) component->atoms[ends[k]].xyz[0] = NAN;
+        }
+    if (bad == 0) return TML_OK;
+    making->rejected = bad * ONE_IN > component->bond_count;
+    making->placed = !making->rejected;
+    return tml_component_note(making, "%s coordinates are not used: %.32s and %.32s%s are bonded, but stand far from a bond's length apart",
+                              making->rejected ? "its" : "some", component->atoms[component->bonds[first].a].name,
+                              component->atoms[component->bonds[first].b].name, bad > 1 ? ", as others," : "");
 }
 
 static double measured_angle(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
@@ -432,32 +439,83 @@ bool tml_component_add_angle(tml_component *component, const char *a, const char
     return true;
 }
 
-static double angle_of(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
+/* The dictionary's value; NAN where it has none. */
+static double listed_angle(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
     const tml_component *component = making->component;
     for (size_t i = 0; i < component->angle_count; i++) {
         const tml_component_angle *angle = &component->angles[i];
         if (angle->b == b && ((angle->a == a && angle->c == c) || (angle->a == c && angle->c == a))) return angle->degrees;
     }
-    double measured = measured_angle(making, a, b, c);
-    return isnan(measured) ? tml_topology_angle(&making->topology, a, b, c) : measured;
+    return NAN;
+}
+
+/* As listed, as in the coordinates, or as the elements have it; where what is listed cannot hold together, as in the coordinates or
+ * as the elements have it. */
+static double angle_of(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
+    double listed = listed_angle(making, a, b, c), measured = measured_angle(making, a, b, c);
+    if (!isnan(measured) && (making->doubted[b] || isnan(listed))) return measured;
+    double usual = tml_topology_angle(&making->topology, a, b, c);
+    return isnan(usual) || (!isnan(listed) && !making->doubted[b]) ? listed : usual;
+}
+
+/* The ring's inner angles as listed, less what a flat one has; NAN where some are not listed. */
+static double ring_excess(const tml_component_making *making, int32_t ring, bool *flat) {
+    const tml_topology *topology = &making->topology;
+    const int32_t *atoms = &topology->ring_atoms[topology->ring_first[ring]];
+    int32_t size = tml_topology_ring_size(topology, ring);
+    double sum = 0;
+    *flat = true;
+    for (int32_t i = 0; i < size; i++) {
+        sum += listed_angle(making, atoms[(i + size - 1) % size], atoms[i], atoms[(i + 1) % size]);
+        *flat = *flat && making->flat[atoms[i]];
+    }
+    return sum - (size - 2) * 180;
+}
+
+/* Listed angles are often of separate fragments, and those of a ring or of one atom then cannot all be met. A ring whose angles come to
+ * more than a flat one has, or to less where it is flat, and an atom one of whose angles is far from the coordinates', are doubted. */
+static void doubt_angles(tml_component_making *making) {
+    static const double RING_OFF = 1.0, FLAT_RING_OFF = 2.0, OFF = 5.0; /* degrees */
+    const tml_topology *topology = &making->topology;
+    for (int32_t r = 0; r < topology->ring_count; r++) {
+        bool flat;
+        double excess = ring_excess(making, r, &flat);
+        if (isnan(excess) || !(excess > RING_OFF || (flat && excess < -FLAT_RING_OFF))) continue;
+        for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++) making->doubted[topology->ring_atoms[k]] = true;
+    }
+    for (size_t i = 0; i < making->component->angle_count; i++) {
+        const tml_component_angle *angle = &making->component->angles[i];
+        if (topology->elements[angle->a] == 1 || topology->elements[angle->c] == 1) continue;
+        double off = fabs(measured_angle(making, angle->a, angle->b, angle->c) - angle->degrees);
+        if (off > OFF || topology->shapes[angle->b] == TML_SHAPE_OTHER) making->doubted[angle->b] = true;
+    }
+}
+
+static bool bridges_metals(const tml_component_making *making, int32_t atom) {
+    const tml_topology *topology = &making->topology;
+    int metals = 0;
+    for (int32_t k = topology->first[atom]; k < topology->first[atom + 1]; k++)
+        metals += tml_element_is_metal(topology->elements[topology->neighbours[k]]);
+    return metals > 1;
 }
 
 /* Angles between heavy arms, and with hydrogen where nothing else fixes it: on two arms. The others follow from these (arms.c). About
- * metals and atoms of five and more arms, what the dictionary knows. */
+ * metals and atoms of five and more arms, those of the coordinates. */
 static bool make_angles(tml_component_making *making) {
     const tml_topology *topology = &making->topology;
     const tml_component_atom *atoms = making->component->atoms;
+    doubt_angles(making);
     for (int32_t b = 0; b < topology->atom_count; b++) {
         if (making->dropped[b] || (b == making->c && *making->component->family.tail != '\0')) continue;
         int32_t degree = tml_topology_degree(topology, b);
-        bool open = topology->shapes[b] == TML_SHAPE_OTHER;
+        bool open = topology->shapes[b] == TML_SHAPE_OTHER || bridges_metals(making, b);
         for (int32_t i = topology->first[b]; i < topology->first[b + 1]; i++)
             for (int32_t j = i + 1; j < topology->first[b + 1]; j++) {
                 int32_t a = topology->neighbours[i], c = topology->neighbours[j];
                 if (making->dropped[a] || making->dropped[c]) continue;
                 bool hydrogen = topology->elements[a] == 1 || topology->elements[c] == 1;
                 if (hydrogen && degree > 2 && !open) continue;
-                double degrees = angle_of(making, a, b, c);
+                double degrees = open ? measured_angle(making, a, b, c) : angle_of(making, a, b, c);
                 if (!isnan(degrees) && !tml_component_add_angle(making->component, atoms[a].name, atoms[b].name, atoms[c].name, degrees))
                     return false;
             }
@@ -562,7 +620,8 @@ static bool known_turn(const tml_component_making *making, int32_t bond, turn *f
 static bool listed_turn(const tml_component_making *making, int32_t b, int32_t c, turn *found) {
     static const double OFF = 10, WIDEST = 15;
     const tml_component *component = making->component;
-    if (making->placed) return false; /* listed values may stand for one of several minima; the coordinates do not */
+    /* Listed values may stand for one of several minima; the coordinates do not. With bad coordinates they were made from those. */
+    if (making->placed || making->rejected) return false;
     for (size_t i = 0; i < component->torsion_count; i++) {
         const tml_component_torsion *torsion = &component->torsions[i];
         bool forwards = torsion->b == b && torsion->c == c, backwards = torsion->b == c && torsion->c == b;
@@ -604,7 +663,7 @@ static tml_status make_centres(tml_component_making *making) {
         if (making->dropped[i] || making->flat[i] || topology->shapes[i] == TML_SHAPE_OTHER || degree < 3) continue;
         if (making->ca >= 0 && (i == making->n || i == making->c)) continue;
         int count = arms_of(making, i, arms);
-        if (count < 3) continue;
+        if (count < 3 || bridges_metals(making, i)) continue;
         bool asked = false;
         int sign = sign_of(making, i, arms, count, &asked);
         if (sign == 0 && asked && unknown++ == 0) example = component->atoms[i].name;

@@ -17,8 +17,10 @@ typedef struct tml_component_making {
     tml_error *error;
     tml_topology topology;
     bool placed;         /* the coordinates can be used */
+    bool rejected;       /* there are coordinates, but they cannot */
     bool *dropped;       /* of each atom: the chain's own rows stand for it */
     bool *flat;          /* of each atom: it lies in one plane with its neighbours */
+    bool *doubted;       /* of each atom: the dictionary's angles about it cannot all be met */
     int32_t n, ca, c, o; /* the backbone of an amino acid; -1 for none */
 } tml_component_making;
 

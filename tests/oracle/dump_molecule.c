@@ -2,6 +2,7 @@
  *
  *   dump_molecule                                                     names of the residues that are built in
  *   dump_molecule [charged|neutral|open] RESIDUE[VARIANT][@cis]…      one chain A numbered from 1; CYS-HG, HIS-HE2, GLY@cis
+ *   dump_molecule inputs FILE…                                        what these inputs describe
  *
  * atom index residue name element charge; bond a b length; angle a b c degrees; torsion a b c d kind degrees tolerance;
  * centre c a1 a2 a3 a4 sign fixed; plane within has_xy (atom x y)…; peptide ca1 c o n ca2 cis
@@ -11,6 +12,7 @@
 #include <string.h>
 
 #include "base/vector.h"
+#include "input/problem.h"
 #include "molecule/elements.h"
 #include "molecule/molecule.h"
 #include "molecule/residue_data.h"
@@ -47,7 +49,21 @@ static void print(const tml_molecule *m) {
     }
 }
 
+static int print_inputs(const char *const *paths, size_t count) {
+    tml_problem *problem;
+    tml_error error = {0};
+    if (tml_problem_read(paths, count, NULL, &problem, &error) != TML_OK) {
+        fprintf(stderr, "%s:%ld: %s\n", error.file, error.line, error.message);
+        return 2;
+    }
+    print(&problem->molecule);
+    for (size_t i = 0; i < problem->note_count; i++) printf("note\t%s\n", problem->notes[i].text);
+    tml_problem_free(problem);
+    return 0;
+}
+
 int main(int argc, char **argv) {
+    if (argc > 2 && strcmp(argv[1], "inputs") == 0) return print_inputs((const char *const *)(argv + 2), (size_t)argc - 2);
     if (argc == 1)
         for (const tml_template *form = tml_templates; form->name != NULL; form++) puts(form->name);
     if (argc == 1) return 0;
