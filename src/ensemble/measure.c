@@ -264,8 +264,11 @@ static bool measure_backbone(const tml_molecule *molecule, const double *xyz, tm
         const tml_peptide *after = &molecule->peptides[i], *before = into[after->residue1];
         if (before == NULL || strcmp(molecule->residues[after->residue1].name, "GLY") == 0) continue;
         const double *n = &xyz[3 * before->n], *ca = &xyz[3 * after->ca1], *c = &xyz[3 * after->c];
+        int hand = tml_molecule_hand(molecule, before->n, after->ca1, after->c); /* D: the mirrored regions */
+        if (hand == 0) continue;
         seen++;
-        usual += is_usual(DEGREES * tml_dihedral_of(&xyz[3 * before->c], n, ca, c), DEGREES * tml_dihedral_of(n, ca, c, &xyz[3 * after->n]));
+        usual += is_usual(hand * DEGREES * tml_dihedral_of(&xyz[3 * before->c], n, ca, c),
+                          hand * DEGREES * tml_dihedral_of(n, ca, c, &xyz[3 * after->n]));
     }
     free(into);
     out->backbone_usual = seen > 0 ? (double)usual / seen : NAN;

@@ -765,7 +765,7 @@ static bool make_charges(tml_component_making *making) {
     for (size_t i = 0; i < component->atom_count; i++) {
         int32_t atom = (int32_t)i;
         int charge = component->charges_given ? component->atoms[i].charge : charge_by_valence(making, atom);
-        if (charge == 0 || making->dropped[i] || (making->ca >= 0 && atom == making->n)) continue;
+        if (charge == 0 || making->dropped[i] || (making->ca >= 0 && (atom == making->n || atom == making->o))) continue;
         if (!add_charge(component, component->atoms[i].name, charge)) return false;
     }
     return true;

@@ -172,7 +172,8 @@ static void mark_leaving(tml_component_making *making, int32_t atom, int32_t arm
     if (last >= 0) making->component->atoms[last].leaving = true;
 }
 
-/* Small molecules that close chains: an acyl group by its C (formyl, acetyl …), an amine by its N (amide, methylamide …). */
+/* Small molecules that close chains: an acyl group by its C (formyl, acetyl …), an amine by its N (methylamide …). Ammonia does so under
+ * the archive's name for the amide group only. */
 static void join_cap(tml_component_making *making) {
     enum { MOST_HEAVY = 4, ARMS = 3 };
     const tml_topology *topology = &making->topology;
@@ -188,7 +189,7 @@ static void join_cap(tml_component_making *making) {
         hydrogens += is_hydrogen;
         heavies += !is_hydrogen;
     }
-    if (amine) amine = hydrogens > 0 && hydrogens + heavies <= ARMS && heavies <= 1 && hydrogens < ARMS;
+    if (amine) amine = hydrogens > 0 && hydrogens + heavies <= ARMS && heavies <= 1 && (hydrogens < ARMS || strcmp(component->name, "NH2") == 0);
     if (acyl) acyl = heavies <= 2 && (hydrogens > 0 || heavies + hydrogens < ARMS);
     if (!acyl && !amine) return;
     mark_leaving(making, end, ARMS);

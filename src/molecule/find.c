@@ -79,6 +79,41 @@ void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const c
     tml_nearest_append(&nearest, text, size);
 }
 
+/* Whether the order of three of a centre's arms turns as the centre's own first three do: 1, or -1. */
+static int turn_of(const tml_centre *centre, const int32_t arms[3]) {
+    int at[3] = {3, 3, 3}, missing = 6, turn = 1;
+    for (int k = 0; k < 3; k++)
+        for (int i = 0; i < 4; i++)
+            if (centre->arms[i] == arms[k]) at[k] = i;
+    for (int k = 0; k < 3; k++) {
+        missing -= at[k];
+        for (int i = 0; i < k; i++)
+            if (at[i] > at[k]) turn = -turn;
+    }
+    return missing % 2 == 0 ? -turn : turn; /* leaving out the fourth arm or the second keeps the sense, the others turn it */
+}
+
+int tml_molecule_hand(const tml_molecule *molecule, int32_t n, int32_t ca, int32_t c) {
+    int32_t side = -1;
+    for (int32_t k = molecule->neighbour_first[ca]; k < molecule->neighbour_first[ca + 1]; k++) {
+        int32_t next = molecule->neighbours[k];
+        if (next == n || next == c || molecule->atoms[next].element == 1) continue;
+        if (side >= 0) return 0;
+        side = next;
+    }
+    if (side < 0) return 0;
+    int32_t low = 0, high = molecule->sorted_centres;
+    while (low < high) {
+        int32_t middle = low + (high - low) / 2;
+        if (molecule->centres[middle].centre < ca)
+            low = middle + 1;
+        else
+            high = middle;
+    }
+    if (low == molecule->sorted_centres || molecule->centres[low].centre != ca || !molecule->centres[low].fixed) return 0;
+    return molecule->centres[low].sign * turn_of(&molecule->centres[low], (const int32_t[3]){n, c, side});
+}
+
 void tml_molecule_address(const tml_molecule *molecule, int32_t atom, char *text, size_t size) {
     if (size == 0) return;
     const tml_residue *in = &molecule->residues[molecule->atoms[atom].residue];

@@ -78,11 +78,11 @@ static const double AMIDE = 1.329; /* Å, as the peptide bond's */
 
 static tml_status add_chain_bond(tml_making *making, int32_t r) {
     const tml_layout_residue *residue = &making->residues[r];
-    const tml_family *family = residue->form->family;
-    int32_t tail = atom_named(making, residue->previous, family->tail), head = atom_named(making, r, family->head);
+    const char *from = making->residues[residue->previous].form->family->tail, *to = residue->form->family->head;
+    int32_t tail = atom_named(making, residue->previous, from), head = atom_named(making, r, to);
     if (tail < 0 || head < 0 || !making->atoms[tail].present || !making->atoms[head].present)
         return tml_making_fail(making, residue->place, "%s:%s: it cannot be bonded to the residue before: %s or %s is missing",
-                               residue->chain, residue->number, family->tail, family->head);
+                               residue->chain, residue->number, from, to);
     tml_status status = make_room(making, tail, head, residue->place);
     if (status == TML_OK) status = make_room(making, head, tail, residue->place);
     if (status != TML_OK) return status;

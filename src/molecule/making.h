@@ -48,7 +48,6 @@ typedef struct tml_making {
     int32_t *degree;             /* bonds of each layout atom, to atoms that are present */
     tml_bond_kind *bond_kinds;   /* of the molecule's bonds */
     bool *planar;                /* of each of the molecule's atoms: its neighbours lie in one plane with it */
-    int32_t table_centres;       /* centres that the tables give, in the order of atoms; the input's own stand after them */
     size_t angle_room, torsion_room, centre_room, plane_room, plane_atom_room, plane_xy_room,
         peptide_room; /* capacities */
 } tml_making;

@@ -87,7 +87,7 @@ typedef struct tml_molecule {
     tml_bond *bonds;       int32_t bond_count;
     tml_angle *angles;     int32_t angle_count;
     tml_torsion *torsions; int32_t torsion_count;
-    tml_centre *centres;   int32_t centre_count;
+    tml_centre *centres;   int32_t centre_count, sorted_centres; /* so many, those of residues, in the order of their atoms; then others */
     tml_plane *planes;     int32_t plane_count;
     int32_t *plane_atoms;  double *plane_xy; int32_t plane_atom_count;
     tml_peptide *peptides; int32_t peptide_count;
@@ -126,6 +126,9 @@ void tml_molecule_suggest(const tml_molecule *molecule, int32_t residue, const c
 
 /* Atom by its exact name within a residue, -1 if there is none. */
 int32_t tml_molecule_find_atom(const tml_molecule *molecule, int32_t residue, const char *name);
+
+/* The hand of an amino acid by its backbone: 1 for L, -1 for D, 0 where nothing fixes one (glycine, two side chains). */
+int tml_molecule_hand(const tml_molecule *molecule, int32_t n, int32_t ca, int32_t c);
 
 /* Set a peptide bond to cis or trans: its torsions, 1-4 distances and planes follow. */
 void tml_molecule_set_peptide(tml_molecule *molecule, int32_t peptide, bool cis);

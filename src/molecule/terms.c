@@ -251,7 +251,7 @@ static tml_status make_centres(tml_making *making) {
             continue;
         *centre = (tml_centre){.centre = i, .arms = {arm[0], arm[1], arm[2], degree == 4 ? arm[3] : -1}, .sign = 1};
     }
-    making->table_centres = molecule->centre_count;
+    molecule->sorted_centres = molecule->centre_count;
     return TML_OK;
 }
 

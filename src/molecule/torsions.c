@@ -163,7 +163,7 @@ static double carry_over(const tml_making *making, const tml_bond *bond, const r
 
 static const tml_centre *centre_at(const tml_making *making, int32_t atom) {
     const tml_molecule *molecule = making->molecule;
-    int32_t low = 0, high = making->table_centres;
+    int32_t low = 0, high = molecule->sorted_centres;
     while (low < high) {
         int32_t middle = low + (high - low) / 2;
         if (molecule->centres[middle].centre < atom)
@@ -171,7 +171,7 @@ static const tml_centre *centre_at(const tml_making *making, int32_t atom) {
         else
             high = middle;
     }
-    return low < making->table_centres && molecule->centres[low].centre == atom ? &molecule->centres[low] : NULL;
+    return low < molecule->sorted_centres && molecule->centres[low].centre == atom ? &molecule->centres[low] : NULL;
 }
 
 static double angle_between(const tml_molecule *molecule, int32_t a, int32_t centre, int32_t c) {
