@@ -388,9 +388,10 @@ static tml_status make_backbones(tml_refiner *refiner, tml_error *error) {
         const tml_peptide *before = &molecule->peptides[into[after->residue1]];
         const char *name = molecule->residues[after->residue1].name;
         int hand = tml_molecule_hand(molecule, before->n, before->ca2, after->c);
+        bool both = hand == 0 && molecule->neighbour_first[before->ca2 + 1] - molecule->neighbour_first[before->ca2] == 4;
         if (hand < 0) continue; /* the regions are those of L */
         refiner->backbones[refiner->backbone_count++] =
-            (tml_backbone_term){{before->c, before->n, before->ca2, after->c, after->n}, hand == 0, strcmp(name, "PRO") == 0};
+            (tml_backbone_term){{before->c, before->n, before->ca2, after->c, after->n}, both || strcmp(name, "GLY") == 0, strcmp(name, "PRO") == 0};
     }
     free(into);
     return TML_OK;
