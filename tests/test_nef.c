@@ -126,7 +126,7 @@ Test(nef, mistakes_are_told_with_their_line) {
     read_bad(SEQUENCE DISTANCES(LIMITS, "1 A 1 MET HA A 2 VAL H abc 3\n"), 0, "number");
     read_bad(SEQUENCE DISTANCES(LIMITS, "1 A 1 MET HA A 2 VAL H 1e999 3\n"), 0, "number");
     read_bad(SEQUENCE DISTANCES(LIMITS, "1 A 1 MET HA A 2 VAL H -1 3\n"), 0, "-1");
-    read_bad("data_x\n_cell.length_a 1\n", 1, "without NEF");
+    read_bad("data_x\n_cell.length_a 1\n", 1, "without sequence");
     read_bad("", 0, "empty");
     read_bad("hello world\n", 1, "hello world");
 }
@@ -409,7 +409,7 @@ Test(nef, refusals_name_the_place) {
     expect_refused(PEPTIDE LIST(PAIR_LIMITS, "1 A 1 ALA HA A 2 SER H 1\n"), head, 1, "not full");
     expect_refused(PEPTIDE "save_a\nloop_\n" FOUR A "lower_limit " A "upper_limit\n1 A 1 ALA C A 2 SER N A 2 SER N A 2 SER C 0 1\nstop_\nsave_\n", 26, 31,
                    "the same atom twice");
-    expect_refused("data_t\nloop_ _entity.id 1\n", 1, 1, "without NEF sequence or restraints");
+    expect_refused("data_t\nloop_ _entity.id 1\n", 1, 1, "without sequence, restraints or components");
     expect_refused("ATOM      1  N   ALA A   1\n", 1, 1, "begins with 'ATOM ");
 }
 

@@ -86,7 +86,7 @@ typedef struct tml_read_options {
     bool alike_chains;     /* chains of the same residues take the same shape, as if a sheet said that they are alike */
 } tml_read_options;
 
-/* Read inputs (sheet, NEF; told by content; "-" for standard input, gzip understood) into one problem.
+/* Read inputs (sheet, NEF, NMR-STAR 3, component dictionaries; told by content; "-" for standard input, gzip understood) into one problem.
  *
  * options   NULL for the defaults
  * out       the caller frees it with tml_problem_free

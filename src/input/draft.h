@@ -13,6 +13,7 @@ typedef struct tml_draft {
 
 /* Readers; file indexes problem->files. A sheet is the whole text, ended by '\0'. */
 tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tml_error *error);
+tml_status tml_read_nmrstar(tml_draft *draft, tml_star *star, int32_t file, tml_error *error);
 tml_status tml_read_sheet(tml_draft *draft, const char *text, int32_t file, tml_error *error);
 bool tml_is_sheet(const char *text);
 
@@ -28,5 +29,6 @@ bool tml_is_component(const tml_star *star);
 
 /* Whether a parsed document is NEF; readers of other dialects ask the same way. */
 bool tml_is_nef(const tml_star *star);
+bool tml_is_nmrstar(const tml_star *star);
 
 #endif

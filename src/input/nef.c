@@ -9,27 +9,13 @@
 #include <string.h>
 #include <strings.h>
 
-#include "input/draft.h"
+#include "input/cells.h"
 
-typedef struct nef {
-    tml_draft *draft;
-    const tml_star *star;
-    int32_t file;
-    tml_error *error;
-} nef;
-
-static tml_status read_sequence(nef *in, const tml_star_loop *loop);
-static tml_status read_links(nef *in, const tml_star_loop *loop);
-static tml_status read_distances(nef *in, const tml_star_frame *frame, const tml_star_loop *loop);
-static tml_status read_dihedrals(nef *in, const tml_star_frame *frame, const tml_star_loop *loop);
-static tml_status pass_over(nef *in, const tml_star_loop *loop);
-
-/* Category of a loop by its first tag. */
-static bool is_category(const tml_star *star, const tml_star_loop *loop, const char *category) {
-    const tml_star_value *tag = &star->tags[loop->first_tag];
-    size_t length = strlen(category);
-    return (size_t)tag->length > length && tag->text[length] == '.' && strncasecmp(tag->text, category, length) == 0;
-}
+static tml_status read_sequence(tml_cells *in, const tml_star_loop *loop);
+static tml_status read_links(tml_cells *in, const tml_star_loop *loop);
+static tml_status read_distances(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop);
+static tml_status read_dihedrals(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop);
+static tml_status pass_over(tml_cells *in, const tml_star_loop *loop);
 
 bool tml_is_nef(const tml_star *star) {
     for (size_t i = 0; i < star->loop_count; i++)
@@ -38,19 +24,19 @@ bool tml_is_nef(const tml_star *star) {
 }
 
 tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tml_error *error) {
-    nef in = {draft, star, file, error};
+    tml_cells in = {draft, star, file, error};
     tml_status status = TML_OK;
     for (size_t f = 0; status == TML_OK && f < star->frame_count; f++) {
         const tml_star_frame *frame = &star->frames[f];
         for (size_t i = frame->first_loop; status == TML_OK && i < frame->first_loop + frame->loop_count; i++) {
             const tml_star_loop *loop = &star->loops[i];
-            if (is_category(star, loop, "_nef_sequence"))
+            if (tml_loop_is(star, loop, "_nef_sequence"))
                 status = read_sequence(&in, loop);
-            else if (is_category(star, loop, "_nef_covalent_links"))
+            else if (tml_loop_is(star, loop, "_nef_covalent_links"))
                 status = read_links(&in, loop);
-            else if (is_category(star, loop, "_nef_distance_restraint"))
+            else if (tml_loop_is(star, loop, "_nef_distance_restraint"))
                 status = read_distances(&in, frame, loop);
-            else if (is_category(star, loop, "_nef_dihedral_restraint"))
+            else if (tml_loop_is(star, loop, "_nef_dihedral_restraint"))
                 status = read_dihedrals(&in, frame, loop);
             else
                 status = pass_over(&in, loop);
@@ -61,35 +47,10 @@ tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tm
 
 /* ---- values ---- */
 
-static tml_place place_of(const nef *in, const tml_star_value *value) {
-    return (tml_place){in->file, value->line, value->column};
-}
-
-/* A value as a pooled string; `missing` stands for a null. */
-static tml_status text_of(nef *in, const tml_star_value *value, const char *missing, const char **out) {
-    *out = tml_star_is_null(value) ? tml_strings_add(in->draft->problem->pool, missing)
-                                   : tml_strings_add_part(in->draft->problem->pool, value->text, (size_t)value->length);
-    return *out == NULL ? tml_no_memory(in->error) : TML_OK;
-}
-
-static tml_status missing_column(nef *in, const tml_star_loop *loop, const char *name) {
-    const tml_star_value *tag = &in->star->tags[loop->first_tag];
-    return tml_fail_at(in->error, TML_BAD_INPUT, in->draft->problem->files[in->file], tag->line, tag->column,
-                       "this loop has no column %s, which it needs", name);
-}
-
-/* A number or null (NAN); anything else is an error at its place. */
-static tml_status number_of(nef *in, const tml_star_value *value, double *out) {
-    *out = NAN;
-    if (tml_star_is_null(value) || tml_star_number(value, out)) return TML_OK;
-    return tml_fail_at(in->error, TML_BAD_INPUT, in->draft->problem->files[in->file], value->line, value->column,
-                       "found '%.*s' where a number is expected", value->length > 40 ? 40 : value->length, value->text);
-}
-
 /* Columns chain_code_K, sequence_code_K, residue_name_K, atom_name_K of one address. */
 typedef struct address_columns { int chain, number, residue, atom; } address_columns;
 
-static tml_status find_address(nef *in, const tml_star_loop *loop, int which, address_columns *out) {
+static tml_status find_address(tml_cells *in, const tml_star_loop *loop, int which, address_columns *out) {
     static const char *const NAMES[4] = {"chain_code", "sequence_code", "residue_name", "atom_name"};
     int *columns[4] = {&out->chain, &out->number, &out->residue, &out->atom};
     *out = (address_columns){-1, -1, -1, -1};
@@ -97,24 +58,24 @@ static tml_status find_address(nef *in, const tml_star_loop *loop, int which, ad
         char name[32];
         snprintf(name, sizeof name, "%s_%d", NAMES[k], which);
         *columns[k] = tml_star_column(in->star, loop, name);
-        if (*columns[k] < 0 && k != 2) return missing_column(in, loop, name);
+        if (*columns[k] < 0 && k != 2) return tml_cell_missing(in, loop, name);
     }
     return TML_OK;
 }
 
-static tml_status read_address(nef *in, const tml_star_loop *loop, size_t row, const address_columns *columns, tml_address *out) {
+static tml_status read_address(tml_cells *in, const tml_star_loop *loop, size_t row, const address_columns *columns, tml_address *out) {
     const tml_star_value *atom = tml_star_at(in->star, loop, row, columns->atom);
-    tml_status status = text_of(in, tml_star_at(in->star, loop, row, columns->chain), ".", &out->chain);
-    if (status == TML_OK) status = text_of(in, tml_star_at(in->star, loop, row, columns->number), ".", &out->number);
-    if (status == TML_OK) status = text_of(in, tml_star_at(in->star, loop, row, columns->residue), "", &out->residue);
-    if (status == TML_OK) status = text_of(in, atom, ".", &out->atom);
-    out->place = place_of(in, atom);
+    tml_status status = tml_cell_text(in, tml_star_at(in->star, loop, row, columns->chain), ".", &out->chain);
+    if (status == TML_OK) status = tml_cell_text(in, tml_star_at(in->star, loop, row, columns->number), ".", &out->number);
+    if (status == TML_OK) status = tml_cell_text(in, tml_star_at(in->star, loop, row, columns->residue), "", &out->residue);
+    if (status == TML_OK) status = tml_cell_text(in, atom, ".", &out->atom);
+    out->place = tml_cell_place(in, atom);
     return status;
 }
 
 /* ---- sequence, links ---- */
 
-static tml_status linking_of(nef *in, const tml_star_value *value, tml_linking *out) {
+static tml_status linking_of(tml_cells *in, const tml_star_value *value, tml_linking *out) {
     static const struct { const char *word; tml_linking linking; } WORDS[] = {
         {"start", TML_LINKING_START},   {"middle", TML_LINKING_MIDDLE}, {"end", TML_LINKING_END},       {"single", TML_LINKING_SINGLE},
         {"break", TML_LINKING_BREAK},   {"cyclic", TML_LINKING_CYCLIC}, {"nonlinear", TML_LINKING_SINGLE}, {"dummy", TML_LINKING_SINGLE},
@@ -131,34 +92,34 @@ static tml_status linking_of(nef *in, const tml_star_value *value, tml_linking *
                        value->length > 40 ? 40 : value->length, value->text);
 }
 
-static tml_status read_sequence(nef *in, const tml_star_loop *loop) {
+static tml_status read_sequence(tml_cells *in, const tml_star_loop *loop) {
     const tml_star *star = in->star;
     tml_outline *outline = &in->draft->outline;
     int chain = tml_star_column(star, loop, "chain_code"), number = tml_star_column(star, loop, "sequence_code"),
         name = tml_star_column(star, loop, "residue_name"), linking = tml_star_column(star, loop, "linking"),
         variant = tml_star_column(star, loop, "residue_variant"), cis = tml_star_column(star, loop, "cis_peptide");
-    if (chain < 0) return missing_column(in, loop, "chain_code");
-    if (number < 0) return missing_column(in, loop, "sequence_code");
-    if (name < 0) return missing_column(in, loop, "residue_name");
+    if (chain < 0) return tml_cell_missing(in, loop, "chain_code");
+    if (number < 0) return tml_cell_missing(in, loop, "sequence_code");
+    if (name < 0) return tml_cell_missing(in, loop, "residue_name");
     for (size_t row = 0; row < loop->row_count; row++) {
         if (!tml_grow(&outline->residues, &outline->residue_capacity, outline->residue_count + 1, sizeof *outline->residues))
             return tml_no_memory(in->error);
         tml_outline_residue *residue = &outline->residues[outline->residue_count++];
         const tml_star_value *dummy = tml_star_at(star, loop, row, linking);
-        tml_status status = text_of(in, tml_star_at(star, loop, row, chain), ".", &residue->chain);
-        if (status == TML_OK) status = text_of(in, tml_star_at(star, loop, row, number), ".", &residue->number);
-        if (status == TML_OK) status = text_of(in, tml_star_at(star, loop, row, name), ".", &residue->name);
-        if (status == TML_OK) status = text_of(in, tml_star_at(star, loop, row, variant), "", &residue->variant);
+        tml_status status = tml_cell_text(in, tml_star_at(star, loop, row, chain), ".", &residue->chain);
+        if (status == TML_OK) status = tml_cell_text(in, tml_star_at(star, loop, row, number), ".", &residue->number);
+        if (status == TML_OK) status = tml_cell_text(in, tml_star_at(star, loop, row, name), ".", &residue->name);
+        if (status == TML_OK) status = tml_cell_text(in, tml_star_at(star, loop, row, variant), "", &residue->variant);
         if (status == TML_OK) status = linking_of(in, dummy, &residue->linking);
         if (status != TML_OK) return status;
         residue->cis = tml_star_is(tml_star_at(star, loop, row, cis), "true");
-        residue->place = place_of(in, tml_star_at(star, loop, row, name));
+        residue->place = tml_cell_place(in, tml_star_at(star, loop, row, name));
         if (tml_star_is(dummy, "dummy")) outline->residue_count--; /* a place holder of other programs, no atoms */
     }
     return TML_OK;
 }
 
-static tml_status read_links(nef *in, const tml_star_loop *loop) {
+static tml_status read_links(tml_cells *in, const tml_star_loop *loop) {
     tml_outline *outline = &in->draft->outline;
     address_columns first, second;
     tml_status status = find_address(in, loop, 1, &first);
@@ -178,7 +139,7 @@ static tml_status read_links(nef *in, const tml_star_loop *loop) {
 
 typedef struct limit_columns { int id, combination, weight, target, uncertainty, lower, upper, lower_linear, upper_linear; } limit_columns;
 
-static tml_status find_limits(nef *in, const tml_star_loop *loop, limit_columns *out) {
+static tml_status find_limits(tml_cells *in, const tml_star_loop *loop, limit_columns *out) {
     const tml_star *star = in->star;
     *out = (limit_columns){
         .id = tml_star_column(star, loop, "restraint_id"),
@@ -191,31 +152,29 @@ static tml_status find_limits(nef *in, const tml_star_loop *loop, limit_columns 
         .lower_linear = tml_star_column(star, loop, "lower_linear_limit"),
         .upper_linear = tml_star_column(star, loop, "upper_linear_limit"),
     };
-    return out->id < 0 ? missing_column(in, loop, "restraint_id") : TML_OK;
+    return out->id < 0 ? tml_cell_missing(in, loop, "restraint_id") : TML_OK;
 }
 
 typedef struct limits { const char *list, *id, *combination; double lower, upper, weight; tml_place place; bool from_target; } limits;
 
 /* Both limits missing: the linear ones, or the target value and its uncertainty. */
-static tml_status read_limits(nef *in, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, const limit_columns *columns,
+static tml_status read_limits(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, const limit_columns *columns,
                               limits *out) {
     const tml_star *star = in->star;
     double lower_linear = NAN, upper_linear = NAN, target = NAN, uncertainty = NAN;
     const tml_star_value *id = tml_star_at(star, loop, row, columns->id);
-    *out = (limits){.place = place_of(in, id)};
-    if (tml_star_is_null(id)) /* rows without an id would all be alternatives of each other */
-        return tml_fail_at(in->error, TML_BAD_INPUT, in->draft->problem->files[in->file], id->line, id->column,
-                           "found '.' where a restraint_id is expected");
-    tml_status status = text_of(in, &frame->name, "", &out->list);
-    if (status == TML_OK) status = text_of(in, id, ".", &out->id);
-    if (status == TML_OK) status = text_of(in, tml_star_at(star, loop, row, columns->combination), "", &out->combination);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->weight), &out->weight);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->lower), &out->lower);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->upper), &out->upper);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->lower_linear), &lower_linear);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->upper_linear), &upper_linear);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->target), &target);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns->uncertainty), &uncertainty);
+    *out = (limits){.place = tml_cell_place(in, id)};
+    if (tml_star_is_null(id)) return tml_cell_expected(in, id, "a restraint_id"); /* or all such rows would be alternatives */
+    tml_status status = tml_cell_text(in, &frame->name, "", &out->list);
+    if (status == TML_OK) status = tml_cell_text(in, id, ".", &out->id);
+    if (status == TML_OK) status = tml_cell_text(in, tml_star_at(star, loop, row, columns->combination), "", &out->combination);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->weight), &out->weight);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->lower), &out->lower);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->upper), &out->upper);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->lower_linear), &lower_linear);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->upper_linear), &upper_linear);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->target), &target);
+    if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->uncertainty), &uncertainty);
     if (status != TML_OK) return status;
     if (isnan(out->weight)) out->weight = 1.0;
     if (isnan(out->lower) && isnan(out->upper)) {
@@ -230,13 +189,13 @@ static tml_status read_limits(nef *in, const tml_star_frame *frame, const tml_st
     return TML_OK;
 }
 
-static tml_status note_targets(nef *in, const limits *row, size_t count, tml_status status) {
+static tml_status note_targets(tml_cells *in, const limits *row, size_t count, tml_status status) {
     if (status != TML_OK || count == 0) return status;
     return tml_problem_add_note(in->draft->problem, row->place, in->error,
                                 "%zu rows of %s have no limits; target value and uncertainty are taken for them", count, row->list);
 }
 
-static tml_status read_distances(nef *in, const tml_star_frame *frame, const tml_star_loop *loop) {
+static tml_status read_distances(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop) {
     tml_rows *rows = &in->draft->rows;
     address_columns first, second;
     limit_columns columns;
@@ -261,7 +220,7 @@ static tml_status read_distances(nef *in, const tml_star_frame *frame, const tml
     return note_targets(in, &row_limits, from_targets, status);
 }
 
-static tml_status read_dihedrals(nef *in, const tml_star_frame *frame, const tml_star_loop *loop) {
+static tml_status read_dihedrals(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop) {
     tml_rows *rows = &in->draft->rows;
     address_columns atoms[4];
     limit_columns columns;
@@ -289,7 +248,7 @@ static tml_status read_dihedrals(nef *in, const tml_star_frame *frame, const tml
 
 /* ---- other lists ---- */
 
-static tml_status pass_over(nef *in, const tml_star_loop *loop) {
+static tml_status pass_over(tml_cells *in, const tml_star_loop *loop) {
     static const struct { const char *category, *name; } OTHER[] = {
         {"_nef_chemical_shift", "chemical shifts"},
         {"_nef_rdc_restraint", "residual dipolar couplings"},
@@ -297,14 +256,14 @@ static tml_status pass_over(nef *in, const tml_star_loop *loop) {
     };
     const tml_star_value *tag = &in->star->tags[loop->first_tag];
     for (size_t i = 0; i < sizeof OTHER / sizeof *OTHER; i++)
-        if (is_category(in->star, loop, OTHER[i].category))
-            return tml_problem_add_note(in->draft->problem, place_of(in, tag), in->error, "%zu %s are not used", loop->row_count,
+        if (tml_loop_is(in->star, loop, OTHER[i].category))
+            return tml_problem_add_note(in->draft->problem, tml_cell_place(in, tag), in->error, "%zu %s are not used", loop->row_count,
                                         OTHER[i].name);
     if (strncasecmp(tag->text, "_chem_comp", 10) == 0) return TML_OK; /* a component dictionary in the same file */
     bool data = strncasecmp(tag->text, "_nef_", 5) != 0; /* the format's own housekeeping needs no mention */
     const char *dot = memchr(tag->text, '.', (size_t)tag->length);
     int shown = dot == NULL ? tag->length : (int)(dot - tag->text);
     return !data ? TML_OK
-                 : tml_problem_add_note(in->draft->problem, place_of(in, tag), in->error, "%zu rows of %.*s are not used", loop->row_count,
+                 : tml_problem_add_note(in->draft->problem, tml_cell_place(in, tag), in->error, "%zu rows of %.*s are not used", loop->row_count,
                                         shown > 60 ? 60 : shown, tag->text);
 }

@@ -75,13 +75,15 @@ static tml_status read_text(tml_draft *draft, const char *text, size_t length, i
     tml_error star_error = {0};
     tml_status status = tml_star_parse(text, length, path, &star, &star_error);
     bool is_nef = status == TML_OK && tml_is_nef(&star), is_component = status == TML_OK && tml_is_component(&star);
-    if (is_nef || is_component) {
+    bool is_nmrstar = status == TML_OK && !is_nef && tml_is_nmrstar(&star);
+    if (is_nef || is_nmrstar || is_component) {
         if (is_component) status = tml_read_components(draft, &star, file, error);
         if (is_nef && status == TML_OK) status = tml_read_nef(draft, &star, file, error);
+        if (is_nmrstar && status == TML_OK) status = tml_read_nmrstar(draft, &star, file, error);
     } else if (status == TML_OK) {
         status = tml_fail_at(error, TML_BAD_INPUT, path, 1, 1,
-                             "a STAR or CIF document without NEF sequence or restraints, or components; a sheet, a NEF file or a component "
-                             "dictionary is expected");
+                             "a STAR or CIF document without sequence, restraints or components; a sheet, a NEF or NMR-STAR file or a "
+                             "component dictionary is expected");
     } else if (status == TML_BAD_INPUT && star.frame_count == 0) {
         int shown = first - blank > 40 ? 40 : first - blank;
         status = tml_fail_at(error, TML_BAD_INPUT, path, 1, 1,

@@ -1,4 +1,4 @@
-/* Any bytes as a sheet or NEF file beside a small molecule: what is mapped lies inside the molecule and adds up, and can be
+/* Any bytes as a sheet, NEF or NMR-STAR file beside a small molecule: what is mapped lies inside the molecule and adds up, and can be
  * measured. */
 #include <math.h>
 #include <stdint.h>
@@ -17,7 +17,7 @@ static tml_status read_input(tml_draft *draft, const char *text, size_t length, 
     if (tml_is_sheet(text)) return tml_read_sheet(draft, text, 1, error);
     tml_star star;
     tml_status status = tml_star_parse(text, length, "fuzz", &star, error);
-    if (status == TML_OK) status = tml_read_nef(draft, &star, 1, error);
+    if (status == TML_OK) status = tml_is_nmrstar(&star) ? tml_read_nmrstar(draft, &star, 1, error) : tml_read_nef(draft, &star, 1, error);
     tml_star_clear(&star);
     return status;
 }
