@@ -135,6 +135,7 @@ static void spreads_by_merge(const tml_merge *merges, int32_t count, inner *clus
 }
 
 tml_status tml_cluster_least_penalty(const tml_merge *merges, int32_t count, int32_t *out, tml_error *error) {
+    static const double NOISE = 1e-6;
     inner *clusters = tml_alloc((size_t)count, sizeof *clusters);
     double *spreads = tml_alloc((size_t)count, sizeof *spreads), least = INFINITY, greatest = -INFINITY, best = INFINITY;
     bool room = clusters != NULL && spreads != NULL;
@@ -147,8 +148,8 @@ tml_status tml_cluster_least_penalty(const tml_merge *merges, int32_t count, int
     for (int32_t k = 0; room && k < count - 1; k++) {
         double scaled = greatest > least ? (count - 2) / (greatest - least) * (spreads[k] - least) + 1 : 1;
         double penalty = scaled + (count - k - 1);
-        if (!(penalty <= best)) continue; /* among equals the fewer clusters */
-        best = penalty;
+        if (penalty > best + NOISE) continue; /* among equals, which the first and the last often are, the fewer clusters */
+        best = fmin(best, penalty);
         *out = k + 1;
     }
     free(clusters);

@@ -105,7 +105,7 @@ static bool is_unit(const tml_comparison *c, const int32_t *sizes, int32_t atom)
     bool alone = sizes[c->residue_of[atom]] == 1;
     bool carbon = site->element == CARBON || (alone && site->element == 0);
     bool phosphorus = alone && (site->element == PHOSPHORUS || site->element == 0);
-    return (carbon && (strcmp(site->name, "CA") == 0 || strcmp(site->name, "C4'") == 0)) || (phosphorus && strcmp(site->name, "P") == 0);
+    return (carbon && tml_selected("CA,C4'", site)) || (phosphorus && tml_selected("P", site));
 }
 
 /* Residues of the atoms that take part, in the order of the file; residue by residue, which the atoms follow. */

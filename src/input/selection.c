@@ -6,6 +6,11 @@
 
 #include "molecule/elements.h"
 
+/* The names of sugar atoms had a star where they have a prime now. */
+static bool same_letter(char in_pattern, char in_name) {
+    return in_pattern == in_name || (in_pattern == '\'' && in_name == '*');
+}
+
 /* `*` for anything, `%` for digits; no backtracking beyond the last star. */
 static bool matches(const char *pattern, size_t length, const char *name) {
     const char *end = pattern + length, *star = NULL, *resume = NULL;
@@ -13,7 +18,7 @@ static bool matches(const char *pattern, size_t length, const char *name) {
         if (pattern < end && (*pattern == '*' || *pattern == '%')) {
             star = pattern++;
             resume = name;
-        } else if (pattern < end && *name != '\0' && *pattern == *name) {
+        } else if (pattern < end && *name != '\0' && same_letter(*pattern, *name)) {
             pattern++;
             name++;
         } else if (star != NULL && *resume != '\0' && (*star == '*' || isdigit((unsigned char)*resume))) {
@@ -44,7 +49,7 @@ static bool selected_by(const char *word, size_t length, const tml_site *site) {
     if (word_is(word, length, "hydrogens")) return site->element == 1;
     if (word_is(word, length, "backbone")) {
         for (size_t i = 0; i < sizeof BACKBONE / sizeof BACKBONE[0]; i++)
-            if (strcmp(site->name, BACKBONE[i]) == 0) return true;
+            if (matches(BACKBONE[i], strlen(BACKBONE[i]), site->name)) return true;
         return false;
     }
     if (word[0] == '@') return site->element == element_word(word, length);

@@ -1,7 +1,8 @@
 /* selection.h: atoms chosen by words: `all`, `heavy`, `hydrogens`, `backbone`, `@` and an element's symbol, or an atom's name, in
  * which `*` stands for anything and `%` for digits; words are joined by commas.
  *
- * The backbone is N, CA, C and O of amino acids, and P, O5', C5', C4', C3' and O3' of nucleotides.
+ * The backbone is N, CA, C and O of amino acids, and P, O5', C5', C4', C3' and O3' of nucleotides. A prime also stands for the star
+ * that it was in older names.
  */
 #ifndef TML_SELECTION_H
 #define TML_SELECTION_H
