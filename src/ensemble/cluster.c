@@ -17,14 +17,17 @@ static int32_t nearest_of(const linker *l, int32_t of, int32_t before, float *di
 static void join(linker *l, int32_t into, int32_t from);
 static void put_in_order(tml_merge *merges, int32_t count, int32_t *root);
 
-tml_status tml_cluster_link(float *distances, int32_t count, tml_merge *merges, tml_error *error) {
+tml_status tml_cluster_link(float *distances, int32_t count, const volatile int *stop, tml_merge *merges, tml_error *error) {
     linker l = {.distances = distances, .count = count};
     l.size = tml_alloc((size_t)count, sizeof *l.size);
     l.chain = tml_alloc((size_t)count, sizeof *l.chain);
     bool room = l.size != NULL && l.chain != NULL;
     for (int32_t i = 0; room && i < count; i++) l.size[i] = 1;
     int32_t first = 0;
+    bool stopped = false;
     for (int32_t made = 0; room && made < count - 1;) {
+        stopped = stop != NULL && *stop != 0;
+        if (stopped) break;
         if (l.chain_length == 0) {
             while (l.size[first] == 0) first++;
             l.chain[l.chain_length++] = first;
@@ -40,9 +43,10 @@ tml_status tml_cluster_link(float *distances, int32_t count, tml_merge *merges, 
         join(&l, nearest, tip);
         l.chain_length -= 2;
     }
-    if (room) put_in_order(merges, count, l.chain);
+    if (room && !stopped) put_in_order(merges, count, l.chain);
     free(l.size);
     free(l.chain);
+    if (stopped) return tml_fail(error, TML_INTERRUPTED, "interrupted");
     return room ? TML_OK : tml_no_memory(error);
 }
 

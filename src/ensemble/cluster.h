@@ -20,10 +20,11 @@ static inline size_t tml_pair_index(int32_t count, int32_t a, int32_t b) {
 /* All merges, by height.
  *
  * distances  packed triangle of count(count-1)/2; destroyed
+ * stop       once nonzero, ends the work; may be NULL
  * merges     count - 1, filled
- * Returns TML_OK or TML_NO_MEMORY.
+ * Returns TML_OK, TML_NO_MEMORY or TML_INTERRUPTED.
  */
-tml_status tml_cluster_link(float *distances, int32_t count, tml_merge *merges, tml_error *error);
+tml_status tml_cluster_link(float *distances, int32_t count, const volatile int *stop, tml_merge *merges, tml_error *error);
 
 /* How many of the merges to make: those up to a height; or so many that the penalty is least, which is the clusters' mean spread,
  * scaled to the range 1 … count - 1, plus the number of clusters. *out from 0 to count - 1. The second may return TML_NO_MEMORY. */

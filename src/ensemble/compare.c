@@ -20,7 +20,7 @@ static tml_status take_part(tml_comparison *c, tml_error *error);
 static tml_status choose_atoms(tml_comparison *c, tml_error *error);
 static tml_status find_core(tml_comparison *c, tml_error *error);
 static tml_status measure(tml_comparison *c, int threads, const tml_watch *watch, tml_error *error);
-static tml_status find_clusters(tml_comparison *c, tml_error *error);
+static tml_status find_clusters(tml_comparison *c, const volatile int *stop, tml_error *error);
 
 void tml_compare_defaults(tml_compare_options *options) {
     *options = (tml_compare_options){.core = "spread", .atoms = "backbone", .cut = -1};
@@ -49,7 +49,7 @@ tml_status tml_compare(const char *models, const char *reference, const tml_comp
     if (status == TML_OK) status = choose_atoms(c, error);
     if (status == TML_OK) status = find_core(c, error);
     if (status == TML_OK) status = measure(c, options->threads, watch, error);
-    if (status == TML_OK) status = find_clusters(c, error);
+    if (status == TML_OK) status = find_clusters(c, watch == NULL ? NULL : watch->stop, error);
     if (status == TML_OK && reference != NULL) status = tml_compare_reference(c, options->threads, watch, error);
     if (status == TML_OK)
         *out = c;
@@ -350,12 +350,12 @@ static tml_status find_representatives(tml_comparison *c, tml_error *error) {
     return TML_OK;
 }
 
-static tml_status link_and_cut(tml_comparison *c, float *copy, tml_merge *merges, tml_error *error) {
+static tml_status link_and_cut(tml_comparison *c, float *copy, tml_merge *merges, const volatile int *stop, tml_error *error) {
     const int32_t count = c->model_count;
     int32_t made = 0;
     size_t pairs = (size_t)count * ((size_t)count - 1) / 2;
     if (pairs > 0) memcpy(copy, c->pairs, pairs * sizeof *copy);
-    tml_status status = tml_cluster_link(copy, count, merges, error);
+    tml_status status = tml_cluster_link(copy, count, stop, merges, error);
     if (status == TML_OK && c->cut_given) made = tml_cluster_merges_below(merges, count, c->cut_asked);
     if (status == TML_OK && !c->cut_given) status = tml_cluster_least_penalty(merges, count, &made, error);
     if (status == TML_OK) status = tml_cluster_labels(merges, count, made, c->cluster, &c->cluster_count, error);
@@ -363,13 +363,13 @@ static tml_status link_and_cut(tml_comparison *c, float *copy, tml_merge *merges
     return status;
 }
 
-static tml_status find_clusters(tml_comparison *c, tml_error *error) {
+static tml_status find_clusters(tml_comparison *c, const volatile int *stop, tml_error *error) {
     const size_t count = (size_t)c->model_count;
     float *copy = tml_alloc(count * (count - 1) / 2, sizeof *copy);
     tml_merge *merges = tml_alloc(count, sizeof *merges);
     c->cluster = tml_alloc(count, sizeof *c->cluster);
     bool room = copy != NULL && merges != NULL && c->cluster != NULL;
-    tml_status status = room ? link_and_cut(c, copy, merges, error) : tml_no_memory(error);
+    tml_status status = room ? link_and_cut(c, copy, merges, stop, error) : tml_no_memory(error);
     free(copy);
     free(merges);
     return status == TML_OK ? find_representatives(c, error) : status;

@@ -185,6 +185,37 @@ static tml_status derive_way(const char *const *paths, size_t count) {
     return status;
 }
 
+/* Models of two alike chains, compared with themselves, chains exchanged. */
+static tml_status compare_way(const char *const *paths, size_t count) {
+    static const char *const NAMES[] = {"N", "CA", "C"};
+    char reference[256];
+    tml_error error = {0};
+    tml_comparison *comparison = NULL;
+    tml_compare_options options;
+    FILE *nowhere = fopen("/dev/null", "w");
+    (void)count;
+    snprintf(reference, sizeof reference, "%s", in_folder("reference.pdb"));
+    for (int of = 0; of < 2; of++) {
+        FILE *file = fopen(of == 0 ? paths[0] : reference, "w");
+        if (file == NULL) return TML_IO;
+        for (int i = 0; i < 3 * 2 * 4 * 3; i++) {
+            int model = i / 24, chain = i / 12 % 2, residue = i / 3 % 4;
+            double place[3] = {8.0 * chain + i % 3, 3.0 * residue, i * i % 7 + 0.1 * model};
+            fprintf(file, "ATOM  %5d  %-3s ALA %c%4d    %8.3f%8.3f%8.3f  1.00  0.00\n%s", i, NAMES[i % 3], 'A' + (chain ^ of), residue + 1, place[0],
+                    place[1], place[2], i % 24 == 23 ? "ENDMDL\n" : "");
+        }
+        fclose(file);
+    }
+    tml_compare_defaults(&options);
+    options.threads = 1;
+    tml_status status = tml_compare(paths[0], reference, &options, NULL, &comparison, &error);
+    if (status == TML_OK) status = tml_print_comparison(nowhere, comparison, &error);
+    if (status == TML_OK) status = tml_write_comparison_json(comparison, in_folder("compare.json"), &error);
+    tml_comparison_free(comparison);
+    fclose(nowhere);
+    return status;
+}
+
 /* ---- walking them ---- */
 
 typedef tml_status way(const char *const *paths, size_t count);
@@ -230,7 +261,11 @@ int main(void) {
     fail_each(table_way, "tests/cli/peptide.sheet", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.pdb", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.cif", 300);
-    const char *const names[] = {"derived.sheet", "check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json"};
+    char models[256];
+    snprintf(models, sizeof models, "%s", in_folder("models.pdb"));
+    fail_each(compare_way, models, 500);
+    const char *const names[] = {"derived.sheet", "check.json", "bounds.gz", "m.pdb", "m.cif.gz", "build.json",
+                                 "models.pdb", "reference.pdb", "compare.json"};
     for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) unlink(in_folder(names[i]));
     if (rmdir(folder) != 0) expect(false, "partial files are left", folder, 0, TML_OK);
     printf("%d passed, %d failed\n", passed, failed);
