@@ -66,7 +66,7 @@ static void say_stretches(const tml_comparison *c, char *text) {
     for (int32_t k = 0; k < c->fitted_count;) {
         char first[NAME], part[LINE];
         int32_t begin = c->residue_of[c->fitted[k]], end = begin;
-        const tml_site_residue *from = &c->models.residues[c->residues[begin]], *to = from;
+        const tml_site_residue *from = &c->models.residues[c->residues[begin]];
         if (!c->polymer) {
             tml_say_compared_atom(c, c->fitted[k++], part, sizeof part);
         } else {
@@ -75,9 +75,8 @@ static void say_stretches(const tml_comparison *c, char *text) {
                 if (next > end + 1 || strcmp(c->models.residues[c->residues[next]].chain, from->chain) != 0) break;
                 end = next;
             }
-            to = &c->models.residues[c->residues[end]];
             say_residue(from, first, sizeof first);
-            snprintf(part, sizeof part, begin == end ? "%s" : "%s to %s", first, to->number);
+            snprintf(part, sizeof part, begin == end ? "%s" : "%s to %s", first, c->models.residues[c->residues[end]].number);
         }
         if (used + strlen(part) + 8 > STRETCHES) {
             snprintf(text + used, STRETCHES - used, ", …");
