@@ -86,7 +86,10 @@ static void measure_spread(spreader *s) {
 
 void tml_ensemble_free(tml_ensemble *ensemble) {
     if (ensemble == NULL) return;
-    for (int32_t m = 0; m < ensemble->model_count; m++) free(ensemble->models[m].xyz);
+    for (int32_t m = 0; m < ensemble->model_count; m++) {
+        free(ensemble->models[m].xyz);
+        free(ensemble->models[m].swapped);
+    }
     free(ensemble->models);
     free(ensemble->spread);
     free(ensemble->well_defined);
