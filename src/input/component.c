@@ -32,8 +32,7 @@ typedef struct reader {
 typedef tml_status category_fn(reader *in, const tml_star_loop *loop);
 
 static category_fn read_atoms, read_bonds, read_angles, read_torsions, read_centres, read_plane_atoms, read_types;
-static tml_status choose_coordinates(reader *in);
-static tml_status refuse_twins(reader *in);
+static void choose_coordinates(reader *in);
 
 /* ---- whole files ---- */
 
@@ -65,8 +64,8 @@ tml_status tml_read_components(tml_draft *draft, tml_star *star, int32_t file, t
             status = tml_star_find_table(star, &star->frames[f], CATEGORIES[c].category, &table, &found, error);
             if (status == TML_OK && found && table.row_count > 0) status = CATEGORIES[c].read(&in, &table);
         }
-    if (status == TML_OK) status = choose_coordinates(&in);
-    return status == TML_OK ? refuse_twins(&in) : status;
+    choose_coordinates(&in);
+    return status;
 }
 
 /* A path as seen from the folder of the file that names it. */
@@ -289,7 +288,7 @@ static tml_status read_atoms(reader *in, const tml_star_loop *loop) {
 }
 
 /* Ideal coordinates where they are as complete as the model's. */
-static tml_status choose_coordinates(reader *in) {
+static void choose_coordinates(reader *in) {
     const tml_outline *outline = &in->draft->outline;
     for (size_t i = in->first; i < outline->component_count; i++) {
         tml_component *component = outline->components[i];
@@ -301,20 +300,6 @@ static tml_status choose_coordinates(reader *in) {
         for (size_t k = 0; ideal < model && k < component->atom_count; k++)
             memcpy(component->atoms[k].xyz, component->atoms[k].model_xyz, sizeof component->atoms[k].xyz);
     }
-    return TML_OK;
-}
-
-static tml_status refuse_twins(reader *in) {
-    const tml_outline *outline = &in->draft->outline;
-    for (size_t i = in->first; i < outline->component_count; i++)
-        for (size_t k = 0; k < i; k++) {
-            const tml_component *one = outline->components[k], *two = outline->components[i];
-            if (one->name != two->name) continue;
-            return tml_fail_at(in->error, TML_BAD_INPUT, in->draft->problem->files[two->place.file], two->place.line, two->place.column,
-                               "component %.32s is described already, at %s:%d", two->name, in->draft->problem->files[one->place.file],
-                               one->place.line);
-        }
-    return TML_OK;
 }
 
 /* ---- bonds ---- */
@@ -508,6 +493,19 @@ static tml_status read_types(reader *in, const tml_star_loop *loop) {
 
 /* ---- making ---- */
 
+/* One name cannot stand for two components. */
+static tml_status refuse_twins(const tml_draft *draft, size_t index, tml_error *error) {
+    const tml_component *two = draft->outline.components[index];
+    const char *const *files = draft->problem->files;
+    for (size_t k = 0; k < index; k++) {
+        const tml_component *one = draft->outline.components[k];
+        if (one->name == two->name)
+            return tml_fail_at(error, TML_BAD_INPUT, files[two->place.file], two->place.line, two->place.column,
+                               "component %.32s is described already, at %s:%d", two->name, files[one->place.file], (int)one->place.line);
+    }
+    return TML_OK;
+}
+
 tml_status tml_make_components(tml_draft *draft, tml_error *error) {
     tml_outline *outline = &draft->outline;
     tml_status status = TML_OK;
@@ -516,7 +514,8 @@ tml_status tml_make_components(tml_draft *draft, tml_error *error) {
         bool used = false;
         for (size_t r = 0; r < outline->residue_count && !used; r++) used = strcmp(outline->residues[r].name, component->name) == 0;
         if (!used) continue;
-        status = tml_component_make(component, draft->problem->pool, error);
+        status = refuse_twins(draft, i, error);
+        if (status == TML_OK) status = tml_component_make(component, draft->problem->pool, error);
         for (int k = 0; status == TML_OK && k < component->note_count; k++)
             status = tml_problem_add_note(draft->problem, component->place, error, "%s", component->notes[k]);
         for (const tml_template *form = tml_templates; status == TML_OK && form->name != NULL; form++)

@@ -135,10 +135,13 @@ static tml_status judge_coordinates(tml_component_making *making) {
                               component->atoms[component->bonds[first].b].name, bad > 1 ? ", as others," : "");
 }
 
+/* Degrees; NAN without coordinates, and where two arms fall on each other. */
 static double measured_angle(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
+    static const double LEAST = 25;
     const int32_t atoms[3] = {a, b, c};
     if (!all_placed(making, atoms, 3)) return NAN;
-    return tml_angle_of(place_of(making, a), place_of(making, b), place_of(making, c)) * 180 / TML_PI;
+    double angle = tml_angle_of(place_of(making, a), place_of(making, b), place_of(making, c)) * 180 / TML_PI;
+    return angle < LEAST ? NAN : angle;
 }
 
 /* Signed volume of three unit arms; NAN without coordinates. */
@@ -652,6 +655,7 @@ static bool same_arms(const tml_component_making *making, int32_t atom, int32_t 
 static int arms_of(const tml_component_making *making, int32_t atom, int32_t arms[4]);
 static const tml_component_centre *listed_centre(const tml_component_making *making, int32_t atom);
 static int sign_of(const tml_component_making *making, int32_t atom, int32_t arms[4], int count, bool *asked);
+static int sign_by_type(const tml_component_making *making, int32_t arms[4]);
 
 static tml_status make_centres(tml_component_making *making) {
     tml_component *component = making->component;
@@ -666,6 +670,7 @@ static tml_status make_centres(tml_component_making *making) {
         if (count < 3 || bridges_metals(making, i)) continue;
         bool asked = false;
         int sign = sign_of(making, i, arms, count, &asked);
+        if (sign == 0 && asked && i == making->ca) sign = sign_by_type(making, arms);
         if (sign == 0 && asked && unknown++ == 0) example = component->atoms[i].name;
         if (sign == 0 && making->ca >= 0 && degree == 4 && topology->ranks[arms[0]] != topology->ranks[arms[2]])
             continue; /* the rows of all amino acids may know better */
@@ -728,6 +733,20 @@ static int sign_of(const tml_component_making *making, int32_t atom, int32_t arm
     double volume = measured_volume(making, atom, arms);
     if (!isnan(volume) && fabs(volume) > SMALLEST) return volume > 0 ? 1 : -1;
     return 0;
+}
+
+/* An amino acid whose dictionary gives no hand for CA: L, but where its type says D. The arms become N, C and the side chain. */
+static int sign_by_type(const tml_component_making *making, int32_t arms[4]) {
+    const tml_topology *topology = &making->topology;
+    for (int32_t k = topology->first[making->ca]; k < topology->first[making->ca + 1]; k++) {
+        int32_t next = topology->neighbours[k];
+        if (next == making->n || next == making->c || topology->elements[next] == 1) continue;
+        arms[0] = making->n;
+        arms[1] = making->c;
+        arms[2] = next;
+    }
+    bool is_d = strncmp(making->component->type, "D-", 2) == 0 || strncmp(making->component->type, "d-", 2) == 0;
+    return arms[0] != making->n ? 0 : is_d ? -1 : 1;
 }
 
 /* ---- charges ---- */
