@@ -146,6 +146,7 @@ static tml_status find_template(tml_making *making, tml_layout_residue *residue)
         const tml_component *component = making->outline->components[i];
         if (!component->made || strcmp(component->name, residue->name) != 0) continue;
         residue->form = &component->form;
+        residue->type = component->type;
         residue->own = true;
     }
     if (residue->form != NULL) return TML_OK;

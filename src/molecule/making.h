@@ -24,7 +24,7 @@ typedef struct tml_layout_atom {
 typedef struct tml_layout_bond { int32_t a, b; double length; tml_bond_kind kind; } tml_layout_bond;
 
 typedef struct tml_layout_residue {
-    const char *chain, *number, *name, *variant;
+    const char *chain, *number, *name, *variant, *type;
     const tml_template *form;  /* NULL for bare atoms */
     bool standard, own;        /* of a name that is built in; of a component dictionary */
     tml_linking linking;

@@ -35,6 +35,7 @@ typedef struct writer {
 } writer;
 
 static bool take_stock(writer *w);
+static bool write_components(const writer *w);
 static void write_entities(const writer *w);
 static void write_provenance(const writer *w);
 static void write_links(const writer *w);
@@ -104,6 +105,7 @@ tml_status tml_cif_write(tml_file *file, const tml_ensemble *ensemble, const tml
     if (good) {
         tml_file_print(file, "data_trammel\n#\n_entry.id trammel\n");
         write_provenance(&w);
+        good = write_components(&w);
         write_entities(&w);
         write_links(&w);
         write_sites(&w);
@@ -179,6 +181,39 @@ static bool take_stock(writer *w) {
     return true;
 }
 
+/* Is one of a strand's residues not built in? */
+static bool has_others(const writer *w, const strand *at) {
+    for (int32_t i = 0; i < at->count; i++)
+        if (!w->molecule->residues[w->members[at->first + i]].standard) return true;
+    return false;
+}
+
+/* The dictionary's own type of component, where it is one that the archive has; otherwise by the kind of chain. */
+static const char *component_type(const tml_residue *residue) {
+    static const char *const WORDS[] = {"linking", "LINKING", "polymer", "POLYMER", "terminus", "TERMINUS", "saccharide", "SACCHARIDE"};
+    for (size_t i = 0; i < sizeof WORDS / sizeof *WORDS; i++)
+        if (strstr(residue->type, WORDS[i]) != NULL) return residue->type;
+    if (residue->polymer == TML_POLYMER_NONE) return "non-polymer";
+    return !residue->standard || strcmp(residue->name, "GLY") == 0 ? "peptide linking" : "L-peptide linking";
+}
+
+/* Each name once. */
+static bool write_components(const writer *w) {
+    tml_index *seen = tml_index_new();
+    bool room = seen != NULL;
+    loop(w, "chem_comp", (const char *const[]){"id", "type", NULL});
+    for (int32_t r = 0; room && r < w->molecule->residue_count; r++) {
+        const char *name = tml_label_of(w->molecule, r, w->bare_chain).name;
+        if (tml_index_find(seen, 0, name) >= 0) continue;
+        room = tml_index_add(seen, 0, name, r);
+        value(w, name);
+        value(w, component_type(&w->molecule->residues[r]));
+        end_row(w);
+    }
+    tml_index_free(seen);
+    return room;
+}
+
 static void write_entities(const writer *w) {
     loop(w, "entity", (const char *const[]){"id", "type", "src_method", "pdbx_description", NULL});
     for (int32_t e = 0; e < w->entity_count; e++) {
@@ -195,7 +230,8 @@ static void write_entities(const writer *w) {
     if (polymers) {
         loop(w, "entity_poly", (const char *const[]){"entity_id", "type", "nstd_linkage", "nstd_monomer", NULL});
         for (int32_t e = 0; e < w->entity_count; e++)
-            if (w->strands[w->entity_strand[e]].polymer) tml_file_print(w->file, "%d polypeptide(L) no no\n", e + 1);
+            if (w->strands[w->entity_strand[e]].polymer)
+                tml_file_print(w->file, "%d polypeptide(L) no %s\n", e + 1, has_others(w, &w->strands[w->entity_strand[e]]) ? "yes" : "no");
         loop(w, "entity_poly_seq", (const char *const[]){"entity_id", "num", "mon_id", "hetero", NULL});
         for (int32_t e = 0; e < w->entity_count; e++) {
             const strand *at = &w->strands[w->entity_strand[e]];
@@ -313,6 +349,12 @@ static void partner(const writer *w, int32_t atom) {
     tml_file_print(w->file, "%c 1_555 ", label.insertion == ' ' ? '?' : label.insertion);
 }
 
+static const char *connection(const writer *w, const tml_bond *bond) {
+    const tml_atom *a = &w->molecule->atoms[bond->a], *b = &w->molecule->atoms[bond->b];
+    if (tml_element_is_metal(a->element) || tml_element_is_metal(b->element)) return "metalc";
+    return tml_is_disulfide(w->molecule, bond) ? "disulf" : "covale";
+}
+
 static void write_links(const writer *w) {
     int count = 0;
     for (int32_t i = 0; i < w->molecule->bond_count; i++) {
@@ -320,7 +362,7 @@ static void write_links(const writer *w) {
         if (!tml_bond_links(w->molecule, w->is_peptide, i)) continue;
         if (count++ == 0) {
             loop(w, "struct_conn_type", (const char *const[]){"id", NULL});
-            tml_file_print(w->file, "disulf\ncovale\n");
+            tml_file_print(w->file, "disulf\ncovale\nmetalc\n");
             loop(w, "struct_conn",
                  (const char *const[]){
                      "id", "conn_type_id", "ptnr1_label_atom_id", "pdbx_ptnr1_label_alt_id", "ptnr1_label_comp_id",
@@ -329,7 +371,7 @@ static void write_links(const writer *w) {
                      "ptnr2_label_comp_id", "ptnr2_label_asym_id", "ptnr2_label_seq_id", "ptnr2_auth_asym_id",
                      "ptnr2_auth_seq_id", "pdbx_ptnr2_PDB_ins_code", "ptnr2_symmetry", "pdbx_dist_value", NULL});
         }
-        tml_file_print(w->file, "link%d %s ", count, tml_is_disulfide(w->molecule, bond) ? "disulf" : "covale");
+        tml_file_print(w->file, "link%d %s ", count, connection(w, bond));
         partner(w, bond->a);
         partner(w, bond->b);
         tml_file_print(w->file, "%.3f\n", tml_first_length(w->ensemble, bond));
