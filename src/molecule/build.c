@@ -62,7 +62,7 @@ static tml_status make_atoms(tml_making *making) {
                                  .first_atom = molecule->atom_count,
                                  .position = r - molecule->chains[from->chain_index].first_residue,
                                  .polymer = from->form == NULL ? TML_POLYMER_NONE : from->form->family->polymer,
-                                 .type = from->own ? from->type : "",
+                                 .type = from->type,
                                  .standard = from->standard};
         read_number(residue);
         for (int32_t i = from->first_atom; i < from->first_atom + from->atom_count; i++) {

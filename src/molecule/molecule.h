@@ -26,7 +26,7 @@ typedef struct tml_residue {
     int32_t position;                  /* 0-based within its chain */
     int32_t first_atom, atom_count;    /* a residue's atoms are consecutive */
     tml_polymer polymer;               /* the kind of chain that it belongs in */
-    const char *type;                  /* as its component dictionary says; "" for none */
+    const char *type;                  /* as its component dictionary says; NULL for none */
     bool standard;                     /* built in: one of the residues that model files hold as ATOM records */
 } tml_residue;
 

@@ -191,7 +191,7 @@ static bool has_others(const writer *w, const strand *at) {
 /* The dictionary's own type of component, where it is one that the archive has; otherwise by the kind of chain. */
 static const char *component_type(const tml_residue *residue) {
     static const char *const WORDS[] = {"linking", "LINKING", "polymer", "POLYMER", "terminus", "TERMINUS", "saccharide", "SACCHARIDE"};
-    for (size_t i = 0; i < sizeof WORDS / sizeof *WORDS; i++)
+    for (size_t i = 0; residue->type != NULL && i < sizeof WORDS / sizeof *WORDS; i++)
         if (strstr(residue->type, WORDS[i]) != NULL) return residue->type;
     if (residue->polymer == TML_POLYMER_NONE) return "non-polymer";
     return !residue->standard || strcmp(residue->name, "GLY") == 0 ? "peptide linking" : "L-peptide linking";
