@@ -518,10 +518,9 @@ tml_status tml_make_components(tml_draft *draft, tml_error *error) {
         if (status == TML_OK) status = tml_component_make(component, draft->problem->pool, error);
         for (int k = 0; status == TML_OK && k < component->note_count; k++)
             status = tml_problem_add_note(draft->problem, component->place, error, "%s", component->notes[k]);
-        for (const tml_template *form = tml_templates; status == TML_OK && form->name != NULL; form++)
-            if (strcmp(form->name, component->name) == 0)
-                status = tml_problem_add_note(draft->problem, component->place, error, "%s is used as described here, not as built in",
-                                              component->name);
+        if (status == TML_OK && tml_find_builtin(component->name) != NULL)
+            status = tml_problem_add_note(draft->problem, component->place, error, "%s is used as described here, not as built in",
+                                          component->name);
     }
     return status;
 }

@@ -219,9 +219,9 @@ tml_status tml_component_add_ends(tml_component_making *making) {
 
 /* The row of an atom as a built-in residue has it. */
 static tml_atom_row built_in(const char *residue, const char *name) {
-    for (const tml_template *form = tml_templates; form->name != NULL; form++)
-        for (const tml_atom_row *row = form->atoms; strcmp(form->name, residue) == 0 && row->name != NULL; row++)
-            if (strcmp(row->name, name) == 0) return *row;
+    const tml_template *form = tml_find_builtin(residue);
+    for (const tml_atom_row *row = form == NULL ? NULL : form->atoms; row != NULL && row->name != NULL; row++)
+        if (strcmp(row->name, name) == 0) return *row;
     return (tml_atom_row){0};
 }
 

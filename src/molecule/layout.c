@@ -137,11 +137,8 @@ static tml_status order_by_chain(tml_making *making) {
 /* ---- their templates ---- */
 
 static tml_status find_template(tml_making *making, tml_layout_residue *residue) {
-    for (const tml_template *form = tml_templates; form->name != NULL; form++)
-        if (strcmp(form->name, residue->name) == 0) {
-            residue->form = form;
-            residue->standard = true;
-        }
+    residue->form = tml_find_builtin(residue->name);
+    residue->standard = residue->form != NULL;
     for (size_t i = 0; i < making->outline->component_count; i++) {
         const tml_component *component = making->outline->components[i];
         if (!component->made || strcmp(component->name, residue->name) != 0) continue;
@@ -151,7 +148,8 @@ static tml_status find_template(tml_making *making, tml_layout_residue *residue)
     }
     if (residue->form != NULL) return TML_OK;
     char known[256] = "";
-    for (const tml_template *form = tml_templates; form->name != NULL; form++) {
+    const tml_template *form;
+    for (int32_t i = 0; (form = tml_builtin(i)) != NULL; i++) {
         size_t used = strlen(known);
         snprintf(known + used, sizeof known - used, "%s%s", used == 0 ? "" : " ", form->name);
     }

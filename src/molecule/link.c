@@ -179,7 +179,7 @@ static bool is_amide(const tml_making *making, int32_t carbon, int32_t nitrogen)
 /* Neighbours within the residue and along the chain, whether they have been linked away or not. */
 static int usual_neighbours(const tml_template *form, const char *name) {
     bool is_tail = strcmp(name, form->family->tail) == 0; /* the bond to the next residue, or what is there without one */
-    int count = is_tail;
+    int count = is_tail || strcmp(name, form->family->head) == 0;
     for (const tml_atom_row *row = form->atoms; row->name != NULL; row++) {
         if (strcmp(row->name, name) == 0 && *row->parent != '\0') count++;
         if (strcmp(row->parent, name) == 0 && row->optional != TML_OPTIONAL && !(is_tail && row->optional == TML_LEAVING)) count++;

@@ -522,7 +522,7 @@ static const tml_centre_row val_centres[] = {{"CB", "CG1", "CG2", "CA", -1}, END
 
 /* ---- table of residues ---- */
 
-const tml_template tml_templates[] = {
+const tml_template tml_amino_acids[] = {
     {"ALA", &tml_protein_family, ala_atoms, no_bonds, ala_angles, no_torsions, ala_centres, no_charges, no_planes},
     {"ARG", &tml_protein_family, arg_atoms, no_bonds, arg_angles, arg_torsions, arg_centres, arg_charges, arg_planes},
     {"ASN", &tml_protein_family, asn_atoms, no_bonds, asn_angles, asn_torsions, no_centres, no_charges, asn_planes},

@@ -63,7 +63,11 @@ struct tml_family {
     const tml_end_row *first_ends, *last_ends;
 };
 
-extern const tml_family tml_protein_family, tml_lone_family; /* lone: residues that form no chains */
-extern const tml_template tml_templates[]; /* ends with a NULL name */
+extern const tml_family tml_protein_family, tml_nucleic_family, tml_lone_family; /* lone: residues that form no chains */
+extern const tml_template tml_amino_acids[], tml_nucleotides[]; /* each ends with a NULL name */
+
+/* builtin.c: all built-in residues, one after the other; NULL past the last. And by name; NULL for none. */
+const tml_template *tml_builtin(int32_t index);
+const tml_template *tml_find_builtin(const char *name);
 
 #endif

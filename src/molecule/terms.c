@@ -255,7 +255,7 @@ static tml_status make_centres(tml_making *making) {
     return TML_OK;
 }
 
-/* The first row for this atom; false where there is none or an arm of it is missing. A sign of 0 is no handedness. */
+/* The first row for this atom whose arms are all there; false where there is none. A sign of 0 is no handedness. */
 static bool from_row(const tml_making *making, const tml_centre_row *rows, int32_t atom, tml_centre *centre) {
     const tml_molecule *molecule = making->molecule;
     int32_t r = molecule->atoms[atom].residue;
@@ -264,10 +264,12 @@ static bool from_row(const tml_making *making, const tml_centre_row *rows, int32
         const char *names[3] = {rows->a1, rows->a2, rows->a3};
         *centre = (tml_centre){
             .centre = atom, .arms = {-1, -1, -1, -1}, .sign = rows->sign == 0 ? 1 : rows->sign, .fixed = rows->sign != 0};
+        bool whole = true;
         for (int k = 0; k < 3; k++) {
             centre->arms[k] = tml_lookup_atom(making, r, names[k], strlen(names[k]));
-            if (centre->arms[k] < 0) return false;
+            whole = whole && centre->arms[k] >= 0;
         }
+        if (!whole) continue;
         rest_of_arms(molecule, centre);
         return true;
     }

@@ -194,6 +194,7 @@ static const char *component_type(const tml_residue *residue) {
     for (size_t i = 0; residue->type != NULL && i < sizeof WORDS / sizeof *WORDS; i++)
         if (strstr(residue->type, WORDS[i]) != NULL) return residue->type;
     if (residue->polymer == TML_POLYMER_NONE) return "non-polymer";
+    if (residue->polymer == TML_POLYMER_NUCLEIC) return residue->name[0] == 'D' ? "DNA linking" : "RNA linking";
     return !residue->standard || strcmp(residue->name, "GLY") == 0 ? "peptide linking" : "L-peptide linking";
 }
 
@@ -214,6 +215,13 @@ static bool write_components(const writer *w) {
     return room;
 }
 
+/* A polymer's type in the dictionary's words, by its first residue. */
+static const char *polymer_type(const writer *w, const strand *at) {
+    const tml_residue *first = &w->molecule->residues[w->members[at->first]];
+    if (first->polymer != TML_POLYMER_NUCLEIC) return "polypeptide(L)";
+    return first->name[0] == 'D' ? "polydeoxyribonucleotide" : "polyribonucleotide";
+}
+
 static void write_entities(const writer *w) {
     loop(w, "entity", (const char *const[]){"id", "type", "src_method", "pdbx_description", NULL});
     for (int32_t e = 0; e < w->entity_count; e++) {
@@ -231,7 +239,8 @@ static void write_entities(const writer *w) {
         loop(w, "entity_poly", (const char *const[]){"entity_id", "type", "nstd_linkage", "nstd_monomer", NULL});
         for (int32_t e = 0; e < w->entity_count; e++)
             if (w->strands[w->entity_strand[e]].polymer)
-                tml_file_print(w->file, "%d polypeptide(L) no %s\n", e + 1, has_others(w, &w->strands[w->entity_strand[e]]) ? "yes" : "no");
+                tml_file_print(w->file, "%d %s no %s\n", e + 1, polymer_type(w, &w->strands[w->entity_strand[e]]),
+                               has_others(w, &w->strands[w->entity_strand[e]]) ? "yes" : "no");
         loop(w, "entity_poly_seq", (const char *const[]){"entity_id", "num", "mon_id", "hetero", NULL});
         for (int32_t e = 0; e < w->entity_count; e++) {
             const strand *at = &w->strands[w->entity_strand[e]];

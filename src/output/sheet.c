@@ -70,9 +70,7 @@ tml_status tml_sheet_derive(const tml_coordinates *coordinates, const tml_derive
 /* ---- the sequence ---- */
 
 static bool built_in(const char *name) {
-    for (const tml_template *form = tml_templates; form->name != NULL; form++)
-        if (strcmp(form->name, name) == 0) return true;
-    return false;
+    return tml_find_builtin(name) != NULL;
 }
 
 /* What is looked for in each residue: sites, or -1. */

@@ -64,8 +64,8 @@ static int print_inputs(const char *const *paths, size_t count) {
 
 int main(int argc, char **argv) {
     if (argc > 2 && strcmp(argv[1], "inputs") == 0) return print_inputs((const char *const *)(argv + 2), (size_t)argc - 2);
-    if (argc == 1)
-        for (const tml_template *form = tml_templates; form->name != NULL; form++) puts(form->name);
+    const tml_template *form;
+    for (int32_t i = 0; argc == 1 && (form = tml_builtin(i)) != NULL; i++) puts(form->name);
     if (argc == 1) return 0;
     tml_strings *pool = tml_strings_new();
     tml_outline outline = {0};
