@@ -112,11 +112,12 @@ Test(stretch, numbers_insertion_codes_and_chains) {
     cr_assert(holds("A", "A", "anything") && !holds("A", "AA", "1") && !holds("A:1-9", "A", "anything"));
     cr_assert(holds("H:52-52C", "H", "52B") && holds("H:52-52C", "H", "52") && !holds("H:52A-53", "H", "52"));
     cr_assert(holds("H:52A", "H", "52A") && !holds("H:52A", "H", "52B"));
+    cr_assert(holds("A:1-2, B:4", "B", "4") && holds(" A:1-2,   B:4", "A", "2") && !holds("A:1-2, B:4", "A", "4"));
     cr_assert(holds("2", "_", "2") && !holds("2", "_", "22") && holds("1:2", "1", "2"));
 }
 
 Test(stretch, what_cannot_be_understood_is_refused) {
-    const char *const texts[] = {"", ",", "A:1-2,", "A:", ":1", "A:5-", "A:9-5", "A:1-2-3", "A:x", "A:1..3", "A:52C-52A", "1-", "-", "A:1234567890"};
+    const char *const texts[] = {"", ",", "A:1-2,", "A:1-2, ", "A:1 ", "A:", ":1", "A:5-", "A:9-5", "A:1-2-3", "A:x", "A:1..3", "A:52C-52A", "1-", "-", "A:1234567890"};
     for (size_t i = 0; i < sizeof texts / sizeof texts[0]; i++) {
         tml_error error = {0};
         cr_assert_eq(tml_stretches_check(texts[i], &error), TML_BAD_INPUT, "'%s'", texts[i]);

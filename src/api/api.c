@@ -5,10 +5,12 @@
  *   limits           one pair
  *   contradictions   proofs, step by step
  *   ensembles        models, coordinates, measures, files
+ *   comparing        files to coordinates to figures
  */
 #include <stdlib.h>
 
 #include "bounds/bounds.h"
+#include "ensemble/compare.h"
 #include "ensemble/ensemble.h"
 #include "output/output.h"
 
@@ -154,4 +156,18 @@ tml_status tml_ensemble_write(const tml_ensemble *ensemble, const tml_contradict
     if (format == TML_FORMAT_UNKNOWN)
         return tml_fail_at(error, TML_BAD_INPUT, path, 0, 0, "the name does not end in .pdb, .cif, .pdb.gz or .cif.gz");
     return tml_write_models(ensemble, found == NULL ? &none : found, path, format, compressed, error);
+}
+
+/* ---- comparing ---- */
+
+tml_status tml_compare(const char *models, const char *reference, const tml_compare_options *options, const tml_watch *watch,
+                       tml_comparison **out, tml_error *error) {
+    tml_coordinates read = {0}, other = {0};
+    *out = NULL;
+    tml_status status = tml_coordinates_read(models, &read, error);
+    if (status == TML_OK && reference != NULL) status = tml_coordinates_read(reference, &other, error);
+    if (status == TML_OK) status = tml_compare_coordinates(&read, reference == NULL ? NULL : &other, options, watch, out, error);
+    tml_coordinates_clear(&read);
+    tml_coordinates_clear(&other);
+    return status;
 }

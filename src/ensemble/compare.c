@@ -15,7 +15,8 @@
 #include "base/superpose.h"
 #include "input/selection.h"
 
-static tml_status read_inputs(tml_comparison *c, const char *models, const char *reference, tml_error *error);
+static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
+                              tml_error *error);
 static tml_status take_part(tml_comparison *c, tml_error *error);
 static tml_status choose_atoms(tml_comparison *c, tml_error *error);
 static tml_status find_core(tml_comparison *c, tml_error *error);
@@ -32,29 +33,20 @@ static char *copy_text(const char *text) {
     return copy == NULL ? NULL : memcpy(copy, text, size);
 }
 
-tml_status tml_compare(const char *models, const char *reference, const tml_compare_options *options, const tml_watch *watch,
-                       tml_comparison **out, tml_error *error) {
-    *out = NULL;
-    tml_status status = tml_core_check(options->core, error);
-    if (status == TML_OK) status = tml_selection_check(options->atoms, error);
-    if (status != TML_OK) return status;
-    tml_comparison *c = tml_alloc(1, sizeof *c);
+tml_status tml_compare_coordinates(tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
+                                   const tml_watch *watch, tml_comparison **out, tml_error *error) {
+    tml_comparison *c = *out = tml_alloc(1, sizeof *c);
     if (c == NULL) return tml_no_memory(error);
-    c->core_text = copy_text(options->core);
-    c->atoms_text = copy_text(options->atoms);
-    c->cut_given = options->cut >= 0;
-    c->cut_asked = options->cut;
-    status = c->core_text == NULL || c->atoms_text == NULL ? tml_no_memory(error) : read_inputs(c, models, reference, error);
+    tml_status status = take_inputs(c, models, reference, options, error);
     if (status == TML_OK) status = take_part(c, error);
     if (status == TML_OK) status = choose_atoms(c, error);
     if (status == TML_OK) status = find_core(c, error);
     if (status == TML_OK) status = measure(c, options->threads, watch, error);
     if (status == TML_OK) status = find_clusters(c, watch == NULL ? NULL : watch->stop, error);
     if (status == TML_OK && reference != NULL) status = tml_compare_reference(c, options->threads, watch, error);
-    if (status == TML_OK)
-        *out = c;
-    else
-        tml_comparison_free(c);
+    if (status == TML_OK) return TML_OK;
+    tml_comparison_free(c);
+    *out = NULL;
     return status;
 }
 
@@ -72,23 +64,35 @@ void tml_comparison_free(tml_comparison *c) {
 /* ---- what takes part ---- */
 
 /* Numbers so far out that their squares would say nothing are no coordinates. */
-static tml_status within_reach(const tml_coordinates *of, const char *path, tml_error *error) {
+static tml_status within_reach(const tml_coordinates *of, const char *what, tml_error *error) {
     static const double FARTHEST = 1e6; /* Å */
     for (size_t i = 0; i < (size_t)of->model_count * of->atom_count * 3; i++)
         if (fabs(of->xyz[i]) > FARTHEST) /* false for NAN, a missing atom */
-            return tml_fail_at(error, TML_BAD_INPUT, path, 0, 0, "model %zu has a coordinate of %g Å; %g Å are the most",
-                               i / (of->atom_count * 3) + 1, of->xyz[i], FARTHEST);
+            return tml_fail(error, TML_BAD_INPUT, "model %zu of the %s has a coordinate of %g Å; %g Å are the most",
+                            i / (of->atom_count * 3) + 1, what, of->xyz[i], FARTHEST);
     return TML_OK;
 }
 
-static tml_status read_inputs(tml_comparison *c, const char *models, const char *reference, tml_error *error) {
-    tml_status status = tml_coordinates_read(models, &c->models, error);
-    if (status == TML_OK) status = within_reach(&c->models, models, error);
-    if (status == TML_OK && c->models.model_count < 2 && reference == NULL)
-        status = tml_fail_at(error, TML_BAD_INPUT, models, 0, 0, "there is one model, and no reference to compare it with");
-    if (status == TML_OK && reference != NULL) status = tml_coordinates_read(reference, &c->reference.coordinates, error);
-    if (status == TML_OK && reference != NULL) status = within_reach(&c->reference.coordinates, reference, error);
+static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
+                              tml_error *error) {
+    c->models = *models;
+    *models = (tml_coordinates){0};
+    if (reference != NULL) {
+        c->reference.coordinates = *reference;
+        *reference = (tml_coordinates){0};
+    }
     c->model_count = c->models.model_count;
+    c->core_text = copy_text(options->core);
+    c->atoms_text = copy_text(options->atoms);
+    c->cut_given = options->cut >= 0;
+    c->cut_asked = options->cut;
+    if (c->core_text == NULL || c->atoms_text == NULL) return tml_no_memory(error);
+    tml_status status = tml_core_check(options->core, error);
+    if (status == TML_OK) status = tml_selection_check(options->atoms, error);
+    if (status == TML_OK) status = within_reach(&c->models, "models", error);
+    if (status == TML_OK && reference != NULL) status = within_reach(&c->reference.coordinates, "reference", error);
+    if (status == TML_OK && c->model_count < 2 && reference == NULL)
+        status = tml_fail(error, TML_BAD_INPUT, "there is one model, and no reference to compare it with");
     return status;
 }
 

@@ -55,6 +55,13 @@ struct tml_comparison {
     tml_reference reference;
 };
 
+/* The comparison of what was read: tml_compare without the reading.
+ *
+ * models, reference  taken over, and left empty, after a failure too; reference may be NULL
+ */
+tml_status tml_compare_coordinates(tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
+                                   const tml_watch *watch, tml_comparison **out, tml_error *error);
+
 /* Whether a core is asked for in words that can be understood. TML_OK or TML_BAD_INPUT. */
 tml_status tml_core_check(const char *core, tml_error *error);
 

@@ -90,8 +90,9 @@ static bool read_code(const char **at, long *number, char *insertion) {
     return true;
 }
 
-/* The first word of `text`, which a comma or the end closes. */
+/* The first word of `text`, which a comma or the end closes; blanks may stand before it. */
 static bool read_stretch(const char *text, tml_stretch *out) {
+    text += strspn(text, " ");
     size_t length = strcspn(text, ","), chain = strcspn(text, ":,");
     const char *at = text, *end = text + length;
     *out = (tml_stretch){.word = text, .length = length};
@@ -116,7 +117,7 @@ static bool read_stretch(const char *text, tml_stretch *out) {
 
 bool tml_stretch_next(const char **text, tml_stretch *out) {
     if (**text == '\0' || !read_stretch(*text, out)) return false;
-    *text += out->length + ((*text)[out->length] == ',');
+    *text = out->word + out->length + (out->word[out->length] == ',');
     return true;
 }
 
@@ -126,7 +127,7 @@ tml_status tml_stretches_check(const char *text, tml_error *error) {
         if (!read_stretch(at, &stretch))
             return tml_fail(error, TML_BAD_INPUT, "'%.*s' is no stretch of residues; A:8-69, A:12, 8-69 or A would be",
                             stretch.length > 64 ? 64 : (int)stretch.length, at);
-        if (at[stretch.length] == '\0') return TML_OK;
+        if (stretch.word[stretch.length] == '\0') return TML_OK;
     }
 }
 

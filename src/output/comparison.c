@@ -76,7 +76,7 @@ static void say_stretches(const tml_comparison *c, char *text) {
                 end = next;
             }
             say_residue(from, first, sizeof first);
-            snprintf(part, sizeof part, begin == end ? "%s" : "%s to %s", first, c->models.residues[c->residues[end]].number);
+            snprintf(part, sizeof part, begin == end ? "%s" : "%s-%s", first, c->models.residues[c->residues[end]].number);
         }
         if (used + strlen(part) + 8 > STRETCHES) {
             snprintf(text + used, STRETCHES - used, ", …");

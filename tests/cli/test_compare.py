@@ -45,7 +45,7 @@ class Compare(harness.CommandTest):
         self.assertEqual(err, '')
         self.assertIn(f"medoid: model {told['medoid']}, ", out)
         self.assertIn(f"{told['pairs']['mean']:8.3f} {told['pairs']['min']:8.3f}  {told['pairs']['max']:8.3f}", out)
-        self.assertIn('core: A:1 to 6', out)
+        self.assertIn('core: A:1-6', out)
         self.assertLessEqual(max(map(len, out.splitlines())), 100)
 
     def test_one_model_needs_a_reference(self):

@@ -395,6 +395,19 @@ class Compare(unittest.TestCase):
                     if entry == '1s40' and core == 'spread':
                         self.assertTrue(any(atoms[k][2] == 'C4*' for k in chosen))
 
+    @unittest.skipUnless(os.path.isdir(FOLDER), 'no deposited ensembles on this machine')
+    def test_mmcif_gives_the_same_figures_as_pdb(self):
+        for entry in ('2sdf', '1s40'):
+            with gzip.open(f'{FOLDER}/{entry}.pdb.gz', 'rt') as file:
+                text = file.read()
+            structure = gemmi.read_pdb_string(text)
+            structure.setup_entities()
+            structure.make_mmcif_document().write_file(self.path('m.cif'))
+            told = self.compare(f'{FOLDER}/{entry}.pdb.gz', f'{FOLDER}/{entry}.pdb.gz')
+            self.assertEqual(self.compare(self.path('m.cif'), f'{FOLDER}/{entry}.pdb.gz'), told)
+            self.assertLess(told['reference']['to_medoid'], 1e-5)
+            self.assertEqual(told['reference']['medoid'], told['medoid'])
+
     def check_order(self, models, residues, told, is_core):
         names, count = list(residues), 0
         for residue in told['per_residue']:
