@@ -6,7 +6,7 @@
  *
  * Angles: tetrahedral, trigonal and linear, but in small rings those of a regular or usual ring; on two-armed oxygen and sulphur
  * those of dimethyl ether, dimethyl sulphide, methanol and methanethiol; on sulphonyl groups those of dimethyl sulphone (gas-phase
- * values, from memory).
+ * values, from memory), in rings with sulphur or selenium those of thiophene and selenophene (microwave spectra, from memory).
  *
  * Contents: making - rings - shapes - ranks - lengths - angles
  */
@@ -375,7 +375,7 @@ double tml_single_length(int element_1, tml_shape shape_1, int element_2, tml_sh
 static double length_between(int a, tml_shape shape_a, int b, tml_shape shape_b, tml_order order) {
     static const double DOUBLE = 0.87, TRIPLE = 0.78, BETWEEN = 0.93;
     double metal = tml_metal_length(a, b);
-    if (!isnan(metal)) return metal;
+    if (!isnan(metal)) return order == TML_ORDER_DOUBLE ? DOUBLE * metal : metal;
     for (size_t i = 0; i < sizeof lengths / sizeof *lengths; i++)
         if (lengths[i].order == order && (fits(&lengths[i], a, shape_a, b, shape_b) || fits(&lengths[i], b, shape_b, a, shape_a)))
             return lengths[i].length;
@@ -403,10 +403,28 @@ double tml_topology_angle(const tml_topology *t, int32_t a, int32_t centre, int3
     }
 }
 
-/* Inner angle of a flat ring; 120° outside of rings. */
+/* Flat rings of five with one large atom: at it, beside it, opposite to it. Thiophene, selenophene. */
+static double hetero_ring_angle(const tml_topology *t, int32_t ring, int32_t centre) {
+    static const struct { int element; double at, beside, opposite; } KNOWN[] = {{S, 92.2, 111.5, 112.4}, {SE, 87.8, 111.6, 114.5}};
+    const int32_t *atoms = &t->ring_atoms[t->ring_first[ring]];
+    int32_t here = 0, large = -1;
+    for (int32_t i = 0; i < 5; i++) {
+        if (atoms[i] == centre) here = i;
+        if (t->elements[atoms[i]] != S && t->elements[atoms[i]] != SE) continue;
+        if (large >= 0) return 0;
+        large = i;
+    }
+    if (large < 0) return 0;
+    int k = t->elements[atoms[large]] == SE, away = abs(here - large);
+    return away == 0 ? KNOWN[k].at : away == 1 || away == 4 ? KNOWN[k].beside : KNOWN[k].opposite;
+}
+
+/* Inner angle of a flat ring; 0 outside of rings. */
 static double flat_ring_angle(const tml_topology *t, int32_t a, int32_t centre, int32_t c) {
     int32_t ring = tml_topology_ring_of(t, a, centre, c);
     int32_t size = ring < 0 ? 0 : tml_topology_ring_size(t, ring);
+    double hetero = size == 5 ? hetero_ring_angle(t, ring, centre) : 0;
+    if (hetero > 0) return hetero;
     return size >= 3 && size <= 7 ? 180 - 360.0 / size : 0;
 }
 

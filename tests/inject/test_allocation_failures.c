@@ -258,6 +258,7 @@ int main(void) {
     fail_each(check_way, "tests/cli/contradicted.sheet", 400);
     fail_each(build_way, "tests/cli/five-ring.sheet", 200);
     fail_each(build_way, "tests/cli/peptide.sheet", 60);
+    fail_each(check_way, "restraints/quill.sheet", 600);
     fail_each(table_way, "tests/cli/peptide.sheet", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.pdb", 300);
     fail_each(derive_way, "tests/fuzz/corpus/coordinates/peptide.cif", 300);

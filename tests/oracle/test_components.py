@@ -211,6 +211,38 @@ class Sample(unittest.TestCase):
                     self.assertLessEqual(geometry['bond_rms'], 0.01)
         print(f'sample of {COUNT}: largest bond r.m.s. {worst:.4f} Å')
 
+    def test_elements_and_bond_orders_alone_come_near_the_dictionary_s_targets(self):
+        """What topology_geometry.c expects against target values, r.m.s.; the dictionary's own are round numbers by atom type."""
+        lengths, angles = [], []
+        files = sorted(os.path.join(folder, f) for folder, _, names in os.walk(MONOMERS) for f in names
+                       if f.endswith('.cif') and len(os.path.basename(folder)) == 1)
+        with tempfile.TemporaryDirectory() as folder:
+            dictionary, sheet = os.path.join(folder, 'bare.cif'), os.path.join(folder, 'bare.sheet')
+            for path in random.Random(SEED + 1).sample(files, COUNT):
+                name = os.path.basename(path)[:-4]
+                block = entry(name)
+                elements = {a: e.upper() for a, e in rows(block, 'atom', 'atom_id', 'type_symbol')}
+                bonds = rows(block, 'bond', 'atom_id_1', 'atom_id_2', 'type', 'value_dist')
+                with open(dictionary, 'w', encoding='utf8') as file:
+                    file.write(f'data_{name}\n_chem_comp.id {name}\n')
+                    file.write(loop('atom', ['comp_id', 'atom_id', 'type_symbol'], [[name, a, e] for a, e in elements.items()]))
+                    file.write(loop('bond', ['comp_id', 'atom_id_1', 'atom_id_2', 'type'], [[name, a, b, o] for a, b, o, _ in bonds]))
+                with open(sheet, 'w', encoding='utf8') as file:
+                    file.write(f'sheet 1\nsequence A 1 {name}\n')
+                terms = [line.split('\t') for line in subprocess.run([DUMP, 'inputs', sheet, dictionary], check=True, capture_output=True,
+                                                                     text=True).stdout.splitlines()]
+                names = {f[1]: f[4] for f in terms if f[0] == 'atom'}
+                made = {frozenset((names[f[1]], names[f[2]])): float(f[3]) for f in terms if f[0] == 'bond'}
+                bent = {(names[f[2]], frozenset((names[f[1]], names[f[3]]))): float(f[4]) for f in terms if f[0] == 'angle'}
+                lengths += [made[frozenset((a, b))] - float(d) for a, b, _, d in bonds if 'H' not in (elements[a], elements[b])]
+                angles += [bent[b, frozenset((a, c))] - float(t) for a, b, c, t in
+                           rows(block, 'angle', 'atom_id_1', 'atom_id_2', 'atom_id_3', 'value_angle')
+                           if 'H' not in (elements[a], elements[c]) and (b, frozenset((a, c))) in bent]
+        spread = [numpy.sqrt(numpy.mean(numpy.square(v))) for v in (lengths, angles)]
+        print(f'topology alone: {len(lengths)} lengths off by {spread[0]:.3f} Å r.m.s., {len(angles)} angles by {spread[1]:.1f} degrees')
+        self.assertLessEqual(spread[0], 0.05)
+        self.assertLessEqual(spread[1], 5)
+
 
 def main():
     outcome = unittest.main(exit=False, argv=sys.argv[:1], testRunner=unittest.TextTestRunner(stream=sys.stdout)).result
