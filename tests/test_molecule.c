@@ -712,7 +712,7 @@ Test(molecule, an_unknown_residue_is_named_with_what_is_known) {
     must_refuse(b,
                 "A:2: unknown residue \"MSE\"; a component dictionary (CIF) that describes it can be one more input, or named by "
                 "`component MSE FILE` in a sheet; built in are ALA ARG ASN ASP CYS GLN GLU GLY HIS ILE LEU LYS MET PHE PRO SER THR "
-                "TRP TYR VAL",
+                "TRP TYR VAL DA DC DG DT A C G U",
                 2);
 }
 

@@ -92,6 +92,12 @@ static int32_t pseudo_atoms(const tml_molecule *molecule, int32_t residue, const
     }
     snprintf(pattern, sizeof pattern, "H%s%%", rest);
     count = collect(molecule, residue, pattern, false, atoms);
+    if (rest[strlen(rest) - 1] == '\'') { /* H5' and H5'' of a sugar */
+        for (int k = 0; k < 2; k++) {
+            snprintf(pattern, sizeof pattern, "H%s%s", rest, k == 0 ? "" : "'");
+            count += collect(molecule, residue, pattern, false, atoms + count);
+        }
+    }
     if (several) return count;
     bool mixed = false;
     for (int32_t k = 1; k < count; k++)
