@@ -40,9 +40,9 @@ Test(cluster, heights_are_mean_distances_worked_out_by_hand) {
     tml_merge merges[3];
     int32_t labels[4], clusters, made;
     cr_assert_eq(tml_cluster_link(distances, 4, NULL, merges, NULL), TML_OK);
-    cr_assert_float_eq(merges[0].height, 1, 1e-6);         /* 0 and 1 */
-    cr_assert_float_eq(merges[1].height, 3.5, 1e-6);       /* with 4: (4 + 3) / 2 */
-    cr_assert_float_eq(merges[2].height, 22.0 / 3, 1e-5);  /* with 9: (9 + 8 + 5) / 3 */
+    cr_assert_float_eq(merges[0].height, 1, 1e-6);        /* 0 and 1 */
+    cr_assert_float_eq(merges[1].height, 3.5, 1e-6);      /* with 4: (4 + 3) / 2 */
+    cr_assert_float_eq(merges[2].height, 22.0 / 3, 1e-5); /* with 9: (9 + 8 + 5) / 3 */
     cr_assert_eq(tml_cluster_merges_below(merges, 4, 0.5), 0);
     cr_assert_eq(tml_cluster_merges_below(merges, 4, 3.5), 2);
     cr_assert_eq(tml_cluster_merges_below(merges, 4, 100), 3);
@@ -55,7 +55,7 @@ Test(cluster, heights_are_mean_distances_worked_out_by_hand) {
     free(distances);
 }
 
-Test(cluster, no_points_one_point_and_equal_points) {
+Test(cluster, one_point_alone_and_points_in_one_place) {
     const double at[5] = {0};
     tml_merge merges[4];
     int32_t labels[5], clusters, made;
@@ -117,7 +117,8 @@ Test(stretch, numbers_insertion_codes_and_chains) {
 }
 
 Test(stretch, what_cannot_be_understood_is_refused) {
-    const char *const texts[] = {"", ",", "A:1-2,", "A:1-2, ", "A:1 ", "A:", ":1", "A:5-", "A:9-5", "A:1-2-3", "A:x", "A:1..3", "A:52C-52A", "1-", "-", "A:1234567890"};
+    const char *const texts[] = {"",      ",",       "A:1-2,", "A:1-2, ", "A:1 ",      "A:", ":1", "A:5-",
+                                 "A:9-5", "A:1-2-3", "A:x",    "A:1..3",  "A:52C-52A", "1-", "-",  "A:1234567890"};
     for (size_t i = 0; i < sizeof texts / sizeof texts[0]; i++) {
         tml_error error = {0};
         cr_assert_eq(tml_stretches_check(texts[i], &error), TML_BAD_INPUT, "'%s'", texts[i]);
@@ -127,12 +128,16 @@ Test(stretch, what_cannot_be_understood_is_refused) {
 
 /* ---- matching ---- */
 
-typedef struct text { char *at; size_t size, used; } text;
+typedef struct text {
+    char *at;
+    size_t size, used;
+} text;
 
 static void add_chain(text *to, const char *chain, const char *const *names, int first, int count) {
     for (int r = 0; r < count; r++)
-        to->used += (size_t)snprintf(to->at + to->used, to->size - to->used, "ATOM      1  CA  %-3s %s%4d    %8.3f%8.3f%8.3f  1.00  0.00           C\n",
-                                     names[r], chain, first + r, 1.0 * r, 2.0 * (chain[0] - 'A'), 0.5 * r * r);
+        to->used += (size_t)snprintf(to->at + to->used, to->size - to->used,
+                                     "ATOM      1  CA  %-3s %s%4d    %8.3f%8.3f%8.3f  1.00  0.00           C\n", names[r],
+                                     chain, first + r, 1.0 * r, 2.0 * (chain[0] - 'A'), 0.5 * r * r);
 }
 
 static void parse(const text *from, tml_coordinates *out) {
@@ -271,9 +276,11 @@ Test(compare, figures_and_ends_of_lists) {
     tml_compare_defaults(&options);
     cr_assert_eq(tml_compare(path, NULL, &options, NULL, &c, NULL), TML_OK);
     tml_comparison_facts(c, &facts);
-    cr_assert(facts.models == 3 && facts.atoms == 8 && facts.residues == 8 && facts.core_residues == 8 && facts.superposed_atoms == 8);
+    cr_assert(facts.models == 3 && facts.atoms == 8 && facts.residues == 8 && facts.core_residues == 8 &&
+              facts.superposed_atoms == 8);
     cr_assert(facts.pair_greatest < 1e-5 && facts.clusters == 1 && facts.reference_models == 0 && isnan(facts.reference_mean));
-    cr_assert(tml_comparison_model(c, 2, &model) && !tml_comparison_model(c, 3, &model) && !tml_comparison_model(c, -1, &model));
+    cr_assert(tml_comparison_model(c, 2, &model) && !tml_comparison_model(c, 3, &model) &&
+              !tml_comparison_model(c, -1, &model));
     cr_assert(isnan(model.to_reference));
     cr_assert(tml_comparison_residue(c, 7, &residue) && !tml_comparison_residue(c, 8, &residue));
     cr_assert(strcmp(residue.number, "8") == 0 && residue.core && isnan(residue.order_phi));

@@ -35,11 +35,12 @@ static const char HELP[] =
 typedef struct settings { const char *json; tml_compare_options compare; bool progress; } settings;
 
 static int run_compare(const tml_command *self, int argc, char **argv);
-const tml_command tml_command_compare = {"compare", "how far models agree with each other and with a reference", HELP, run_compare};
+const tml_command tml_command_compare = {"compare", "how far models agree with each other and with a reference", HELP,
+                                         run_compare};
 
 /* Words that the library checks; false after a message. */
-static bool take_words(const tml_command *self, const char *option, const char *value, tml_status (*check)(const char *, tml_error *),
-                       const char **words) {
+static bool take_words(const tml_command *self, const char *option, const char *value,
+                       tml_status (*check)(const char *, tml_error *), const char **words) {
     tml_error error = {0};
     *words = value;
     if (check(value, &error) == TML_OK) return true;

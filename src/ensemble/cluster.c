@@ -11,7 +11,12 @@
 /* ---- linking ---- */
 
 /* size: members of each cluster that is still there, under one of its members; 0 for those that went into another. */
-typedef struct linker { float *distances; int32_t count; int32_t *size, *chain; int32_t chain_length; } linker;
+typedef struct linker {
+    float *distances;
+    int32_t count;
+    int32_t *size, *chain;
+    int32_t chain_length;
+} linker;
 
 static int32_t nearest_of(const linker *l, int32_t of, int32_t before, float *distance);
 static void join(linker *l, int32_t into, int32_t from);
@@ -91,7 +96,8 @@ static int32_t root_of(int32_t *root, int32_t i) {
 }
 
 static void unite(int32_t *root, const tml_merge *merge) {
-    int32_t low = merge->one < merge->other ? merge->one : merge->other, high = merge->one < merge->other ? merge->other : merge->one;
+    int32_t low = merge->one < merge->other ? merge->one : merge->other,
+            high = merge->one < merge->other ? merge->other : merge->one;
     root[high] = low;
 }
 
@@ -116,7 +122,10 @@ int32_t tml_cluster_merges_below(const tml_merge *merges, int32_t count, double 
 }
 
 /* A cluster's pairs: their summed distance. The heights are means between clusters, so sums follow from them. */
-typedef struct inner { int32_t size; double sum; } inner;
+typedef struct inner {
+    int32_t size;
+    double sum;
+} inner;
 
 static double spread_of(const inner *cluster) {
     double pairs = 0.5 * cluster->size * (cluster->size - 1.0);
@@ -163,7 +172,9 @@ tml_status tml_cluster_least_penalty(const tml_merge *merges, int32_t count, int
 
 /* ---- labels ---- */
 
-typedef struct cluster_size { int32_t root, size; } cluster_size;
+typedef struct cluster_size {
+    int32_t root, size;
+} cluster_size;
 
 static int compare_sizes(const void *left, const void *right) {
     const cluster_size *a = left, *b = right;

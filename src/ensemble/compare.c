@@ -15,8 +15,8 @@
 #include "base/superpose.h"
 #include "input/selection.h"
 
-static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
-                              tml_error *error);
+static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference,
+                              const tml_compare_options *options, tml_error *error);
 static tml_status take_part(tml_comparison *c, tml_error *error);
 static tml_status choose_atoms(tml_comparison *c, tml_error *error);
 static tml_status find_core(tml_comparison *c, tml_error *error);
@@ -54,8 +54,8 @@ void tml_comparison_free(tml_comparison *c) {
     if (c == NULL) return;
     tml_coordinates_clear(&c->models);
     tml_reference_clear(&c->reference);
-    void *const owned[] = {c->sites,  c->group_of,  c->residue_of, c->residues, c->unit,  c->candidate, c->core,
-                           c->fitted, c->core_text, c->atoms_text, c->places,   c->xyz,   c->mean,      c->spread,
+    void *const owned[] = {c->sites,  c->group_of,  c->residue_of, c->residues, c->unit,    c->candidate,      c->core,
+                           c->fitted, c->core_text, c->atoms_text, c->places,   c->xyz,     c->mean,           c->spread,
                            c->order,  c->pairs,     c->to_others,  c->to_mean,  c->cluster, c->representatives};
     for (size_t i = 0; i < sizeof owned / sizeof owned[0]; i++) free(owned[i]);
     free(c);
@@ -73,8 +73,8 @@ static tml_status within_reach(const tml_coordinates *of, const char *what, tml_
     return TML_OK;
 }
 
-static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference, const tml_compare_options *options,
-                              tml_error *error) {
+static tml_status take_inputs(tml_comparison *c, tml_coordinates *models, tml_coordinates *reference,
+                              const tml_compare_options *options, tml_error *error) {
     c->models = *models;
     *models = (tml_coordinates){0};
     if (reference != NULL) {
@@ -225,7 +225,8 @@ static tml_status choose_atoms(tml_comparison *c, tml_error *error) {
 }
 
 static tml_status core_by_spread(tml_comparison *c, tml_error *error) {
-    int32_t *atoms = tml_alloc((size_t)c->atom_count, sizeof *atoms), *groups = tml_alloc((size_t)c->atom_count, sizeof *groups);
+    int32_t *atoms = tml_alloc((size_t)c->atom_count, sizeof *atoms),
+            *groups = tml_alloc((size_t)c->atom_count, sizeof *groups);
     tml_points points = {atoms, groups, 0, c->group_count};
     tml_stack stack = {c->xyz, c->model_count, c->atom_count};
     tml_status status = atoms == NULL || groups == NULL ? tml_no_memory(error) : TML_OK;
@@ -273,8 +274,10 @@ static tml_status core_as_given(tml_comparison *c, tml_error *error) {
 }
 
 static tml_status find_core(tml_comparison *c, tml_error *error) {
-    static const struct { const char *word; tml_core_kind kind; } WORDS[] = {
-        {"spread", TML_CORE_SPREAD}, {"order", TML_CORE_ORDER}, {"all", TML_CORE_ALL}};
+    static const struct {
+        const char *word;
+        tml_core_kind kind;
+    } WORDS[] = {{"spread", TML_CORE_SPREAD}, {"order", TML_CORE_ORDER}, {"all", TML_CORE_ALL}};
     c->kind = TML_CORE_GIVEN;
     for (size_t i = 0; i < sizeof WORDS / sizeof WORDS[0]; i++)
         if (strcmp(c->core_text, WORDS[i].word) == 0) c->kind = WORDS[i].kind;

@@ -7,9 +7,9 @@
 #include "base/memory.h"
 #include "base/superpose.h"
 
-/* A group is well defined where the r.m.s. spread of its points about the mean is at most the last cutoff, Å. The first one is wide,
- * so that a core surrounded by loose ends is not lost at the first look. What is left is where the models agree; with two domains
- * that do not hold together, it is the one that more groups agree on. */
+/* A group is well defined where the r.m.s. spread of its points about the mean is at most the last cutoff, Å. The first one is
+ * wide, so that a core surrounded by loose ends is not lost at the first look. What is left is where the models agree; with two
+ * domains that do not hold together, it is the one that more groups agree on. */
 static const double LAST_CUTOFF = TML_CORE_CUTOFF, FIRST_CUTOFF = 6.0, CUTOFF_STEP = 0.75;
 enum { MOST_TURNS = 40, LEAST_POINTS = 4, PASSES = 2 };
 
@@ -110,7 +110,8 @@ static double take_mean(const tml_stack *stack, double *mean) {
     return sqrt(farthest);
 }
 
-void tml_stack_fit(const tml_stack *stack, const int32_t *chosen, int32_t chosen_count, int passes, double still, double *mean) {
+void tml_stack_fit(const tml_stack *stack, const int32_t *chosen, int32_t chosen_count, int passes, double still,
+                   double *mean) {
     memcpy(mean, stack->xyz[0], 3 * (size_t)stack->atom_count * sizeof *mean);
     for (int pass = 0; pass < passes; pass++) {
         for (int32_t m = 0; m < stack->model_count; m++) {

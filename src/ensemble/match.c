@@ -6,21 +6,27 @@
 /* Contents: making - chains - which are alike - atoms - exchanging */
 
 /* A chain's residues stand together in the list's `residues`. */
-typedef struct chain { const char *code; int32_t first, count; bool counts; } chain;
+typedef struct chain {
+    const char *code;
+    int32_t first, count;
+    bool counts;
+} chain;
 
 typedef struct chain_list {
-    chain *chains; int32_t count;
+    chain *chains;
+    int32_t count;
     int32_t *of_residue, *residues;
 } chain_list;
 
 struct tml_match {
     const tml_coordinates *one, *other;
     chain_list ones, others;
-    tml_index *index;           /* (chain, number) to residues and (ATOMS + residue, name) to atoms, of `other` */
-    int32_t *to, *kept;         /* for each chain of `one` that of `other`, or -1 */
+    tml_index *index;   /* (chain, number) to residues and (ATOMS + residue, name) to atoms, of `other` */
+    int32_t *to, *kept; /* for each chain of `one` that of `other`, or -1 */
     int32_t *atoms;
-    int32_t *members, *group_first, group_count; /* chains of `one` that can be exchanged, group by group; group_count + 1 firsts */
-    int32_t *by_code, *order;   /* for each member what its code tells, and whose partner it has now, from 0 in its group */
+    int32_t *members, *group_first,
+        group_count;          /* chains of `one` that can be exchanged, group by group; group_count + 1 firsts */
+    int32_t *by_code, *order; /* for each member what its code tells, and whose partner it has now, from 0 in its group */
     bool too_many;
 };
 
@@ -156,7 +162,9 @@ static bool index_other(tml_match *match) {
 /* ---- which are alike ---- */
 
 /* Residues of a chain of `one` that a chain of `other` has by number, and those of them with the same name. */
-typedef struct likeness { int32_t common, same_name; } likeness;
+typedef struct likeness {
+    int32_t common, same_name;
+} likeness;
 
 static likeness compare_chains(const tml_match *match, int32_t one, int32_t other) {
     likeness found = {0, 0};
@@ -173,7 +181,8 @@ static likeness compare_chains(const tml_match *match, int32_t one, int32_t othe
 /* Common practice: half of the shorter chain's residues in common, nine in ten of these with the same name. */
 static bool alike(const tml_match *match, int32_t one, int32_t other) {
     likeness of = compare_chains(match, one, other);
-    int32_t ours = match->ones.chains[one].count, others = match->others.chains[other].count, shorter = ours < others ? ours : others;
+    int32_t ours = match->ones.chains[one].count, others = match->others.chains[other].count,
+            shorter = ours < others ? ours : others;
     return of.common > 0 && 2 * (int64_t)of.common >= shorter && 10 * (int64_t)of.same_name >= 9 * (int64_t)of.common;
 }
 
@@ -229,7 +238,8 @@ static void find_groups(tml_match *match, bool *taken) {
 static void match_atoms(tml_match *match) {
     const tml_coordinates *one = match->one;
     for (size_t a = 0; a < one->atom_count; a++) {
-        int32_t r = one->atoms[a].residue, chain_one = match->ones.of_residue[r], to = chain_one < 0 ? -1 : match->to[chain_one];
+        int32_t r = one->atoms[a].residue, chain_one = match->ones.of_residue[r],
+                to = chain_one < 0 ? -1 : match->to[chain_one];
         int32_t residue = to < 0 ? -1 : tml_index_find(match->index, to, one->residues[r].number);
         match->atoms[a] = residue < 0 ? -1 : tml_index_find(match->index, ATOMS + residue, one->atoms[a].name);
     }

@@ -7,7 +7,9 @@
 #include "base/vector.h"
 
 /* Sites of a residue's backbone, or -1. */
-typedef struct backbone { int32_t n, ca, c; } backbone;
+typedef struct backbone {
+    int32_t n, ca, c;
+} backbone;
 
 static double order_of(const tml_coordinates *of, int32_t a, int32_t b, int32_t c, int32_t d);
 static bool linked(const tml_coordinates *of, const backbone *all, size_t residue);

@@ -4,10 +4,12 @@
 
 #include "input/coordinates.h"
 
-typedef struct tml_torsion_order { double phi, psi; } tml_torsion_order; /* 0: no agreement, 1: full; NAN where the torsion is missing */
+typedef struct tml_torsion_order {
+    double phi, psi;
+} tml_torsion_order; /* 0: no agreement, 1: full; NAN where the torsion is missing */
 
-/* Order parameters, the length of the mean of the torsions' unit vectors, for each residue of the coordinates; `out` has room for
- * residue_count. Returns TML_OK or TML_NO_MEMORY. Source: Hyberts, Goldberg, Havel & Wagner, Protein Sci. 1 (1992) 736. */
+/* Order parameters, the length of the mean of the torsions' unit vectors, for each residue of the coordinates; `out` has room
+ * for residue_count. Returns TML_OK or TML_NO_MEMORY. Source: Hyberts, Goldberg, Havel & Wagner, Protein Sci. 1 (1992) 736. */
 tml_status tml_order_parameters(const tml_coordinates *coordinates, tml_torsion_order *out, tml_error *error);
 
 /* Residues with less in phi or psi are not ordered. Common practice since the same paper. */

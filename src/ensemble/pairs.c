@@ -10,14 +10,14 @@
 static tml_status take_room(int32_t count, float **out, tml_error *error) {
     size_t pairs = (size_t)count * ((size_t)count - 1) / 2, bytes;
     if (__builtin_mul_overflow(pairs, 2 * sizeof **out, &bytes) || bytes > tml_memory_available() / 2)
-        return tml_fail(error, TML_TOO_LARGE, "%d models make %zu pairs, which is more than the memory holds; compare fewer", count,
-                        pairs);
+        return tml_fail(error, TML_TOO_LARGE, "%d models make %zu pairs, which is more than the memory holds; compare fewer",
+                        count, pairs);
     *out = tml_alloc(pairs, sizeof **out);
     return *out == NULL ? tml_no_memory(error) : TML_OK;
 }
 
-tml_status tml_pairs_measure(const tml_stack *stack, const int32_t *chosen, int32_t chosen_count, int threads, const tml_watch *watch,
-                             float **out, tml_error *error) {
+tml_status tml_pairs_measure(const tml_stack *stack, const int32_t *chosen, int32_t chosen_count, int threads,
+                             const tml_watch *watch, float **out, tml_error *error) {
     const int32_t count = stack->model_count;
     *out = NULL;
     if (count < 2) return TML_OK;
@@ -32,12 +32,14 @@ tml_status tml_pairs_measure(const tml_stack *stack, const int32_t *chosen, int3
 #pragma omp critical(tml_pairs)
         {
             if (watch != NULL && watch->stop != NULL && *watch->stop != 0) stopped = true;
-            if (!stopped && watch != NULL && watch->progress != NULL) watch->progress(watch->context, "pairs", ++done, count - 1);
+            if (!stopped && watch != NULL && watch->progress != NULL)
+                watch->progress(watch->context, "pairs", ++done, count - 1);
             stop = stopped;
         }
         for (int32_t b = a + 1; !stop && b < count; b++) {
             tml_motion motion;
-            pairs[tml_pair_index(count, a, b)] = (float)tml_superpose(stack->xyz[b], stack->xyz[a], chosen, chosen_count, &motion);
+            pairs[tml_pair_index(count, a, b)] =
+                (float)tml_superpose(stack->xyz[b], stack->xyz[a], chosen, chosen_count, &motion);
         }
     }
     return stopped ? tml_fail(error, TML_INTERRUPTED, "interrupted") : TML_OK;

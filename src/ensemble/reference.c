@@ -1,5 +1,5 @@
-/* reference.c: the comparison's last step: what the reference has in common with the models, which of its own models stands for it,
- * which way its chains fit best, and how far all are from it.
+/* reference.c: the comparison's last step: what the reference has in common with the models, which of its own models stands for
+ * it, which way its chains fit best, and how far all are from it.
  */
 #include <math.h>
 #include <stdlib.h>
@@ -11,10 +11,10 @@
 typedef struct fitting {
     tml_comparison *c;
     tml_reference *reference;
-    int32_t *to;                  /* of each atom of the comparison: the reference's site in all of its models, or -1 */
-    bool *usable;                 /* of each site of the reference: all of its models have it */
+    int32_t *to;                   /* of each atom of the comparison: the reference's site in all of its models, or -1 */
+    bool *usable;                  /* of each site of the reference: all of its models have it */
     int32_t *common, common_count; /* fitted atoms that have one */
-    double *places, **xyz;        /* the reference in the comparison's atoms, model by model; 0 where it lacks the atom */
+    double *places, **xyz;         /* the reference in the comparison's atoms, model by model; 0 where it lacks the atom */
     int threads;
     const tml_watch *watch;
     tml_error *error;
@@ -35,7 +35,8 @@ tml_status tml_compare_reference(tml_comparison *c, int threads, const tml_watch
         list_common(&f);
         if (f.common_count == 0)
             status = tml_fail(error, TML_BAD_INPUT,
-                              "the reference has none of the %d superposed atoms: chains, residue numbers or names differ", c->fitted_count);
+                              "the reference has none of the %d superposed atoms: chains, residue numbers or names differ",
+                              c->fitted_count);
     }
     if (status == TML_OK) status = find_medoid(&f);
     if (status == TML_OK && choose_way(&f)) status = find_medoid(&f);
@@ -61,7 +62,8 @@ static tml_status open_fitting(fitting *f) {
     f->places = tml_alloc(cells, sizeof *f->places);
     f->xyz = tml_alloc((size_t)of->model_count, sizeof *f->xyz);
     f->reference->rmsd = tml_alloc((size_t)f->c->model_count, sizeof *f->reference->rmsd);
-    if (f->to == NULL || f->common == NULL || f->usable == NULL || f->places == NULL || f->xyz == NULL || f->reference->rmsd == NULL)
+    if (f->to == NULL || f->common == NULL || f->usable == NULL || f->places == NULL || f->xyz == NULL ||
+        f->reference->rmsd == NULL)
         return tml_no_memory(f->error);
     for (int32_t m = 0; m < of->model_count; m++) f->xyz[m] = &f->places[3 * atoms * (size_t)m];
     for (size_t a = 0; a < of->atom_count; a++) {
@@ -131,8 +133,8 @@ static double distance_to(const fitting *f, const double *xyz) {
     return tml_superpose(xyz, f->xyz[f->reference->medoid], f->common, f->common_count, &motion);
 }
 
-/* Of all ways to exchange alike chains the one with which the two medoids agree best; whether it is another than the codes tell. A way
- * that loses atoms does not count. */
+/* Of all ways to exchange alike chains the one with which the two medoids agree best; whether it is another than the codes
+ * tell. A way that loses atoms does not count. */
 static bool choose_way(fitting *f) {
     static const double BETTER = 1e-6; /* Å: less is the noise of rounding */
     tml_match *match = f->reference->match;

@@ -68,7 +68,8 @@ static void choose_points(spreader *s) {
     for (int32_t i = 0; i < molecule->atom_count; i++) {
         const tml_atom *atom = &molecule->atoms[i];
         bool backbone = strcmp(atom->name, "N") == 0 || strcmp(atom->name, "CA") == 0 || strcmp(atom->name, "C") == 0;
-        if (molecule->residues[atom->residue].polymer == TML_POLYMER_PROTEIN ? backbone : atom->element != 1) s->points[s->point_count++] = i;
+        if (molecule->residues[atom->residue].polymer == TML_POLYMER_PROTEIN ? backbone : atom->element != 1)
+            s->points[s->point_count++] = i;
     }
     for (int32_t i = 0; s->point_count == 0 && i < molecule->atom_count; i++) s->points[i] = i;
     if (s->point_count == 0) s->point_count = molecule->atom_count;

@@ -70,7 +70,8 @@ tml_status tml_selection_check(const char *atoms, tml_error *error) {
         size_t length = strcspn(word, ",");
         if (length == 0) return tml_fail(error, TML_BAD_INPUT, "'%.64s' has an empty word among its atoms", atoms);
         if (word[0] == '@' && element_word(word, length) < 0)
-            return tml_fail(error, TML_BAD_INPUT, "'%.*s' names no element; @C or @ZN would", length > 32 ? 32 : (int)length, word);
+            return tml_fail(error, TML_BAD_INPUT, "'%.*s' names no element; @C or @ZN would", length > 32 ? 32 : (int)length,
+                            word);
         word += length;
         if (*word == '\0') return TML_OK;
     }

@@ -29,7 +29,8 @@ void tml_say_core(const tml_comparison *c, char *text, size_t size) {
         snprintf(text, size, "all of it: no part was found on which the models agree");
     else
         snprintf(text, size,
-                 "superposed by turns, leaving out what strays (after Gerstein & Altman 1995): spread about the mean of %.1f Å or less%s",
+                 "superposed by turns, leaving out what strays (after Gerstein & Altman 1995): spread about the mean of %.1f Å "
+                 "or less%s",
                  c->met, c->met > TML_CORE_CUTOFF ? ", which is wide: nothing agrees better" : "");
 }
 
@@ -37,8 +38,9 @@ void tml_say_cut(const tml_comparison *c, char *text, size_t size) {
     if (c->cut_given)
         snprintf(text, size, "average linkage, joined up to a mean distance of %g Å, as asked", c->cut_asked);
     else
-        snprintf(text, size, "average linkage, joined up to a mean distance of %.2f Å, where the penalty of Kelley, Gardner & "
-                             "Sutcliffe (1996) is least",
+        snprintf(text, size,
+                 "average linkage, joined up to a mean distance of %.2f Å, where the penalty of Kelley, Gardner & "
+                 "Sutcliffe (1996) is least",
                  c->cut);
 }
 
@@ -101,7 +103,8 @@ static void tell_head(tml_file *file, const tml_comparison *c, const tml_compare
                            c->models.alternatives == 1 ? " is" : "s are");
     tml_file_paragraph(file, WIDTH, "superposed: ", "  ", "%d atom%s (%s%s) of %d residue%s", facts->superposed_atoms,
                        plural(facts->superposed_atoms), c->atoms_text,
-                       c->heavy_instead ? ": there is none, so heavy atoms" : "", facts->core_residues, plural(facts->core_residues));
+                       c->heavy_instead ? ": there is none, so heavy atoms" : "", facts->core_residues,
+                       plural(facts->core_residues));
     tml_file_paragraph(file, WIDTH, "core: ", "  ", "%s", stretches);
     tml_file_paragraph(file, WIDTH, "  ", "  ", "(%s)", core);
 }
@@ -123,20 +126,22 @@ static void tell_figures(tml_file *file, const tml_comparison *c, const tml_comp
     tml_file_print(file, "\nr.m.s. distances, Å                         mean    least  greatest\n");
     if (several) {
         range_of(c->to_mean, c->model_count, &least, &greatest);
-        tml_file_print(file, "two models from each other              %8.3f %8.3f  %8.3f\n", facts->pair_mean, facts->pair_least,
-                       facts->pair_greatest);
-        tml_file_print(file, "models from their mean structure        %8.3f %8.3f  %8.3f\n", facts->mean_to_mean, least, greatest);
+        tml_file_print(file, "two models from each other              %8.3f %8.3f  %8.3f\n", facts->pair_mean,
+                       facts->pair_least, facts->pair_greatest);
+        tml_file_print(file, "models from their mean structure        %8.3f %8.3f  %8.3f\n", facts->mean_to_mean, least,
+                       greatest);
     }
     if (c->reference.match != NULL) {
-        tml_file_print(file, "models from the reference               %8.3f %8.3f  %8.3f\n", c->reference.mean, c->reference.least,
-                       c->reference.greatest);
+        tml_file_print(file, "models from the reference               %8.3f %8.3f  %8.3f\n", c->reference.mean,
+                       c->reference.least, c->reference.greatest);
         if (several) {
             tml_file_print(file, "mean structure from the reference       %8.3f\n", facts->mean_to_reference);
             tml_file_print(file, "medoid from the reference               %8.3f\n", facts->medoid_to_reference);
         }
     }
     if (several)
-        tml_file_print(file, "\nmedoid: model %d, on average %.3f Å from the others\n", facts->medoid + 1, c->to_others[c->medoid]);
+        tml_file_print(file, "\nmedoid: model %d, on average %.3f Å from the others\n", facts->medoid + 1,
+                       c->to_others[c->medoid]);
 }
 
 static void tell_chains(tml_file *file, const tml_comparison *c) {
@@ -147,15 +152,19 @@ static void tell_chains(tml_file *file, const tml_comparison *c) {
         if (other == NULL)
             tml_file_paragraph(file, WIDTH, "  ", "    ", "chain %s of the models has no partner in the reference", one);
         else if (strcmp(one, other) != 0)
-            tml_file_paragraph(file, WIDTH, "  ", "    ", "chain %s of the models is compared with chain %s of the reference", one, other);
+            tml_file_paragraph(file, WIDTH, "  ", "    ", "chain %s of the models is compared with chain %s of the reference",
+                               one, other);
     }
     if (c->reference.exchanged)
-        tml_file_paragraph(file, WIDTH, "  ", "    ",
-                           "alike chains were exchanged, because they fit the reference better than in the order of their codes");
+        tml_file_paragraph(
+            file, WIDTH, "  ", "    ",
+            "alike chains were exchanged, because they fit the reference better than in the order of their codes");
     if (tml_match_too_many(match))
-        tml_file_paragraph(file, WIDTH, "  ", "    ", "there are too many chains to try which alike ones fit best; their codes decide");
+        tml_file_paragraph(file, WIDTH, "  ", "    ",
+                           "there are too many chains to try which alike ones fit best; their codes decide");
     if (renamed > 0)
-        tml_file_paragraph(file, WIDTH, "  ", "    ", "%d residue%s another name in the reference", renamed, renamed == 1 ? " has" : "s have");
+        tml_file_paragraph(file, WIDTH, "  ", "    ", "%d residue%s another name in the reference", renamed,
+                           renamed == 1 ? " has" : "s have");
 }
 
 static void tell_reference(tml_file *file, const tml_comparison *c) {
@@ -168,8 +177,8 @@ static void tell_reference(tml_file *file, const tml_comparison *c) {
                            reference->medoid + 1, models);
     else
         tml_file_paragraph(file, WIDTH, "reference: ", "  ", "one model");
-    tml_file_paragraph(file, WIDTH, "  ", "    ", "%d of the %d superposed atoms are in it, %d of all %d", reference->common, c->fitted_count,
-                       reference->common_all, c->atom_count);
+    tml_file_paragraph(file, WIDTH, "  ", "    ", "%d of the %d superposed atoms are in it, %d of all %d", reference->common,
+                       c->fitted_count, reference->common_all, c->atom_count);
     tell_chains(file, c);
 }
 
@@ -190,7 +199,8 @@ static void tell_clusters(tml_file *file, const tml_comparison *c) {
             if (used + 32 < sizeof members) used += (size_t)snprintf(members + used, sizeof members - used, " %d", m + 1);
             if (used + 32 >= sizeof members) snprintf(members + used, sizeof members - used, " …");
         }
-        snprintf(first, sizeof first, "%6d  %d model%s, model %d in the middle:", k + 1, size, plural(size), c->representatives[k] + 1);
+        snprintf(first, sizeof first, "%6d  %d model%s, model %d in the middle:", k + 1, size, plural(size),
+                 c->representatives[k] + 1);
         tml_file_paragraph(file, WIDTH, first, "        ", "%s", members);
     }
 }

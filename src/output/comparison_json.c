@@ -15,7 +15,8 @@ static json_t *residue_name(const tml_compared_residue *residue) {
 }
 
 static json_t *range(double mean, double least, double greatest) {
-    return json_pack("{s:o, s:o, s:o}", "mean", tml_json_rounded(mean), "min", tml_json_rounded(least), "max", tml_json_rounded(greatest));
+    return json_pack("{s:o, s:o, s:o}", "mean", tml_json_rounded(mean), "min", tml_json_rounded(least), "max",
+                     tml_json_rounded(greatest));
 }
 
 static json_t *core_json(const tml_comparison *c) {
@@ -46,9 +47,9 @@ static json_t *models_json(const tml_comparison *c) {
     json_t *list = json_array();
     tml_compared_model model;
     for (int32_t m = 0; tml_comparison_model(c, m, &model); m++)
-        tml_json_append(&list, json_pack("{s:i, s:o, s:o, s:o, s:i}", "model", m + 1, "to_others", tml_json_rounded(model.to_others),
-                                         "to_mean", tml_json_rounded(model.to_mean), "to_reference",
-                                         tml_json_rounded(model.to_reference), "cluster", model.cluster + 1));
+        tml_json_append(&list, json_pack("{s:i, s:o, s:o, s:o, s:i}", "model", m + 1, "to_others",
+                                         tml_json_rounded(model.to_others), "to_mean", tml_json_rounded(model.to_mean),
+                                         "to_reference", tml_json_rounded(model.to_reference), "cluster", model.cluster + 1));
     return list;
 }
 
@@ -56,26 +57,27 @@ static json_t *clusters_json(const tml_comparison *c) {
     char rule[LINE];
     json_t *list = json_array();
     tml_say_cut(c, rule, sizeof rule);
-    for (int32_t k = 0; k < c->cluster_count; k++) tml_json_append(&list, json_pack("{s:i, s:i, s:[]}", "cluster", k + 1, "medoid",
-                                                                                    c->representatives[k] + 1, "models"));
+    for (int32_t k = 0; k < c->cluster_count; k++)
+        tml_json_append(&list, json_pack("{s:i, s:i, s:[]}", "cluster", k + 1, "medoid", c->representatives[k] + 1, "models"));
     for (int32_t m = 0; list != NULL && m < c->model_count; m++) {
         json_t *members = json_object_get(json_array_get(list, (size_t)c->cluster[m]), "models");
         if (json_array_append_new(members, json_integer(m + 1)) == 0) continue;
         json_decref(list);
         list = NULL;
     }
-    return json_pack("{s:o, s:o, s:o}", "rule", tml_json_text(rule), "cut", tml_json_rounded(c->cut_given ? c->cut_asked : c->cut),
-                     "list", list);
+    return json_pack("{s:o, s:o, s:o}", "rule", tml_json_text(rule), "cut",
+                     tml_json_rounded(c->cut_given ? c->cut_asked : c->cut), "list", list);
 }
 
 static json_t *residues_json(const tml_comparison *c) {
     json_t *list = json_array();
     tml_compared_residue residue;
     for (int32_t r = 0; tml_comparison_residue(c, r, &residue); r++)
-        tml_json_append(&list, json_pack("{s:o, s:o, s:o, s:o, s:o, s:o, s:b}", "residue", residue_name(&residue), "name",
-                                         tml_json_text(residue.name), "spread", tml_json_rounded(residue.spread), "heavy_spread",
-                                         tml_json_rounded(residue.heavy_spread), "order_phi", tml_json_rounded(residue.order_phi),
-                                         "order_psi", tml_json_rounded(residue.order_psi), "core", residue.core));
+        tml_json_append(&list,
+                        json_pack("{s:o, s:o, s:o, s:o, s:o, s:o, s:b}", "residue", residue_name(&residue), "name",
+                                  tml_json_text(residue.name), "spread", tml_json_rounded(residue.spread), "heavy_spread",
+                                  tml_json_rounded(residue.heavy_spread), "order_phi", tml_json_rounded(residue.order_phi),
+                                  "order_psi", tml_json_rounded(residue.order_psi), "core", residue.core));
     return list;
 }
 
@@ -86,8 +88,8 @@ static json_t *atoms_json(const tml_comparison *c) {
         char text[NAME];
         const tml_site_residue *residue = &c->models.residues[c->residues[atom.residue]];
         snprintf(text, sizeof text, "%s:%s:%s", residue->chain, residue->number, atom.name);
-        tml_json_append(&list, json_pack("{s:o, s:o, s:b}", "atom", tml_json_text(text), "spread", tml_json_rounded(atom.spread),
-                                         "superposed", atom.superposed));
+        tml_json_append(&list, json_pack("{s:o, s:o, s:b}", "atom", tml_json_text(text), "spread",
+                                         tml_json_rounded(atom.spread), "superposed", atom.superposed));
     }
     return list;
 }
@@ -99,12 +101,12 @@ static json_t *reference_json(const tml_comparison *c) {
     json_t *chains = json_array();
     for (int32_t i = 0; tml_match_chain(reference->match, i, &one, &other); i++)
         tml_json_append(&chains, json_pack("{s:o, s:o}", "models", tml_json_text(one), "reference", tml_json_text(other)));
-    return json_pack("{s:i, s:i, s:i, s:i, s:o, s:b, s:b, s:i, s:o, s:o, s:o}", "models", reference->coordinates.model_count, "medoid",
-                     reference->medoid + 1, "superposed_atoms", reference->common, "atoms", reference->common_all, "chains", chains,
-                     "chains_exchanged", reference->exchanged, "exchanges_tried", !tml_match_too_many(reference->match),
-                     "residues_of_other_name", tml_match_renamed(reference->match), "to_models",
-                     range(reference->mean, reference->least, reference->greatest), "to_mean", tml_json_rounded(reference->from_mean),
-                     "to_medoid", tml_json_rounded(reference->from_medoid));
+    return json_pack("{s:i, s:i, s:i, s:i, s:o, s:b, s:b, s:i, s:o, s:o, s:o}", "models", reference->coordinates.model_count,
+                     "medoid", reference->medoid + 1, "superposed_atoms", reference->common, "atoms", reference->common_all,
+                     "chains", chains, "chains_exchanged", reference->exchanged, "exchanges_tried",
+                     !tml_match_too_many(reference->match), "residues_of_other_name", tml_match_renamed(reference->match),
+                     "to_models", range(reference->mean, reference->least, reference->greatest), "to_mean",
+                     tml_json_rounded(reference->from_mean), "to_medoid", tml_json_rounded(reference->from_medoid));
 }
 
 tml_status tml_write_comparison_json(const tml_comparison *c, const char *path, tml_error *error) {
@@ -114,10 +116,11 @@ tml_status tml_write_comparison_json(const tml_comparison *c, const char *path, 
                                    c->heavy_instead ? "heavy" : "as asked", "atoms", c->fitted_count);
     json_t *pairs = range(c->pair_mean, c->pair_least, c->pair_greatest);
     tml_json_put(&pairs, "matrix", matrix(c));
-    json_t *root = json_pack("{s:s, s:s, s:i, s:i, s:i, s:i, s:o, s:o, s:o, s:o, s:i, s:o, s:o, s:o, s:o, s:o}", "program", "trammel",
-                             "version", TML_VERSION, "models", facts.models, "atoms", facts.atoms, "residues", facts.residues,
-                             "atoms_left_out", c->missing, "superposed", superposed, "core", core_json(c), "pairs", pairs, "to_mean",
-                             tml_json_rounded(c->mean_to_mean), "medoid", facts.medoid + 1, "clusters", clusters_json(c), "per_model",
-                             models_json(c), "per_residue", residues_json(c), "per_atom", atoms_json(c), "reference", reference_json(c));
+    json_t *root =
+        json_pack("{s:s, s:s, s:i, s:i, s:i, s:i, s:o, s:o, s:o, s:o, s:i, s:o, s:o, s:o, s:o, s:o}", "program", "trammel",
+                  "version", TML_VERSION, "models", facts.models, "atoms", facts.atoms, "residues", facts.residues,
+                  "atoms_left_out", c->missing, "superposed", superposed, "core", core_json(c), "pairs", pairs, "to_mean",
+                  tml_json_rounded(c->mean_to_mean), "medoid", facts.medoid + 1, "clusters", clusters_json(c), "per_model",
+                  models_json(c), "per_residue", residues_json(c), "per_atom", atoms_json(c), "reference", reference_json(c));
     return tml_json_write(root, path, error);
 }

@@ -1,6 +1,12 @@
 """`trammel compare`: statuses, odd inputs, options, where things are written."""
+import gzip
 import json
 import math
+import os
+import resource
+import signal
+import subprocess
+import unittest
 
 import harness
 
@@ -104,7 +110,6 @@ class Compare(harness.CommandTest):
         self.bad(self.write('m.cif', head + rows), says='has a coordinate of 1e+200')
 
     def test_standard_input_and_gzip(self):
-        import gzip
         text = pdb(4).encode()
         path = self.write('m.pdb', text)
         plain = self.compare(path)
@@ -129,9 +134,28 @@ class Compare(harness.CommandTest):
         self.assertEqual((told['models'], told['atoms'], told['superposed']['chosen']), (50, 1, 'heavy'))
         self.assertLess(told['pairs']['max'], 1e-9)
 
+    def test_the_core_as_reported_can_be_asked_for(self):
+        def loose(model, _chain, number, place):
+            return [p + 9 * math.sin(2.9 * model + axis) * (number in (1, 2, 5)) for axis, p in enumerate(place)]
+        path = self.write('m.pdb', pdb(8, 'AB', 9, shift=loose))
+        out, _ = self.trammel('compare', path)
+        core = next(line for line in out.splitlines() if line.startswith('core: '))[6:]
+        self.assertEqual(core, 'A:3-4, A:6-9, B:3-4, B:6-9')
+        asked, found = self.compare(path, '--core', core), self.compare(path)
+        self.assertEqual((asked['per_atom'], asked['pairs']), (found['per_atom'], found['pairs']))
+
+    @unittest.skipIf(os.environ.get('TRAMMEL_SANITIZED'), 'sanitizers take all addresses for themselves')
+    def test_more_pairs_than_memory_holds(self):
+        rows = ''.join(f'HETATM    1  X   UNL A   1    {m % 1000:8.3f}   0.000   0.000\nENDMDL\n' for m in range(20000))
+        path = self.write('m.pdb', rows)
+        limit = 500 << 20
+        done = subprocess.run([harness.PROGRAM, 'compare', path], capture_output=True, timeout=120, check=False,
+                              preexec_fn=lambda: resource.setrlimit(resource.RLIMIT_AS, (limit, limit)),
+                              env={**os.environ, 'OPENBLAS_NUM_THREADS': '1'})
+        self.assertEqual((done.returncode, done.stdout), (3, b''))
+        self.assertRegex(done.stderr.decode(), 'memory')
+
     def test_many_models_are_interruptible(self):
-        import signal
-        import subprocess
         rows = ''.join(f'HETATM    1  X   UNL A   1    {m % 1000:8.3f}   0.000   0.000\nENDMDL\n' for m in range(8000))
         process = self.start([harness.PROGRAM, 'compare', self.write('m.pdb', rows), '--progress'])
         self.assertIn(b'pairs', process.stderr.readline())

@@ -25,7 +25,8 @@ static void compare(const char *models, const char *reference, const char *core,
     const tml_compare_options options = {.core = core, .atoms = atoms, .cut = core[0] == 'a' ? 2 : -1, .threads = 1};
     if (nowhere == NULL) nowhere = fopen("/dev/null", "w");
     if (parsed(models, &one) && (reference == NULL || parsed(reference, &other))) {
-        tml_status status = tml_compare_coordinates(&one, reference == NULL ? NULL : &other, &options, NULL, &comparison, &error);
+        tml_status status =
+            tml_compare_coordinates(&one, reference == NULL ? NULL : &other, &options, NULL, &comparison, &error);
         if (status != TML_OK && status != TML_BAD_INPUT) abort();
         if (status != TML_OK && (comparison != NULL || error.message[0] == '\0')) abort();
         if (status == TML_OK && tml_print_comparison(nowhere, comparison, &error) != TML_OK) abort();
