@@ -24,7 +24,7 @@ static bool make_charges(tml_component_making *making);
 static tml_status end_rows(tml_component_making *making);
 
 tml_status tml_component_make(tml_component *component, tml_strings *pool, tml_error *error) {
-    tml_component_making making = {.component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1};
+    tml_component_making making = {.component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1, .p = -1, .root = -1};
     making.dropped = tml_alloc(component->atom_count, sizeof *making.dropped);
     making.flat = tml_alloc(component->atom_count, sizeof *making.flat);
     making.doubted = tml_alloc(component->atom_count, sizeof *making.doubted);
@@ -361,6 +361,11 @@ static void walk_on(const tml_component_making *making, walk *w, bool leaving) {
 /* A tree over each connected part; -1 for its root. Leaving atoms are reached last, so that nothing that stays hangs on them. */
 static void span(const tml_component_making *making, int32_t *parent, int32_t *queue) {
     walk w = {parent, queue, 0, 0};
+    if (making->root >= 0) {
+        parent[making->root] = -1;
+        queue[w.tail++] = making->root;
+        walk_on(making, &w, false);
+    }
     for (int pass = 0; pass < 2; pass++) {
         w.head = 0;
         if (pass == 1) walk_on(making, &w, true);
@@ -494,6 +499,14 @@ static void doubt_angles(tml_component_making *making) {
     }
 }
 
+/* Have all residues of the family an angle of these names? */
+static bool has_row(const tml_template *common, const char *a, const char *b, const char *c) {
+    for (const tml_angle_row *row = common->angles; row->a != NULL; row++)
+        if (strcmp(row->b, b) == 0 && ((strcmp(row->a, a) == 0 && strcmp(row->c, c) == 0) || (strcmp(row->a, c) == 0 && strcmp(row->c, a) == 0)))
+            return true;
+    return false;
+}
+
 static bool bridges_metals(const tml_component_making *making, int32_t atom) {
     const tml_topology *topology = &making->topology;
     int metals = 0;
@@ -509,7 +522,7 @@ static bool make_angles(tml_component_making *making) {
     const tml_component_atom *atoms = making->component->atoms;
     doubt_angles(making);
     for (int32_t b = 0; b < topology->atom_count; b++) {
-        if (making->dropped[b] || (b == making->c && *making->component->family.tail != '\0')) continue;
+        if (making->dropped[b] || b == making->p || (b == making->c && *making->component->family.tail != '\0')) continue;
         int32_t degree = tml_topology_degree(topology, b);
         bool open = topology->shapes[b] == TML_SHAPE_OTHER || bridges_metals(making, b);
         for (int32_t i = topology->first[b]; i < topology->first[b + 1]; i++)
@@ -518,6 +531,8 @@ static bool make_angles(tml_component_making *making) {
                 if (making->dropped[a] || making->dropped[c]) continue;
                 bool hydrogen = topology->elements[a] == 1 || topology->elements[c] == 1;
                 if (hydrogen && degree > 2 && !open) continue;
+                bool told = !isnan(listed_angle(making, a, b, c)) || !isnan(measured_angle(making, a, b, c));
+                if (!told && !open && has_row(making->component->family.common, atoms[a].name, atoms[b].name, atoms[c].name)) continue;
                 double degrees = open ? measured_angle(making, a, b, c) : angle_of(making, a, b, c);
                 if (!isnan(degrees) && !tml_component_add_angle(making->component, atoms[a].name, atoms[b].name, atoms[c].name, degrees))
                     return false;

@@ -1,11 +1,13 @@
+#include <stdio.h>
 #include <string.h>
 
 #include "molecule/component_making.h"
 
-/* Contents: kinds - amino acids - the nitrogen's end - the carbon's end - caps - rows of the chain */
+/* Contents: kinds - amino acids - the nitrogen's end - the carbon's end - caps - nucleotides - rows of the chain */
 
 static tml_status join_protein(tml_component_making *making);
 static void join_cap(tml_component_making *making);
+static tml_status join_nucleic(tml_component_making *making);
 
 /* ---- kinds ---- */
 
@@ -50,7 +52,8 @@ tml_status tml_component_join_chain(tml_component_making *making) {
         making->c = c;
         return join_protein(making);
     }
-    if (kind == TML_KIND_SINGLE) join_cap(making);
+    if (kind == TML_KIND_NUCLEIC) return join_nucleic(making);
+    join_cap(making);
     return TML_OK;
 }
 
@@ -202,11 +205,87 @@ static void join_cap(tml_component_making *making) {
                                      .last_ends = component->last_ends};
 }
 
+/* ---- nucleotides ---- */
+
+static int32_t third_oxygen(const tml_component_making *making, int32_t phosphorus);
+static tml_status free_phosphate(tml_component_making *making, int32_t phosphorus);
+
+static void drop_hydrogens(tml_component_making *making, int32_t atom) {
+    const tml_topology *topology = &making->topology;
+    for (int32_t k = topology->first[atom]; k < topology->first[atom + 1]; k++)
+        if (topology->elements[topology->neighbours[k]] == 1) making->dropped[topology->neighbours[k]] = true;
+}
+
+static tml_status join_nucleic(tml_component_making *making) {
+    tml_component *component = making->component;
+    int32_t p = atom_named(making, "P"), o5 = atom_named(making, "O5'"), c5 = atom_named(making, "C5'"), c3 = atom_named(making, "C3'"),
+            o3 = atom_named(making, "O3'");
+    bool begins = bonded(making, p, o5) && bonded(making, o5, c5), ends = bonded(making, c3, o3);
+    component->first_ends[0] = component->last_ends[0] = (tml_end_row){"", "", ""};
+    if (!bonded(making, o5, c5))
+        return tml_component_note(making, "its type is %.40s, but it has no O5' on C5'; it stands by itself, and `link` can bond it", component->type);
+    for (int32_t k = making->topology.first[ends ? o3 : 0]; ends && k < making->topology.first[o3 + 1]; k++)
+        ends = making->topology.neighbours[k] == c3 || making->topology.elements[making->topology.neighbours[k]] == 1;
+    making->root = o5;
+    component->family = (tml_family){.polymer = TML_POLYMER_NUCLEIC,
+                                     .tail = ends ? "O3'" : "",
+                                     .head = begins ? "P" : "",
+                                     .common = tml_nucleic_family.common,
+                                     .first_ends = component->first_ends,
+                                     .last_ends = component->last_ends};
+    if (ends) {
+        drop_hydrogens(making, o3);
+        component->last_ends[0] = tml_nucleic_family.last_ends[0];
+    }
+    return begins ? free_phosphate(making, p) : TML_OK;
+}
+
+/* The oxygen whose place the residue before takes: one that is marked as leaving, or by its name, or the last. */
+static int32_t third_oxygen(const tml_component_making *making, int32_t phosphorus) {
+    const tml_topology *topology = &making->topology;
+    int32_t found = -1, count = 0;
+    for (int32_t k = topology->first[phosphorus]; k < topology->first[phosphorus + 1]; k++) {
+        int32_t next = topology->neighbours[k], heavy = 0;
+        for (int32_t i = topology->first[next]; i < topology->first[next + 1]; i++) heavy += topology->elements[topology->neighbours[i]] != 1;
+        if (heavy != 1 || topology->elements[next] != 8) continue;
+        const tml_component_atom *atom = &making->component->atoms[next];
+        count++;
+        if (atom->leaving || strcmp(atom->name, "OP3") == 0 || strcmp(atom->name, "O3P") == 0) return next;
+        found = next;
+    }
+    return count == 3 ? found : -1;
+}
+
+/* The phosphate as it is in a strand, and gone where the strand begins. */
+static tml_status free_phosphate(tml_component_making *making, int32_t phosphorus) {
+    const tml_topology *topology = &making->topology;
+    tml_component *component = making->component;
+    int32_t third = third_oxygen(making, phosphorus);
+    char gone[256];
+    int used = snprintf(gone, sizeof gone, "-P"), usual = 0;
+    for (int32_t k = topology->first[phosphorus]; k < topology->first[phosphorus + 1]; k++) {
+        int32_t next = topology->neighbours[k];
+        const char *name = component->atoms[next].name;
+        bool bridge = strcmp(name, "O5'") == 0;
+        usual += bridge || strcmp(name, "OP1") == 0 || strcmp(name, "OP2") == 0;
+        if (next == third) making->dropped[next] = true;
+        if (topology->elements[next] == 8 && !bridge) drop_hydrogens(making, next);
+        if (next != third && !bridge && used < (int)sizeof gone - 40) used += snprintf(gone + used, sizeof gone - (size_t)used, ",-%.32s", name);
+    }
+    snprintf(gone + used, sizeof gone - (size_t)used, ",+HO5'");
+    const char *kept = tml_strings_add(making->pool, gone);
+    if (kept == NULL) return tml_no_memory(making->error);
+    component->first_ends[0] = (tml_end_row){"", kept, kept};
+    making->p = usual == 3 ? phosphorus : -1;
+    return TML_OK;
+}
+
 /* ---- rows of the chain ---- */
 
 static bool add_nitrogen_rows(tml_component_making *making);
 static bool add_carbon_rows(tml_component_making *making);
 static bool add_cap_rows(tml_component_making *making);
+static bool add_own(tml_component_making *making, const char *residue, const char *name);
 
 tml_status tml_component_add_ends(tml_component_making *making) {
     const tml_family *family = &making->component->family;
@@ -214,6 +293,8 @@ tml_status tml_component_add_ends(tml_component_making *making) {
     if (making->ca >= 0 && *family->head != '\0') room = add_nitrogen_rows(making);
     if (room && making->ca >= 0 && *family->tail != '\0') room = add_carbon_rows(making);
     if (room && making->ca < 0 && family->polymer == TML_POLYMER_PROTEIN) room = add_cap_rows(making);
+    if (room && family->polymer == TML_POLYMER_NUCLEIC && *family->head != '\0') room = add_own(making, "DA", "HO5'") && add_own(making, "DA", "OP3");
+    if (room && family->polymer == TML_POLYMER_NUCLEIC && *family->tail != '\0') room = add_own(making, "DA", "HO3'");
     return room ? TML_OK : tml_no_memory(making->error);
 }
 

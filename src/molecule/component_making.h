@@ -22,6 +22,8 @@ typedef struct tml_component_making {
     bool *flat;          /* of each atom: it lies in one plane with its neighbours */
     bool *doubted;       /* of each atom: the dictionary's angles about it cannot all be met */
     int32_t n, ca, c, o; /* the backbone of an amino acid; -1 for none */
+    int32_t p;           /* the phosphorus of a nucleotide whose arms are the usual ones; -1 for none */
+    int32_t root;        /* the atom that the others hang on; -1 for the first */
 } tml_component_making;
 
 /* component_chain.c: the family, and which of the atoms give way to the chain's own; before the rows are made */

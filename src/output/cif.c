@@ -188,13 +188,18 @@ static bool has_others(const writer *w, const strand *at) {
     return false;
 }
 
+/* A nucleotide of DNA: by its dictionary, or by its built-in name. */
+static bool is_dna(const tml_residue *residue) {
+    return residue->type != NULL ? strstr(residue->type, "DNA") != NULL : residue->name[0] == 'D';
+}
+
 /* The dictionary's own type of component, where it is one that the archive has; otherwise by the kind of chain. */
 static const char *component_type(const tml_residue *residue) {
     static const char *const WORDS[] = {"linking", "LINKING", "polymer", "POLYMER", "terminus", "TERMINUS", "saccharide", "SACCHARIDE"};
     for (size_t i = 0; residue->type != NULL && i < sizeof WORDS / sizeof *WORDS; i++)
         if (strstr(residue->type, WORDS[i]) != NULL) return residue->type;
     if (residue->polymer == TML_POLYMER_NONE) return "non-polymer";
-    if (residue->polymer == TML_POLYMER_NUCLEIC) return residue->name[0] == 'D' ? "DNA linking" : "RNA linking";
+    if (residue->polymer == TML_POLYMER_NUCLEIC) return is_dna(residue) ? "DNA linking" : "RNA linking";
     return !residue->standard || strcmp(residue->name, "GLY") == 0 ? "peptide linking" : "L-peptide linking";
 }
 
@@ -219,7 +224,7 @@ static bool write_components(const writer *w) {
 static const char *polymer_type(const writer *w, const strand *at) {
     const tml_residue *first = &w->molecule->residues[w->members[at->first]];
     if (first->polymer != TML_POLYMER_NUCLEIC) return "polypeptide(L)";
-    return first->name[0] == 'D' ? "polydeoxyribonucleotide" : "polyribonucleotide";
+    return is_dna(first) ? "polydeoxyribonucleotide" : "polyribonucleotide";
 }
 
 static void write_entities(const writer *w) {

@@ -1,7 +1,7 @@
 """Component dictionaries against the built-in residues and for themselves, with entries of the open monomer dictionary as input.
 
-The twenty amino acids: each entry is written as a CIF of its own (into a folder of the moment), and a chain ALA-X-ALA is built from it
-and from the built-in tables. Atoms must be the same, bonds agree within 0.02 Å, angles within 3 degrees, hands and planes be equal;
+The twenty amino acids and eight nucleotides: each entry is written as a CIF of its own (into a folder of the moment), and a chain ALA-X-ALA
+(or the like) is built from it and from the built-in tables. Atoms must be the same, bonds agree within 0.02 Å, angles within 3 degrees, hands and planes be equal;
 the dictionary's X-H lengths are those of electron clouds, ours nuclear. Four angles differ on purpose: see test_residues.py for
 CB-SG-HG; the others are in LOOSE, with the reason.
 
@@ -28,6 +28,7 @@ WORDS = [int(a) for a in sys.argv[1:] if a.isdigit()]
 COUNT = WORDS[0] if WORDS else 600 if os.environ.get('SOAK') else 60
 SEED = WORDS[1] if len(WORDS) > 1 else 1
 NAMES = 'ALA ARG ASN ASP CYS GLN GLU GLY HIS ILE LEU LYS MET PHE PRO SER THR TRP TYR VAL'.split()
+DNA, RNA = 'DA DC DG DT'.split(), 'A C G U'.split()
 LOOSE = {('CYS', 'SG')}  # C-S-H: 109 in the dictionary, 96.5 in methanethiol
 
 
@@ -46,11 +47,18 @@ def loop(category, columns, values):
     return '\n'.join(lines + [' '.join(gemmi.cif.quote(v) for v in row) for row in values]) + '\n' if values else ''
 
 
+def neighbour(name):
+    """What stands before and after a residue: another one of its kind."""
+    kinds = ((DNA, ('DT', 'DA')), (RNA, ('U', 'A')))
+    first, second = next((pair for names, pair in kinds if name in names), ('ALA', 'GLY'))
+    return second if name == first else first
+
+
 def place(folder, name):
     """Coordinates of the residue in a chain, from a model that the program builds with its built-in tables."""
     sheet, models = os.path.join(folder, 'place.sheet'), os.path.join(folder, 'place.cif')
     with open(sheet, 'w', encoding='utf8') as file:
-        file.write(f'sheet 1\nsequence A 1 GLY {name} GLY\n')
+        file.write(f'sheet 1\nsequence A 1 {neighbour(name)} {name} {neighbour(name)}\n')
     subprocess.run([PROGRAM, 'build', sheet, '-n', '1', '-o', models], check=True, capture_output=True)
     return {a.name: a.pos.tolist() for a in gemmi.read_structure(models)[0][0][1]}
 
@@ -58,8 +66,9 @@ def place(folder, name):
 def archive_text(name, xyz=None):
     """The entry as the archive would write it: with target values, or with coordinates in their place."""
     block = entry(name)
-    text = f"data_{name}\n_chem_comp.id {name}\n_chem_comp.type 'L-PEPTIDE LINKING'\n"
-    atoms = rows(block, 'atom', 'atom_id', 'type_symbol')
+    kind = 'DNA LINKING' if name in DNA else 'RNA LINKING' if name in RNA else 'L-PEPTIDE LINKING'
+    text = f"data_{name}\n_chem_comp.id {name}\n_chem_comp.type '{kind}'\n"
+    atoms = [a for a in rows(block, 'atom', 'atom_id', 'type_symbol') if not xyz or a[0] in xyz]
     if xyz:
         columns = ['pdbx_model_Cartn_x_ideal', 'pdbx_model_Cartn_y_ideal', 'pdbx_model_Cartn_z_ideal']
         text += loop('atom', ['comp_id', 'atom_id', 'type_symbol', *columns], [[name, *a, *(f'{v:.3f}' for v in xyz[a[0]])] for a in atoms])
@@ -68,6 +77,7 @@ def archive_text(name, xyz=None):
     orders = {'sin': 'SING', 'dou': 'DOUB', 'tri': 'TRIP', 'aro': 'AROM', 'del': 'DELO'}
     bonds = rows(block, 'bond', 'atom_id_1', 'atom_id_2', 'type', 'value_dist')
     if xyz:
+        bonds = [b for b in bonds if b[0] in xyz and b[1] in xyz]
         return text + loop('bond', ['comp_id', 'atom_id_1', 'atom_id_2', 'value_order'], [[name, a, b, orders[o[:3]]] for a, b, o, _ in bonds])
     text += loop('bond', ['comp_id', 'atom_id_1', 'atom_id_2', 'value_order', 'value_dist'], [[name, a, b, orders[o[:3]], d] for a, b, o, d in bonds])
     for category, columns in (('angle', ['atom_id_1', 'atom_id_2', 'atom_id_3', 'value_angle']),
@@ -103,16 +113,16 @@ def hand(arms, sign, wanted):
 
 
 @unittest.skipUnless(os.path.isdir(MONOMERS), 'no monomer dictionary on this machine')
-class AminoAcids(unittest.TestCase):
+class BuiltIn(unittest.TestCase):
     @classmethod
     def setUpClass(cls):
         cls.pairs = {}
         with tempfile.TemporaryDirectory() as folder:
-            for name in NAMES:
+            for name in NAMES + DNA + RNA:
                 sheet = os.path.join(folder, 'chain.sheet')
                 with open(sheet, 'w', encoding='utf8') as file:
-                    file.write(f'sheet 1\nsequence A 1 ALA {name} ALA\n' if name != 'ALA' else 'sheet 1\nsequence A 1 GLY ALA GLY\n')
-                beside = 'GLY' if name == 'ALA' else 'ALA'
+                    file.write(f'sheet 1\nsequence A 1 {neighbour(name)} {name} {neighbour(name)}\n')
+                beside = neighbour(name)
                 for targets in (True, False):
                     path = os.path.join(folder, f'{name}.cif')
                     with open(path, 'w', encoding='utf8') as file:
@@ -120,7 +130,7 @@ class AminoAcids(unittest.TestCase):
                     cls.pairs[name, targets] = Residue(beside, name, beside), Residue('inputs', sheet, path)
 
     def each(self, targets):
-        for name in NAMES:
+        for name in NAMES + DNA + RNA:
             with self.subTest(name):
                 yield name, *self.pairs[name, targets]
 
