@@ -236,3 +236,26 @@ Test(component, a_name_cannot_stand_for_two) {
     cr_assert_eq(status, TML_BAD_INPUT);
     cr_assert_not_null(strstr(error.message, "component QX is described already, at "));
 }
+
+/* Listed angles of a four-ring, each as in an open chain: 438 degrees in all. They give way to a regular ring. */
+#define FOUR                                                                                                                   \
+    "data_QFR\nloop_\n_chem_comp_atom.comp_id\n_chem_comp_atom.atom_id\n_chem_comp_atom.type_symbol\nQFR C1 C\nQFR C2 C\nQFR C3 C\nQFR C4 C\n" \
+    BONDS "QFR C1 C2 SING\nQFR C2 C3 SING\nQFR C3 C4 SING\nQFR C4 C1 SING\n" ANGLES                                              \
+    "QFR C1 C2 C3 109.5\nQFR C2 C3 C4 109.5\nQFR C3 C4 C1 109.5\nQFR C4 C1 C2 109.5\n"
+
+Test(component, angles_that_no_ring_can_have_are_not_asked_for) {
+    tml_problem *problem = read_both("sheet 1\nsequence L 1 QFR\n", FOUR);
+    double sum = 0;
+    for (int32_t i = 0; i < problem->molecule.angle_count; i++) sum += problem->molecule.angles[i].angle * 180 / TML_PI;
+    cr_assert_eq(problem->molecule.angle_count, 4);
+    cr_assert_lt(sum, 360);
+    tml_problem_free(problem);
+}
+
+Test(component, names_filled_up_with_blanks_and_numbers_that_are_none_are_read) {
+    tml_problem *problem = read_both("sheet 1\nsequence L 1 QX\n",
+                                     "data_QX\nloop_\n_chem_comp_atom.comp_id\n_chem_comp_atom.atom_id\n_chem_comp_atom.type_symbol\n_chem_comp_atom.x\n"
+                                     "_chem_comp_atom.y\n_chem_comp_atom.z\nQX \"O' \" O NaN NaN NaN\nQX C1 C ******** 0 0\n" BONDS "QX \"O'\" C1 SING\n");
+    cr_assert_float_eq(bond_length(problem, atom_at(problem, "L", "1", "O'"), atom_at(problem, "L", "1", "C1")), 1.426, 0.01);
+    tml_problem_free(problem);
+}

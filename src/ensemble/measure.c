@@ -6,11 +6,11 @@
  *   contacts     pairs that overlap, over a grid of cells
  *   backbone     share of usual phi and psi
  */
-#include <lapacke.h>
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
+#include "base/best_plane.h"
 #include "base/memory.h"
 #include "base/superpose.h"
 #include "base/vector.h"
@@ -90,24 +90,10 @@ static void measure_geometry(const tml_molecule *molecule, const double *xyz, tm
     }
 }
 
-/* R.m.s. distance of some atoms from their best plane: the least eigenvalue of their covariances. */
-static double off_plane(const int32_t *atoms, int32_t count, const double *xyz) {
-    double mean[3] = {0}, m[9] = {0}, values[3];
-    for (int32_t k = 0; k < count; k++)
-        for (int l = 0; l < 3; l++) mean[l] += xyz[3 * atoms[k] + l] / count;
-    for (int32_t k = 0; k < count; k++) {
-        double d[3];
-        tml_sub(d, &xyz[3 * atoms[k]], mean);
-        for (int i = 0; i < 3; i++)
-            for (int j = 0; j < 3; j++) m[3 * i + j] += d[i] * d[j] / count;
-    }
-    return LAPACKE_dsyev(LAPACK_COL_MAJOR, 'N', 'U', 3, m, 3, values) == 0 ? sqrt(fmax(values[0], 0)) : INFINITY;
-}
-
 static void measure_planes(const tml_molecule *molecule, const double *xyz, tml_measures *out) {
     for (int32_t i = 0; i < molecule->plane_count; i++)
         if (molecule->planes[i].count > 3)
-            out->plane_max = fmax(out->plane_max, off_plane(&molecule->plane_atoms[molecule->planes[i].first], molecule->planes[i].count, xyz));
+            out->plane_max = fmax(out->plane_max, tml_off_plane(&molecule->plane_atoms[molecule->planes[i].first], molecule->planes[i].count, xyz));
 }
 
 static void measure_peptides(const tml_molecule *molecule, const double *xyz, tml_measures *out) {

@@ -158,12 +158,21 @@ static tml_status columns_of(const reader *in, const tml_star_loop *loop, const 
     return TML_OK;
 }
 
+/* Some dictionaries fill quoted names up with blanks. */
+static tml_star_value trimmed(const tml_star_value *value) {
+    tml_star_value name = *value;
+    for (; name.quote != 0 && name.length > 0 && *name.text == ' '; name.length--) name.text++;
+    while (name.quote != 0 && name.length > 0 && name.text[name.length - 1] == ' ') name.length--;
+    return name;
+}
+
 /* A name of a residue or atom: what messages, tables and model files can hold. */
-static tml_status name_of(const reader *in, const tml_star_value *value, const char *what, const char **out) {
+static tml_status name_of(const reader *in, const tml_star_value *given, const char *what, const char **out) {
+    const tml_star_value name = trimmed(given), *value = &name;
     bool good = !tml_star_is_null(value) && value->length > 0 && value->length <= LONGEST_NAME;
     for (int32_t i = 0; good && i < value->length; i++) good = value->text[i] > ' ' && value->text[i] <= '~';
     if (good && (strchr("+-=", value->text[0]) != NULL)) good = false; /* signs that the tables use */
-    return good ? pooled(in, value, out) : expected(in, value, what);
+    return good ? pooled(in, value, out) : expected(in, given, what);
 }
 
 static tml_component *component_named(reader *in, const char *name) {
@@ -187,7 +196,8 @@ static tml_status component_of(reader *in, const tml_star_value *value, tml_comp
     return *out == NULL ? expected(in, value, "a component whose atoms are listed") : TML_OK;
 }
 
-static tml_status atom_of(const reader *in, const tml_component *component, const tml_star_value *value, int32_t *out) {
+static tml_status atom_of(const reader *in, const tml_component *component, const tml_star_value *given, int32_t *out) {
+    const tml_star_value known = trimmed(given), *value = &known;
     for (size_t i = 0; i < component->atom_count; i++)
         if ((size_t)value->length == strlen(component->atoms[i].name) &&
             memcmp(component->atoms[i].name, value->text, (size_t)value->length) == 0) {
@@ -201,7 +211,7 @@ static tml_status atom_of(const reader *in, const tml_component *component, cons
     for (size_t i = 0; i < component->atom_count; i++) tml_nearest_offer(&nearest, component->atoms[i].name);
     tml_nearest_append(&nearest, near, sizeof near);
     snprintf(text, sizeof text, "an atom of %.32s (nearest: %.160s)", component->name, near);
-    return expected(in, value, text);
+    return expected(in, given, text);
 }
 
 /* A number between two limits, or null: NAN. */
@@ -231,6 +241,13 @@ static tml_status add_component(reader *in, const char *name, tml_place place, t
     return TML_OK;
 }
 
+/* How programs write a number that they do not have, or that does not fit. */
+static bool is_no_number(const tml_star_value *value) {
+    int32_t stars = 0;
+    while (stars < value->length && value->text[stars] == '*') stars++;
+    return tml_star_is(value, "nan") || (stars > 0 && stars == value->length);
+}
+
 static tml_status place_atom(const reader *in, const tml_star_loop *loop, size_t row, const int *columns, tml_component_atom *atom) {
     static const double FAR = 10000; /* Å */
     double *const sets[3] = {atom->xyz, atom->model_xyz, atom->model_xyz};
@@ -238,7 +255,10 @@ static tml_status place_atom(const reader *in, const tml_star_loop *loop, size_t
     for (int set = 0; set < 3; set++) {
         double xyz[3];
         for (int k = 0; k < 3; k++) {
-            tml_status status = number_of(in, tml_star_at(in->star, loop, row, columns[IDEAL + 3 * set + k]), -FAR, FAR, "a coordinate in Å", &xyz[k]);
+            const tml_star_value *value = tml_star_at(in->star, loop, row, columns[IDEAL + 3 * set + k]);
+            xyz[k] = NAN;
+            if (is_no_number(value)) continue;
+            tml_status status = number_of(in, value, -FAR, FAR, "a coordinate in Å", &xyz[k]);
             if (status != TML_OK) return status;
         }
         if (!isnan(xyz[0] + xyz[1] + xyz[2])) memcpy(sets[set], xyz, sizeof xyz);

@@ -6,6 +6,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "base/best_plane.h"
 #include "base/vector.h"
 #include "molecule/component_making.h"
 #include "molecule/elements.h"
@@ -205,23 +206,56 @@ static bool add_plane(tml_component_making *making, const int32_t *atoms, size_t
 }
 
 static bool add_plane_about(tml_component_making *making, int32_t atom);
+static bool join(const tml_topology *topology, int32_t atom, bool with_neighbours, int32_t *set, size_t *count, size_t most);
 
-/* Planes as the dictionary lists them; one too large for the tables goes atom by atom. */
+enum { PLANE_MOST = 64 };
+
+/* Do the coordinates contradict a plane? */
+static bool is_bent(const tml_component_making *making, const int32_t *atoms, size_t count) {
+    static const double OFF = 0.1; /* Å, r.m.s. */
+    int32_t index[PLANE_MOST], placed = 0;
+    double xyz[3 * PLANE_MOST];
+    for (size_t i = 0; i < count; i++) {
+        if (making->dropped[atoms[i]] || !all_placed(making, &atoms[i], 1)) continue;
+        memcpy(&xyz[3 * placed], place_of(making, atoms[i]), 3 * sizeof *xyz);
+        index[placed] = placed;
+        placed++;
+    }
+    return placed > 3 && tml_off_plane(index, placed, xyz) > OFF;
+}
+
+static bool is_trigonal(const tml_component_making *making, int32_t atom);
+static bool ring_is_flat(const tml_component_making *making, int32_t ring);
+
+/* What is flat within a plane that does not hold as a whole: its rings with what hangs on them, and its atoms with their neighbours. */
+static bool add_parts(tml_component_making *making, const tml_component_plane_atom *plane, size_t count) {
+    const tml_topology *topology = &making->topology;
+    for (int32_t r = 0; r < topology->ring_count; r++) {
+        int32_t set[PLANE_MOST];
+        size_t held = 0, size = 0;
+        for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++) {
+            for (size_t i = 0; i < count; i++) held += plane[i].atom == topology->ring_atoms[k];
+            join(topology, topology->ring_atoms[k], true, set, &size, PLANE_MOST);
+        }
+        if (held == (size_t)tml_topology_ring_size(topology, r) && ring_is_flat(making, r) && !add_plane(making, set, size)) return false;
+    }
+    for (size_t i = 0; i < count; i++)
+        if (is_trigonal(making, plane[i].atom) && !add_plane_about(making, plane[i].atom)) return false;
+    return true;
+}
+
+/* Planes as the dictionary lists them; one that is too large for the tables, or bent in the coordinates, goes by its parts. */
 static tml_status given_planes(tml_component_making *making) {
-    enum { MOST = 64 };
     const tml_component *component = making->component;
     for (size_t first = 0, next; first < component->plane_atom_count; first = next) {
-        int32_t atoms[MOST];
+        int32_t atoms[PLANE_MOST];
         size_t count = 0;
         for (next = first; next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
              next++)
-            if (count < MOST) atoms[count++] = component->plane_atoms[next].atom;
-        bool good = true;
-        if (next - first <= MOST)
-            good = add_plane(making, atoms, count);
-        else
-            for (size_t i = first; i < next && good; i++) good = add_plane_about(making, component->plane_atoms[i].atom);
-        if (!good) return tml_no_memory(making->error);
+            if (count < PLANE_MOST) atoms[count++] = component->plane_atoms[next].atom;
+        bool whole = next - first <= PLANE_MOST && !is_bent(making, atoms, count);
+        if (!(whole ? add_plane(making, atoms, count) : add_parts(making, &component->plane_atoms[first], next - first)))
+            return tml_no_memory(making->error);
     }
     return TML_OK;
 }
@@ -402,15 +436,18 @@ static tml_status make_atoms(tml_component_making *making) {
 
 /* To hydrogen: nuclear; others as the dictionary has it, as its coordinates have it, or as the elements have it. */
 static double length_of(const tml_component_making *making, int32_t index) {
+    static const double METAL_OFF = 0.03;
     const tml_component_bond *bond = &making->component->bonds[index];
     const tml_topology *topology = &making->topology;
     bool hydrogen = topology->elements[bond->a] == 1 || topology->elements[bond->b] == 1;
     int32_t heavy = topology->elements[bond->a] == 1 ? bond->b : bond->a;
     double usual = tml_topology_length(topology, index);
     if (hydrogen && !isnan(tml_hydrogen_length(topology->elements[heavy], false))) return usual;
-    if (!isnan(bond->length)) return bond->length;
     const int32_t ends[2] = {bond->a, bond->b};
-    return all_placed(making, ends, 2) ? tml_distance(place_of(making, bond->a), place_of(making, bond->b)) : usual;
+    double measured = all_placed(making, ends, 2) ? tml_distance(place_of(making, bond->a), place_of(making, bond->b)) : NAN;
+    bool metal = tml_element_is_metal(topology->elements[bond->a]) || tml_element_is_metal(topology->elements[bond->b]);
+    if (metal && fabs(measured - bond->length) > METAL_OFF) return measured; /* its angles are the coordinates', too */
+    return !isnan(bond->length) ? bond->length : !isnan(measured) ? measured : usual;
 }
 
 static bool is_parent(const tml_component *component, const char *child, const char *parent) {
@@ -480,6 +517,20 @@ static double ring_excess(const tml_component_making *making, int32_t ring, bool
     return sum - (size - 2) * 180;
 }
 
+/* The listed angles between all arms of an atom, less the most that so many arms can come to: three arms a full turn, four those of a
+ * tetrahedron. NAN where some are not listed. */
+static double arms_excess(const tml_component_making *making, int32_t atom) {
+    static const double MOST[5] = {NAN, NAN, NAN, 360, 6 * 109.4712};
+    const tml_topology *topology = &making->topology;
+    int32_t degree = tml_topology_degree(topology, atom);
+    double sum = 0;
+    if (degree > 4) return NAN;
+    for (int32_t i = topology->first[atom]; i < topology->first[atom + 1]; i++)
+        for (int32_t j = i + 1; j < topology->first[atom + 1]; j++)
+            sum += listed_angle(making, topology->neighbours[i], atom, topology->neighbours[j]);
+    return sum - MOST[degree];
+}
+
 /* Listed angles are often of separate fragments, and those of a ring or of one atom then cannot all be met. A ring whose angles come to
  * more than a flat one has, or to less where it is flat, and an atom one of whose angles is far from the coordinates', are doubted. */
 static void doubt_angles(tml_component_making *making) {
@@ -491,6 +542,8 @@ static void doubt_angles(tml_component_making *making) {
         if (isnan(excess) || !(excess > RING_OFF || (flat && excess < -FLAT_RING_OFF))) continue;
         for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++) making->doubted[topology->ring_atoms[k]] = true;
     }
+    for (int32_t i = 0; i < topology->atom_count; i++)
+        if (arms_excess(making, i) > RING_OFF) making->doubted[i] = true;
     for (size_t i = 0; i < making->component->angle_count; i++) {
         const tml_component_angle *angle = &making->component->angles[i];
         if (topology->elements[angle->a] == 1 || topology->elements[angle->c] == 1) continue;
