@@ -517,7 +517,7 @@ static double ring_excess(const tml_component_making *making, int32_t ring, bool
     return sum - (size - 2) * 180;
 }
 
-/* The listed angles between all arms of an atom, less the most that so many arms can come to: three arms a full turn, four those of a
+/* The listed angles between all arms of an atom, if none is a hydrogen (whose angles follow from the others), less the most that so many arms can come to: three arms a full turn, four those of a
  * tetrahedron. NAN where some are not listed. */
 static double arms_excess(const tml_component_making *making, int32_t atom) {
     static const double MOST[5] = {NAN, NAN, NAN, 360, 6 * 109.4712};
@@ -525,9 +525,11 @@ static double arms_excess(const tml_component_making *making, int32_t atom) {
     int32_t degree = tml_topology_degree(topology, atom);
     double sum = 0;
     if (degree > 4) return NAN;
-    for (int32_t i = topology->first[atom]; i < topology->first[atom + 1]; i++)
+    for (int32_t i = topology->first[atom]; i < topology->first[atom + 1]; i++) {
+        if (topology->elements[topology->neighbours[i]] == 1) return NAN;
         for (int32_t j = i + 1; j < topology->first[atom + 1]; j++)
             sum += listed_angle(making, topology->neighbours[i], atom, topology->neighbours[j]);
+    }
     return sum - MOST[degree];
 }
 
