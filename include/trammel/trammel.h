@@ -187,6 +187,7 @@ typedef struct tml_measures {
     int32_t dihedral_over_5, dihedral_over_10;
     double dihedral_max;
     int32_t wrong_handed;   /* centres with `fixed` handedness that came out the wrong way */
+    int32_t swapped_names;  /* prochiral atoms whose names are exchanged (HB2 and HB3, CG1 and CG2 of valine) */
     int32_t cis_undeclared; /* cis peptides (|omega| < 30°) that are neither declared nor before proline */
     int32_t omega_off;      /* peptides beyond 30° of planar */
     double bond_rms, bond_max, angle_rms;
@@ -219,6 +220,27 @@ const tml_measures *tml_ensemble_measures(const tml_ensemble *ensemble, int32_t 
  * Returns TML_OK, TML_BAD_INPUT (another suffix), TML_TOO_LARGE (the format cannot hold the molecule), TML_NO_MEMORY or TML_IO.
  */
 tml_status tml_ensemble_write(const tml_ensemble *ensemble, const tml_contradictions *found, const char *path, tml_error *error);
+
+/* ---- assessing models ---- */
+
+typedef struct tml_assessment tml_assessment; /* models that anybody made, measured against a problem */
+
+/* Measure the models of a file (PDB or mmCIF; "-" for standard input, gzip understood) against a problem. Atoms are matched by chain,
+ * residue number and name; what models lack takes no part.
+ *
+ * problem  read with sum_stereo_pairs to count as the archive of such models does; it must outlive the assessment
+ * out      filled with TML_OK only; the caller frees it with tml_assessment_free
+ * Returns TML_OK, TML_BAD_INPUT (also: no atom in common), TML_TOO_LARGE, TML_NO_MEMORY or TML_IO.
+ */
+tml_status tml_assess(const tml_problem *problem, const char *path, tml_assessment **out, tml_error *error);
+void tml_assessment_free(tml_assessment *assessment);
+
+/* Restraints and models are counted from 0. Violations are 0 or positive, in Å and degrees; NAN where the model lacks the atoms, or
+ * where an index is out of range. Measures are NULL past the end. */
+int32_t tml_assessment_models(const tml_assessment *assessment);
+double tml_assessment_distance(const tml_assessment *assessment, int32_t restraint, int32_t model);
+double tml_assessment_dihedral(const tml_assessment *assessment, int32_t restraint, int32_t model);
+const tml_measures *tml_assessment_measures(const tml_assessment *assessment, int32_t model);
 
 /* ---- comparing models ---- */
 

@@ -4,7 +4,7 @@
 
 #include "cli/command.h"
 
-static const tml_command *const COMMANDS[] = {&tml_command_check, &tml_command_build, &tml_command_bounds,
+static const tml_command *const COMMANDS[] = {&tml_command_check, &tml_command_build, &tml_command_assess, &tml_command_bounds,
                                               &tml_command_derive, &tml_command_compare};
 enum { COMMAND_COUNT = sizeof COMMANDS / sizeof COMMANDS[0] };
 

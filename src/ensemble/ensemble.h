@@ -46,7 +46,7 @@ struct tml_ensemble {
     bool *well_defined;   /* per residue */
 };
 
-/* Measure one model against a problem; xyz holds atom_count*3 Å; swapped as in restraint.h. Returns TML_OK or TML_NO_MEMORY. */
+/* Measure one model against a problem; xyz holds atom_count*3 Å, NAN for atoms that are missing: what they take part in is left out; swapped as in restraint.h. Returns TML_OK or TML_NO_MEMORY. */
 tml_status tml_measure(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out, tml_error *error);
 
 /* Whether a trial passes: no distance over by 0.5 Å, no dihedral by 10°, no wrong hand, no undeclared cis peptide, no bond off

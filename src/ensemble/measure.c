@@ -39,7 +39,7 @@ tml_status tml_measure(const tml_problem *problem, const bool *swapped, const do
 
 bool tml_measures_pass(const tml_measures *measures) {
     static const double BOND_OFF = 0.1;
-    return measures->distance_over_05 == 0 && measures->dihedral_over_10 == 0 && measures->wrong_handed == 0 &&
+    return measures->distance_over_05 == 0 && measures->dihedral_over_10 == 0 && measures->wrong_handed == 0 && measures->swapped_names == 0 &&
            measures->cis_undeclared == 0 && measures->bond_max <= BOND_OFF;
 }
 
@@ -48,15 +48,18 @@ bool tml_measures_pass(const tml_measures *measures) {
 static void measure_restraints(const tml_problem *problem, const bool *swapped, const double *xyz, tml_measures *out) {
     const tml_restraints *restraints = &problem->restraints;
     double squares = 0;
+    int32_t count = 0;
     for (int32_t i = 0; i < restraints->distance_count; i++) {
         double off = fabs(tml_distance_violation(restraints, &restraints->distances[i], swapped, xyz));
+        if (isnan(off)) continue;
+        count++;
         squares += off * off;
         out->distance_max = fmax(out->distance_max, off);
         out->distance_over_01 += off > 0.1;
         out->distance_over_02 += off > 0.2;
         out->distance_over_05 += off > 0.5;
     }
-    if (restraints->distance_count > 0) out->distance_rms = sqrt(squares / restraints->distance_count);
+    if (count > 0) out->distance_rms = sqrt(squares / count);
     for (int32_t i = 0; i < restraints->dihedral_count; i++) {
         double off = DEGREES * tml_dihedral_violation(restraints, &restraints->dihedrals[i], xyz);
         out->dihedral_max = fmax(out->dihedral_max, off);
@@ -69,30 +72,46 @@ static void measure_restraints(const tml_problem *problem, const bool *swapped, 
 
 static void measure_geometry(const tml_molecule *molecule, const double *xyz, tml_measures *out) {
     double squares = 0;
+    int32_t count = 0;
     for (int32_t i = 0; i < molecule->bond_count; i++) {
         const tml_bond *bond = &molecule->bonds[i];
         double off = tml_distance(&xyz[3 * bond->a], &xyz[3 * bond->b]) - bond->length;
+        if (isnan(off)) continue;
+        count++;
         squares += off * off;
         out->bond_max = fmax(out->bond_max, fabs(off));
     }
-    if (molecule->bond_count > 0) out->bond_rms = sqrt(squares / molecule->bond_count);
+    if (count > 0) out->bond_rms = sqrt(squares / count);
     squares = 0;
+    count = 0;
     for (int32_t i = 0; i < molecule->angle_count; i++) {
         const tml_angle *angle = &molecule->angles[i];
         double off = DEGREES * (tml_angle_of(&xyz[3 * angle->a], &xyz[3 * angle->b], &xyz[3 * angle->c]) - angle->angle);
+        if (isnan(off)) continue;
+        count++;
         squares += off * off;
     }
-    if (molecule->angle_count > 0) out->angle_rms = sqrt(squares / molecule->angle_count);
+    if (count > 0) out->angle_rms = sqrt(squares / count);
     for (int32_t i = 0; i < molecule->centre_count; i++) {
         const tml_centre *centre = &molecule->centres[i];
         double volume = tml_volume_of(&xyz[3 * centre->centre], &xyz[3 * centre->arms[0]], &xyz[3 * centre->arms[1]], &xyz[3 * centre->arms[2]]);
-        out->wrong_handed += centre->fixed && volume * centre->sign <= 0;
+        if (!centre->fixed || !(volume * centre->sign <= 0)) continue;
+        if (tml_molecule_is_prochiral(molecule, centre))
+            out->swapped_names++;
+        else
+            out->wrong_handed++;
     }
+}
+
+static bool are_there(const int32_t *atoms, int32_t count, const double *xyz) {
+    for (int32_t k = 0; k < count; k++)
+        if (!isfinite(xyz[3 * atoms[k]])) return false;
+    return true;
 }
 
 static void measure_planes(const tml_molecule *molecule, const double *xyz, tml_measures *out) {
     for (int32_t i = 0; i < molecule->plane_count; i++)
-        if (molecule->planes[i].count > 3)
+        if (molecule->planes[i].count > 3 && are_there(&molecule->plane_atoms[molecule->planes[i].first], molecule->planes[i].count, xyz))
             out->plane_max = fmax(out->plane_max, tml_off_plane(&molecule->plane_atoms[molecule->planes[i].first], molecule->planes[i].count, xyz));
 }
 
@@ -118,9 +137,10 @@ static bool measure_alike(const tml_molecule *molecule, const double *xyz, tml_m
         size_t count = (size_t)set->count;
         double *copies = tml_alloc((size_t)set->copies * count * 3, sizeof *copies);
         tml_motion motion;
+        if (!are_there(atoms, set->copies * set->count, xyz)) out->alike_rms = NAN;
         if (copies == NULL) return false;
-        for (size_t i = 0; i < (size_t)set->copies * count; i++) memcpy(&copies[3 * i], &xyz[3 * atoms[i]], 3 * sizeof *copies);
-        for (int32_t c = 0; c < set->copies; c++)
+        for (size_t i = 0; !isnan(out->alike_rms) && i < (size_t)set->copies * count; i++) memcpy(&copies[3 * i], &xyz[3 * atoms[i]], 3 * sizeof *copies);
+        for (int32_t c = 0; !isnan(out->alike_rms) && c < set->copies; c++)
             for (int32_t d = 0; d < c; d++)
                 out->alike_rms = fmax(out->alike_rms, tml_superpose(&copies[3 * count * (size_t)c], &copies[3 * count * (size_t)d], NULL, set->count, &motion));
         free(copies);
@@ -213,16 +233,17 @@ static int32_t overlaps_of(const tml_molecule *molecule, const double *xyz, int3
 }
 
 static bool measure_overlaps(const tml_molecule *molecule, const double *xyz, tml_measures *out) {
-    size_t count = (size_t)molecule->atom_count;
-    by_cell *cells = tml_alloc(count, sizeof *cells);
-    int32_t *mark = tml_alloc(count, sizeof *mark);
+    size_t all = (size_t)molecule->atom_count, count = 0; /* atoms that are there */
+    by_cell *cells = tml_alloc(all, sizeof *cells);
+    int32_t *mark = tml_alloc(all, sizeof *mark);
     bool room = cells != NULL && mark != NULL;
-    for (size_t i = 0; room && i < count; i++) {
-        cells[i] = (by_cell){key_of(&xyz[3 * i], 0, 0, 0), (int32_t)i};
+    for (size_t i = 0; room && i < all; i++) {
+        if (isfinite(xyz[3 * i])) cells[count++] = (by_cell){key_of(&xyz[3 * i], 0, 0, 0), (int32_t)i};
         mark[i] = -1;
     }
     if (room) qsort(cells, count, sizeof *cells, compare_cells);
     for (int32_t i = 0; room && i < molecule->atom_count; i++) {
+        if (!isfinite(xyz[3 * i])) continue;
         mark_near(molecule, i, mark);
         out->overlaps += overlaps_of(molecule, xyz, i, cells, count, mark);
     }
@@ -252,9 +273,11 @@ static bool measure_backbone(const tml_molecule *molecule, const double *xyz, tm
         const double *n = &xyz[3 * before->n], *ca = &xyz[3 * after->ca1], *c = &xyz[3 * after->c];
         int hand = tml_molecule_hand(molecule, before->n, after->ca1, after->c); /* D: the mirrored regions */
         if (hand == 0) continue;
+        double phi = hand * DEGREES * tml_dihedral_of(&xyz[3 * before->c], n, ca, c);
+        double psi = hand * DEGREES * tml_dihedral_of(n, ca, c, &xyz[3 * after->n]);
+        if (isnan(phi) || isnan(psi)) continue;
         seen++;
-        usual += is_usual(hand * DEGREES * tml_dihedral_of(&xyz[3 * before->c], n, ca, c),
-                          hand * DEGREES * tml_dihedral_of(n, ca, c, &xyz[3 * after->n]));
+        usual += is_usual(phi, psi);
     }
     free(into);
     out->backbone_usual = seen > 0 ? (double)usual / seen : NAN;

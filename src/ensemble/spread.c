@@ -62,6 +62,17 @@ static void spreader_close(spreader *s) {
     free(s->xyz);
 }
 
+/* Atoms that some model lacks cannot be superposed. */
+static void leave_out_missing(spreader *s) {
+    int32_t kept = 0;
+    for (int32_t k = 0; k < s->point_count; k++) {
+        bool there = true;
+        for (int32_t m = 0; m < s->ensemble->model_count; m++) there = there && isfinite(s->ensemble->models[m].xyz[3 * s->points[k]]);
+        if (there) s->points[kept++] = s->points[k];
+    }
+    s->point_count = kept;
+}
+
 /* N, CA and C of amino acids; elsewhere all heavy atoms and beads; hydrogens alone if there is nothing else. */
 static void choose_points(spreader *s) {
     const tml_molecule *molecule = s->molecule;
@@ -73,6 +84,7 @@ static void choose_points(spreader *s) {
     }
     for (int32_t i = 0; s->point_count == 0 && i < molecule->atom_count; i++) s->points[i] = i;
     if (s->point_count == 0) s->point_count = molecule->atom_count;
+    leave_out_missing(s);
     for (int32_t k = 0; k < s->point_count; k++) s->residues[k] = molecule->atoms[s->points[k]].residue;
 }
 

@@ -102,17 +102,6 @@ static int32_t partner(const tml_molecule *molecule, int32_t atom, int32_t other
     return tml_molecule_find_atom(molecule, other_residue, molecule->atoms[atom].name);
 }
 
-static bool same_surroundings(const tml_molecule *molecule, int32_t a, int32_t b) {
-    int32_t elements[UINT8_MAX + 1] = {0};
-    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
-        elements[molecule->atoms[molecule->neighbours[k]].element]++;
-    for (int32_t k = molecule->neighbour_first[b]; k < molecule->neighbour_first[b + 1]; k++)
-        elements[molecule->atoms[molecule->neighbours[k]].element]--;
-    for (int e = 0; e <= UINT8_MAX; e++)
-        if (elements[e] != 0) return false;
-    return true;
-}
-
 /* Whether a half turn about a bond brings another atom to this one's place: both hang on one planar atom and look the same. */
 static bool turns_over(const tml_making *making, int32_t atom) {
     const tml_molecule *molecule = making->molecule;
@@ -122,7 +111,7 @@ static bool turns_over(const tml_making *making, int32_t atom) {
         for (int32_t l = molecule->neighbour_first[middle]; l < molecule->neighbour_first[middle + 1]; l++) {
             int32_t other = molecule->neighbours[l];
             if (other != atom && molecule->atoms[other].element == molecule->atoms[atom].element &&
-                molecule->atoms[other].residue == molecule->atoms[atom].residue && same_surroundings(molecule, atom, other))
+                molecule->atoms[other].residue == molecule->atoms[atom].residue && tml_molecule_same_neighbours(molecule, atom, other))
                 return true;
         }
     }

@@ -122,3 +122,30 @@ void tml_molecule_address(const tml_molecule *molecule, int32_t atom, char *text
     else
         snprintf(text, size, "%s:%s:%s", in->chain, in->number, molecule->atoms[atom].name);
 }
+
+bool tml_molecule_same_neighbours(const tml_molecule *molecule, int32_t a, int32_t b) {
+    int32_t elements[UINT8_MAX + 1] = {0};
+    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
+        elements[molecule->atoms[molecule->neighbours[k]].element]++;
+    for (int32_t k = molecule->neighbour_first[b]; k < molecule->neighbour_first[b + 1]; k++)
+        elements[molecule->atoms[molecule->neighbours[k]].element]--;
+    for (int e = 0; e <= UINT8_MAX; e++)
+        if (elements[e] != 0) return false;
+    return true;
+}
+
+/* Like arms end alike two bonds away, too: methyl groups do, the carbonyl and the side chain at an alpha carbon do not. */
+bool tml_molecule_is_prochiral(const tml_molecule *molecule, const tml_centre *centre) {
+    for (int i = 0; i < 4; i++)
+        for (int j = i + 1; j < 4; j++) {
+            int32_t a = centre->arms[i], b = centre->arms[j];
+            if (a < 0 || b < 0 || molecule->atoms[a].element != molecule->atoms[b].element) continue;
+            bool held = false, ends = true; /* all but the centre are hydrogens, or there are none */
+            for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++) {
+                held = held || molecule->neighbours[k] == centre->centre;
+                ends = ends && (molecule->neighbours[k] == centre->centre || molecule->atoms[molecule->neighbours[k]].element == 1);
+            }
+            if (held && ends && tml_molecule_same_neighbours(molecule, a, b)) return true;
+        }
+    return false;
+}

@@ -131,6 +131,13 @@ int32_t tml_molecule_find_atom(const tml_molecule *molecule, int32_t residue, co
 /* The hand of an amino acid by its backbone: 1 for L, -1 for D, 0 where nothing fixes one (glycine, two side chains). */
 int tml_molecule_hand(const tml_molecule *molecule, int32_t n, int32_t ca, int32_t c);
 
+/* Whether two atoms are bonded to the same elements, each as often. */
+bool tml_molecule_same_neighbours(const tml_molecule *molecule, int32_t a, int32_t b);
+
+/* Whether a centre's handedness only tells two like arms apart (the hydrogens of CH2, the methyl groups of Val and Leu, a phosphate's
+ * oxygens): then a wrong hand is a matter of names. */
+bool tml_molecule_is_prochiral(const tml_molecule *molecule, const tml_centre *centre);
+
 /* Set a peptide bond to cis or trans: its torsions, 1-4 distances and planes follow. */
 void tml_molecule_set_peptide(tml_molecule *molecule, int32_t peptide, bool cis);
 

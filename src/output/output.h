@@ -39,6 +39,10 @@ tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_cont
 /* Smoothed limits as a table: heading, then atom_1, atom_2, lower, upper, tab-separated, four decimals, "-" for no upper. */
 tml_status tml_write_bounds(const tml_problem *problem, const tml_bounds *bounds, const char *path, tml_error *error);
 
+/* The report on given models: for programs (JSON) and for people; restraints count as violated beyond `over` Å, `over_angle` degrees. */
+tml_status tml_write_assessment_json(const tml_assessment *assessment, const char *path, tml_error *error);
+tml_status tml_print_assessment(FILE *out, const tml_assessment *assessment, double over, double over_angle, tml_error *error);
+
 /* The report of a comparison: for programs (JSON) and for people. */
 tml_status tml_write_comparison_json(const tml_comparison *comparison, const char *path, tml_error *error);
 tml_status tml_print_comparison(FILE *out, const tml_comparison *comparison, tml_error *error);

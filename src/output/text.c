@@ -6,22 +6,19 @@
 #include "base/vector.h"
 #include "output/file.h"
 #include "output/output.h"
+#include "output/report.h"
 #include "output/words.h"
 
 /* Contents: build - its models - its worst restraints - what the models agree on - check - findings of both - table of limits */
 
-enum { WIDTH = 100, LINE = 512, NAMES = 700, MOST_LISTED = 40, FEW_LISTED = 10 };
+enum { WIDTH = TML_REPORT_WIDTH, LINE = 512, NAMES = 700, MOST_LISTED = 40, FEW_LISTED = 10 };
 
 static void tell_models(tml_file *file, const tml_ensemble *ensemble);
-static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_error *error);
-static void tell_agreement(tml_file *file, const tml_ensemble *ensemble);
 static void tell_hands(tml_file *file, const tml_ensemble *ensemble);
 static void tell_chains(tml_file *file, const tml_ensemble *ensemble);
 static void tell_use(tml_file *file, const tml_problem *problem, const tml_use *uses, tml_use wanted, int32_t most,
                      const char *what);
 static void tell_conflicts(tml_file *file, const tml_problem *problem, const tml_contradictions *found);
-static void tell_unmapped(tml_file *file, const tml_problem *problem);
-static void tell_notes(tml_file *file, const tml_problem *problem);
 
 static const char *plural(int64_t count) {
     return count == 1 ? "" : "s";
@@ -31,7 +28,7 @@ static void heading(tml_file *file, const char *text) {
     tml_file_print(file, "\n%s\n", text);
 }
 
-static void tell_problem(tml_file *file, const tml_problem *problem) {
+void tml_tell_problem(tml_file *file, const tml_problem *problem) {
     const tml_molecule *molecule = &problem->molecule;
     if (problem->title != NULL && problem->title[0] != '\0') tml_file_paragraph(file, WIDTH, "", "  ", "%s", problem->title);
     char atoms[96], residues[96] = "", unmapped[96] = "";
@@ -54,7 +51,7 @@ tml_status tml_print_build(FILE *out, const tml_ensemble *ensemble, const tml_co
     tml_file *file;
     tml_status status = tml_file_wrap(out, &file, error);
     if (status != TML_OK) return status;
-    tell_problem(file, ensemble->problem);
+    tml_tell_problem(file, ensemble->problem);
     int32_t passed = 0;
     for (int32_t m = 0; m < ensemble->model_count; m++) passed += ensemble->models[m].passed;
     tml_say_selection(ensemble, rule, sizeof rule);
@@ -68,17 +65,17 @@ tml_status tml_print_build(FILE *out, const tml_ensemble *ensemble, const tml_co
     else if (ensemble->model_count < ensemble->wanted)
         tml_file_paragraph(file, WIDTH, "", "  ", "%d were asked for; more trials (--trials) may give more.", ensemble->wanted);
     tell_models(file, ensemble);
-    status = tell_worst(file, ensemble, error);
+    status = tml_tell_worst(file, ensemble, 0.1, 5, error);
     if (status != TML_OK) {
         tml_file_discard(file);
         return status;
     }
-    tell_agreement(file, ensemble);
+    tml_tell_agreement(file, ensemble);
     tell_hands(file, ensemble);
     tell_chains(file, ensemble);
     tell_conflicts(file, ensemble->problem, found);
-    tell_unmapped(file, ensemble->problem);
-    tell_notes(file, ensemble->problem);
+    tml_tell_unmapped(file, ensemble->problem);
+    tml_tell_notes(file, ensemble->problem);
     tml_file_print(file, "\n");
     tml_file_paragraph(file, WIDTH, "", "", "%s", tml_words_passing);
     tml_file_paragraph(file, WIDTH, "", "", "%s", tml_words_warning);
@@ -150,9 +147,8 @@ static void tell_offence(tml_file *file, const tml_ensemble *ensemble, const off
                        source.list, atoms);
 }
 
-static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_error *error) {
+tml_status tml_tell_worst(tml_file *file, const tml_ensemble *ensemble, double over, double over_angle, tml_error *error) {
     enum { SHOWN = 15 };
-    static const double OVER = 0.1, OVER_ANGLE = 5.0;
     const tml_restraints *restraints = &ensemble->problem->restraints;
     size_t count = 0;
     offence *list = tml_alloc((size_t)restraints->distance_count + (size_t)restraints->dihedral_count, sizeof *list);
@@ -164,20 +160,20 @@ static tml_status tell_worst(tml_file *file, const tml_ensemble *ensemble, tml_e
             const double *xyz = ensemble->models[m].xyz;
             double off = dihedral ? tml_dihedral_violation(restraints, &restraints->dihedrals[at.restraint], xyz) * 180.0 / TML_PI
                                   : fabs(tml_distance_violation(restraints, &restraints->distances[at.restraint], ensemble->models[m].swapped, xyz));
-            at.models += off > (dihedral ? OVER_ANGLE : OVER);
+            at.models += off > (dihedral ? over_angle : over);
             at.worst = fmax(at.worst, off);
         }
-        at.severity = at.worst / (dihedral ? OVER_ANGLE : OVER);
+        at.severity = at.worst / (dihedral ? over_angle : over);
         if (at.models > 0) list[count++] = at;
     }
     if (count > 0) {
         qsort(list, count, sizeof *list, compare_offences);
-        tml_file_print(file, "\n%zu restraint%s violated by more than 0.1 Å or 5° in some model%s\n", count, plural((int64_t)count),
+        tml_file_print(file, "\n%zu restraint%s violated by more than %g Å or %g° in some model%s\n", count, plural((int64_t)count), over, over_angle,
                        count > SHOWN ? "; those in most:" : ":");
         tml_file_print(file, "models      worst   restraint\n");
         for (size_t i = 0; i < count && i < SHOWN; i++) tell_offence(file, ensemble, &list[i]);
     } else if (ensemble->model_count > 0 && restraints->distance_count + restraints->dihedral_count > 0) {
-        heading(file, "No restraint is violated by more than 0.1 Å or 5° in any model.");
+        tml_file_print(file, "\nNo restraint is violated by more than %g Å or %g° in any model.\n", over, over_angle);
     }
     free(list);
     return TML_OK;
@@ -221,13 +217,15 @@ static void tell_stretches(tml_file *file, const tml_ensemble *ensemble) {
                        all[0] == '\0' ? "nothing; the models agree on no part of the molecule" : all);
 }
 
-static void tell_agreement(tml_file *file, const tml_ensemble *ensemble) {
+void tml_tell_agreement(tml_file *file, const tml_ensemble *ensemble) {
     const tml_molecule *molecule = &ensemble->problem->molecule;
     if (ensemble->model_count < 2 || ensemble->spread == NULL || ensemble->well_defined == NULL) return;
     double sum = 0, all = 0;
-    int32_t count = 0;
+    int32_t count = 0, all_count = 0;
     for (int32_t a = 0; a < molecule->atom_count; a++) {
         double square = ensemble->spread[a] * ensemble->spread[a];
+        if (isnan(square)) continue;
+        all_count++;
         all += square;
         if (!ensemble->well_defined[molecule->atoms[a].residue]) continue;
         sum += square;
@@ -235,7 +233,7 @@ static void tell_agreement(tml_file *file, const tml_ensemble *ensemble) {
     }
     heading(file, "Agreement of the models: r.m.s. distance of atoms from their mean positions");
     if (count > 0) tml_file_print(file, "%.2f Å over the well-defined part, ", sqrt(sum / count));
-    tml_file_print(file, "%.2f Å over all atoms\n", molecule->atom_count > 0 ? sqrt(all / molecule->atom_count) : 0.0);
+    tml_file_print(file, "%.2f Å over all atoms\n", all_count > 0 ? sqrt(all / all_count) : 0.0);
     tell_stretches(file, ensemble);
 }
 
@@ -259,7 +257,7 @@ static int32_t count_swapped(const tml_ensemble *ensemble, int32_t pair) {
 }
 
 /* Which open stereo pairs all models assign alike: "A:5:HB2", the atom that x is. */
-static void tell_stereo(tml_file *file, const tml_ensemble *ensemble) {
+void tml_tell_stereo(tml_file *file, const tml_ensemble *ensemble) {
     enum { SHOWN = 24 };
     const tml_restraints *restraints = &ensemble->problem->restraints;
     char all[SHOWN * NAMES] = "";
@@ -298,7 +296,7 @@ static void tell_hands(tml_file *file, const tml_ensemble *ensemble) {
                            "mirror image.",
                            doubtful);
     tell_cis(file, &ensemble->problem->molecule);
-    tell_stereo(file, ensemble);
+    tml_tell_stereo(file, ensemble);
 }
 
 /* Chains that are alike, and restraints that may lie within a chain or between two. */
@@ -359,14 +357,14 @@ tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_cont
     tml_file *file;
     tml_status status = tml_file_wrap(out, &file, error);
     if (status != TML_OK) return status;
-    tell_problem(file, problem);
+    tml_tell_problem(file, problem);
     tell_counts(file, problem);
     if (found->count == 0) heading(file, "No limits contradict each other by their distances.");
     tell_conflicts(file, problem, found);
     tell_use(file, problem, uses, TML_USE_OUT_OF_RANGE, MOST_LISTED, "out of range: no shape of the molecule can meet them");
     tell_use(file, problem, uses, TML_USE_REDUNDANT, FEW_LISTED, "redundant: every shape of the molecule meets them");
-    tell_unmapped(file, problem);
-    tell_notes(file, problem);
+    tml_tell_unmapped(file, problem);
+    tml_tell_notes(file, problem);
     return tml_file_close(file, error);
 }
 
@@ -436,7 +434,7 @@ static void tell_conflicts(tml_file *file, const tml_problem *problem, const tml
     }
 }
 
-static void tell_unmapped(tml_file *file, const tml_problem *problem) {
+void tml_tell_unmapped(tml_file *file, const tml_problem *problem) {
     int32_t count = problem->restraints.unmapped_count;
     if (count == 0) return;
     tml_file_print(file, "\n%d restraint%s name%s unknown atoms and %s left out\n", count, plural(count), count == 1 ? "s" : "",
@@ -450,7 +448,7 @@ static void tell_unmapped(tml_file *file, const tml_problem *problem) {
     if (count > MOST_LISTED) tml_file_print(file, "  … and %d more; --json of check lists all\n", count - MOST_LISTED);
 }
 
-static void tell_notes(tml_file *file, const tml_problem *problem) {
+void tml_tell_notes(tml_file *file, const tml_problem *problem) {
     if (problem->note_count > 0) heading(file, "Notes");
     for (size_t i = 0; i < problem->note_count; i++) {
         char place[LINE];

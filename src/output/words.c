@@ -10,6 +10,9 @@ const char tml_words_passing[] =
 const char tml_words_warning[] =
     "These models are starting points: they meet the limits as far as the figures here say and no further. They are to be "
     "refined and validated by people qualified to do so, and are not for clinical decisions.";
+const char tml_words_measured[] =
+    "These figures tell how far models agree with these inputs and with usual geometry. They are no validation: that is for people "
+    "qualified to do so, with the experimental data, and nothing here is for clinical decisions.";
 
 const char *const tml_range_words[TML_RANGE_COUNT] = {"intra", "sequential", "medium", "long", "inter_chain"};
 

@@ -16,8 +16,8 @@ void tml_say_conflict(const tml_problem *problem, const tml_contradiction *confl
 /* The rule by which models were chosen, in one sentence. */
 void tml_say_selection(const tml_ensemble *ensemble, char *text, size_t size);
 
-/* The rule of passing, and what the models are not. */
-extern const char tml_words_passing[], tml_words_warning[];
+/* The rule of passing, what the models are not, and what an assessment is not. */
+extern const char tml_words_passing[], tml_words_warning[], tml_words_measured[];
 
 /* Where a restraint stands and what it is called: list, id, place; "" and the unknown place for a step that is none. */
 typedef struct tml_source { const char *list, *id, *file; int32_t line; bool is_restraint; } tml_source;

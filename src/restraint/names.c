@@ -143,19 +143,11 @@ static int32_t carrier_of(const tml_molecule *molecule, int32_t atom) {
 
 /* Whether two atoms have a neighbour in common, and neighbours of the same elements: CG1 and CG2 of Val, not CD1 and CD2 of Trp. */
 static bool are_alike(const tml_molecule *molecule, int32_t a, int32_t b) {
-    int32_t elements[UINT8_MAX + 1] = {0};
     bool common = false;
-    if (molecule->atoms[a].element != molecule->atoms[b].element) return false;
-    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++) {
-        elements[molecule->atoms[molecule->neighbours[k]].element]++;
+    for (int32_t k = molecule->neighbour_first[a]; k < molecule->neighbour_first[a + 1]; k++)
         for (int32_t l = molecule->neighbour_first[b]; l < molecule->neighbour_first[b + 1]; l++)
             common = common || molecule->neighbours[k] == molecule->neighbours[l];
-    }
-    for (int32_t l = molecule->neighbour_first[b]; l < molecule->neighbour_first[b + 1]; l++)
-        elements[molecule->atoms[molecule->neighbours[l]].element]--;
-    for (int e = 0; e <= UINT8_MAX; e++)
-        if (elements[e] != 0) return false;
-    return common;
+    return common && molecule->atoms[a].element == molecule->atoms[b].element && tml_molecule_same_neighbours(molecule, a, b);
 }
 
 static bool is_stereo_pair(const tml_molecule *molecule, const int32_t *one, const int32_t *other, int32_t count) {

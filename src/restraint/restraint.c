@@ -42,9 +42,10 @@ static double sum_over(const tml_restraints *restraints, const tml_alternative *
             int32_t a = one.atoms[i], b = other.atoms[j];
             double d[3];
             if (a == b) continue;
-            ++*pairs;
             tml_sub(d, &xyz[3 * a], &xyz[3 * b]);
             double square = tml_dot(d, d);
+            if (isnan(square)) continue;
+            ++*pairs;
             sum += 1.0 / (square * square * square);
         }
     return sum;
@@ -54,6 +55,7 @@ double tml_alternative_distance(const tml_restraints *restraints, const tml_alte
                                 const double *xyz) {
     int64_t pairs = 0;
     double sum = sum_over(restraints, alternative, swapped, xyz, &pairs);
+    if (pairs == 0) return NAN;
     return pow(average ? sum / (double)pairs : sum, -1.0 / 6.0);
 }
 
@@ -63,6 +65,7 @@ double tml_restraint_distance(const tml_restraints *restraints, const tml_distan
     int64_t pairs = 0;
     for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++)
         sum += sum_over(restraints, &restraints->alternatives[k], swapped, xyz, &pairs);
+    if (pairs == 0) return NAN;
     return pow(restraint->average ? sum / (double)pairs : sum, -1.0 / 6.0);
 }
 
@@ -83,6 +86,7 @@ double tml_between_chains(const tml_restraints *restraints, const tml_molecule *
 }
 
 static double beyond(const tml_distance_restraint *restraint, double distance) {
+    if (isnan(distance)) return NAN;
     return distance > restraint->upper ? distance - restraint->upper : distance < restraint->lower ? distance - restraint->lower : 0;
 }
 
@@ -96,11 +100,12 @@ double tml_distance_violation(const tml_restraints *restraints, const tml_distan
         double worst = 0; /* of the alternatives that must hold together */
         do {
             double off = beyond(restraint, tml_alternative_distance(restraints, &alternatives[k++], restraint->average, swapped, xyz));
-            if (fabs(off) > fabs(worst)) worst = off;
+            if (isnan(off) || fabs(off) > fabs(worst)) worst = off;
+            if (isnan(worst)) worst = INFINITY; /* with atoms missing it cannot be said to hold */
         } while (combination >= 0 && k < count && alternatives[k].combination == combination);
         if (fabs(worst) < fabs(least)) least = worst;
     }
-    return least;
+    return isinf(least) ? NAN : least;
 }
 
 double tml_dihedral_violation(const tml_restraints *restraints, const tml_dihedral_restraint *restraint, const double *xyz) {
@@ -109,9 +114,10 @@ double tml_dihedral_violation(const tml_restraints *restraints, const tml_dihedr
         const tml_dihedral_interval *interval = &restraints->intervals[k];
         const int32_t *atoms = interval->atoms;
         double off = tml_dihedral_of(&xyz[3 * atoms[0]], &xyz[3 * atoms[1]], &xyz[3 * atoms[2]], &xyz[3 * atoms[3]]) - interval->lower;
+        if (isnan(off)) continue;
         off -= 2 * PI * floor(off / (2 * PI));
         double width = interval->upper - interval->lower;
         least = fmin(least, off <= width ? 0 : fmin(off - width, 2 * PI - off));
     }
-    return least;
+    return isinf(least) ? NAN : least;
 }

@@ -91,9 +91,14 @@ double tml_restraint_distance(const tml_restraints *restraints, const tml_distan
 double tml_between_chains(const tml_restraints *restraints, const tml_molecule *molecule, const tml_distance_restraint *restraint,
                           const bool *swapped, const double *xyz);
 
-/* By how much a restraint is violated: Å beyond a limit (positive above, negative below the lower; 0 within); radians, >= 0. */
+/* By how much a restraint is violated: Å beyond a limit (positive above, negative below the lower; 0 within); radians, >= 0. Atoms
+ * whose coordinates are NAN are missing: sums run over the pairs that are there, and NAN comes out where there is none. */
 double tml_distance_violation(const tml_restraints *restraints, const tml_distance_restraint *restraint, const bool *swapped,
                               const double *xyz);
+/* Choose which member of each open stereo pair is x so that the squares of violations add up to least, pair after pair until none
+ * changes. swapped: stereo_count elements, as they are to start with. */
+void tml_stereo_choose(const tml_restraints *restraints, const double *xyz, bool *swapped);
+
 double tml_dihedral_violation(const tml_restraints *restraints, const tml_dihedral_restraint *restraint, const double *xyz);
 
 #endif

@@ -1,5 +1,6 @@
 #include "restraint/stereo.h"
 
+#include <math.h>
 #include <stdlib.h>
 
 #include "base/memory.h"
@@ -84,5 +85,41 @@ void tml_stereo_close(tml_stereo_book *book) {
         tml_stereo *pair = &restraints->stereo[restraints->stereo_members[k].stereo];
         pair->first_member = k;
         pair->member_count++;
+    }
+}
+
+/* ---- choosing for given models ---- */
+
+static bool hangs_on(const tml_restraints *restraints, const tml_distance_restraint *restraint, int32_t pair) {
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++)
+        if (restraints->alternatives[k].stereo_a == pair || restraints->alternatives[k].stereo_b == pair) return true;
+    return false;
+}
+
+static double squares_of(const tml_restraints *restraints, int32_t pair, const bool *swapped, const double *xyz) {
+    double sum = 0;
+    for (int32_t i = 0; i < restraints->distance_count; i++) {
+        const tml_distance_restraint *restraint = &restraints->distances[i];
+        if (!hangs_on(restraints, restraint, pair)) continue;
+        double off = tml_distance_violation(restraints, restraint, swapped, xyz);
+        if (!isnan(off)) sum += restraint->weight * off * off;
+    }
+    return sum;
+}
+
+void tml_stereo_choose(const tml_restraints *restraints, const double *xyz, bool *swapped) {
+    enum { ROUNDS = 10 };
+    bool changed = true;
+    for (int round = 0; changed && round < ROUNDS; round++) {
+        changed = false;
+        for (int32_t pair = 0; pair < restraints->stereo_count; pair++) {
+            double before = squares_of(restraints, pair, swapped, xyz);
+            if (before == 0) continue;
+            swapped[pair] = !swapped[pair];
+            if (squares_of(restraints, pair, swapped, xyz) < before - 1e-9)
+                changed = true;
+            else
+                swapped[pair] = !swapped[pair];
+        }
     }
 }
