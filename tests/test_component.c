@@ -259,3 +259,29 @@ Test(component, names_filled_up_with_blanks_and_numbers_that_are_none_are_read) 
     cr_assert_float_eq(bond_length(problem, atom_at(problem, "L", "1", "O'"), atom_at(problem, "L", "1", "C1")), 1.426, 0.01);
     tml_problem_free(problem);
 }
+
+/* Source of the angle and length: Engh & Huber 1991, cystine; the D residue's own dictionary has neither. */
+#define DCYS                                                                                                                   \
+    "data_QDC\n_chem_comp.id QDC\n_chem_comp.type 'D-PEPTIDE LINKING'\nloop_\n_chem_comp_atom.comp_id\n_chem_comp_atom.atom_id\n_chem_comp_atom.type_symbol\n" \
+    "QDC N N\nQDC CA C\nQDC C C\nQDC O O\nQDC CB C\nQDC SG S\nQDC HN H\nQDC HA H\nQDC HB1 H\nQDC HB2 H\nQDC HG H\n"               \
+    BONDS "QDC N CA SING\nQDC CA C SING\nQDC C O DOUB\nQDC CA CB SING\nQDC CB SG SING\nQDC N HN SING\nQDC CA HA SING\nQDC CB HB1 SING\n" \
+    "QDC CB HB2 SING\nQDC SG HG SING\n"
+
+Test(component, d_and_l_residues_share_a_ring_and_a_disulfide) {
+    static const char NEF[] = "data_x\nsave_s\nloop_\n_nef_sequence.index\n_nef_sequence.chain_code\n_nef_sequence.sequence_code\n_nef_sequence.residue_name\n"
+                              "_nef_sequence.linking\n1 A 1 QDC cyclic\n2 A 2 GLY middle\n3 A 3 CYS middle\n4 A 4 ALA cyclic\nstop_\nloop_\n"
+                              "_nef_covalent_links.chain_code_1\n_nef_covalent_links.sequence_code_1\n_nef_covalent_links.residue_name_1\n"
+                              "_nef_covalent_links.atom_name_1\n_nef_covalent_links.chain_code_2\n_nef_covalent_links.sequence_code_2\n"
+                              "_nef_covalent_links.residue_name_2\n_nef_covalent_links.atom_name_2\nA 1 QDC SG A 3 CYS SG\nstop_\nsave_\n";
+    tml_problem *problem = read_both(NEF, DCYS);
+    const tml_molecule *molecule = &problem->molecule;
+    cr_assert_eq(molecule->peptide_count, 4);
+    int32_t s1 = atom_at(problem, "A", "1", "SG"), s2 = atom_at(problem, "A", "3", "SG");
+    cr_assert_float_eq(bond_length(problem, s1, s2), 2.030, 1e-9);
+    cr_assert_float_eq(angle_between(problem, atom_at(problem, "A", "1", "CB"), s1, s2), 103.8, 1e-6);
+    cr_assert(!has_atom(problem, "A", "1", "HG") && !has_atom(problem, "A", "3", "HG"));
+    cr_assert_eq(tml_molecule_hand(molecule, atom_at(problem, "A", "1", "N"), atom_at(problem, "A", "1", "CA"), atom_at(problem, "A", "1", "C")), -1);
+    cr_assert_eq(tml_molecule_hand(molecule, atom_at(problem, "A", "3", "N"), atom_at(problem, "A", "3", "CA"), atom_at(problem, "A", "3", "C")), 1);
+    cr_assert_eq(tml_molecule_hand(molecule, atom_at(problem, "A", "2", "N"), atom_at(problem, "A", "2", "CA"), atom_at(problem, "A", "2", "C")), 0);
+    tml_problem_free(problem);
+}

@@ -75,7 +75,7 @@ static char *beside(const char *file, const char *path) {
     char *whole = tml_alloc(folder + strlen(path) + 1, 1);
     if (whole == NULL) return NULL;
     memcpy(whole, file, folder);
-    strcpy(whole + folder, path);
+    memcpy(whole + folder, path, strlen(path) + 1);
     return whole;
 }
 

@@ -174,9 +174,12 @@ bool tml_component_add_plane(tml_component_making *making, const char *const *na
     for (size_t i = 0; i < count; i++) length += strlen(names[i]) + 1;
     char *text = tml_alloc(length + 1, 1);
     if (text == NULL) return false;
+    char *end = text;
     for (size_t i = 0; i < count; i++) {
-        strcat(text, names[i]);
-        if (i + 1 < count) strcat(text, " ");
+        size_t size = strlen(names[i]);
+        if (i > 0) *end++ = ' ';
+        memcpy(end, names[i], size);
+        end += size;
     }
     const char *kept = tml_strings_add(making->pool, text);
     free(text);

@@ -78,7 +78,9 @@ static const double AMIDE = 1.329; /* Å, as the peptide bond's */
 
 static tml_status add_chain_bond(tml_making *making, int32_t r) {
     const tml_layout_residue *residue = &making->residues[r];
-    const char *from = making->residues[residue->previous].form->family->tail, *to = residue->form->family->head;
+    const tml_template *one = making->residues[residue->previous].form, *two = residue->form;
+    if (one == NULL || two == NULL) return TML_OK; /* never so: single atoms are in no chain */
+    const char *from = one->family->tail, *to = two->family->head;
     int32_t tail = atom_named(making, residue->previous, from), head = atom_named(making, r, to);
     if (tail < 0 || head < 0 || !making->atoms[tail].present || !making->atoms[head].present)
         return tml_making_fail(making, residue->place, "%s:%s: it cannot be bonded to the residue before: %s or %s is missing",
@@ -131,6 +133,7 @@ static tml_status add_link(tml_making *making, const tml_outline_link *link) {
     if (status == TML_OK) status = make_room(making, b, a, link->place);
     if (status != TML_OK) return status;
     double length = tml_lookup_bond(making, a, b, TML_BOND_LINK);
+    if (isnan(length)) length = tml_lookup_bond(making, b, a, TML_BOND_LINK);
     if (isnan(length)) length = usual_length(making, a, b);
     return add_bond(making, a, b, length, TML_BOND_LINK);
 }

@@ -6,6 +6,7 @@
 
 #include "base/vector.h"
 #include "molecule/elements.h"
+#include "molecule/topology_geometry.h"
 
 /* Contents: the steps - planes and peptides - angles - centres - what the input adds */
 
@@ -223,6 +224,11 @@ static tml_status add_angles(tml_making *making, int32_t centre) {
     for (int i = 0; i < count; i++)
         for (int j = i + 1; j < count; j++) angle[i][j] = angle[j][i] = tml_lookup_angle(making, arm[i], centre, arm[j]);
     if (is_loose(making, arm, count, angle[0][1])) return TML_OK;
+    if (count == 2 && isnan(angle[0][1]) && !making->planar[centre]) {
+        const tml_atom *atoms = molecule->atoms;
+        double usual = tml_two_armed_angle(atoms[centre].element, atoms[arm[0]].element, atoms[arm[1]].element);
+        if (!isnan(usual)) angle[0][1] = angle[1][0] = usual * TML_PI / 180;
+    }
     bool open_end = count == 2 && (molecule->atoms[centre].element == 6 || molecule->atoms[centre].element == 7);
     tml_arms_complete(angle, count, making->planar[centre] || open_end);
     if (!reserve_angles(making, (size_t)(count * (count - 1) / 2))) return tml_no_memory(making->error);

@@ -5,7 +5,7 @@
  * M. Atsumi, Chem. Eur. J. 15 (2009) 12770 shrink on average (from memory).
  *
  * Angles: tetrahedral, trigonal and linear, but in small rings those of a regular or usual ring; on two-armed oxygen and sulphur
- * those of dimethyl ether, dimethyl sulphide, methanol and methanethiol; on sulphonyl groups those of dimethyl sulphone (gas-phase
+ * those of dimethyl ether, dimethyl sulphide, cystine, methanol and methanethiol; on sulphonyl groups those of dimethyl sulphone (gas-phase
  * values, from memory), in rings with sulphur or selenium those of thiophene and selenophene (microwave spectra, from memory).
  *
  * Contents: making - rings - shapes - ranks - lengths - angles
@@ -445,12 +445,15 @@ static double trigonal_angle(const tml_topology *t, int32_t a, int32_t centre, i
     return degree == 3 ? (360 - others) / unknown : 120;
 }
 
-static double two_armed_angle(int element, bool with_hydrogen) {
-    static const struct { int element; double heavy, hydrogen; } KNOWN[] = {
-        {N, 115, 109}, {O, 111.7, 108.5}, {S, 98.9, 96.5}, {SE, 96.3, 95.5}};
-    for (size_t i = 0; i < sizeof KNOWN / sizeof *KNOWN; i++)
-        if (KNOWN[i].element == element) return with_hydrogen ? KNOWN[i].hydrogen : KNOWN[i].heavy;
-    return TETRAHEDRAL;
+double tml_two_armed_angle(int element, int arm_1, int arm_2) {
+    static const struct { int element; double heavy, hydrogen, disulphide; } KNOWN[] = {
+        {O, 111.7, 108.5, 111.7}, {S, 98.9, 96.5, 103.8}, {SE, 96.3, 95.5, 100}};
+    for (size_t i = 0; i < sizeof KNOWN / sizeof *KNOWN; i++) {
+        if (KNOWN[i].element != element) continue;
+        bool chalcogens = arm_1 == S || arm_2 == S || arm_1 == SE || arm_2 == SE;
+        return arm_1 == H || arm_2 == H ? KNOWN[i].hydrogen : chalcogens ? KNOWN[i].disulphide : KNOWN[i].heavy;
+    }
+    return NAN;
 }
 
 static double sulphonyl_angle(const tml_topology *t, int32_t a, int32_t centre, int32_t c) {
@@ -471,7 +474,8 @@ static double tetrahedral_angle(const tml_topology *t, int32_t a, int32_t centre
     int32_t own = tml_topology_ring_of(t, a, centre, c), size = own < 0 ? 0 : tml_topology_ring_size(t, own);
     int element = t->elements[centre];
     if (size >= 3 && size <= 5) return size == 5 && element == S && degree == 2 ? 93.0 : RING[size];
-    if (degree == 2) return two_armed_angle(element, t->elements[a] == H || t->elements[c] == H);
+    double two_armed = degree == 2 ? tml_two_armed_angle(element, t->elements[a], t->elements[c]) : NAN;
+    if (!isnan(two_armed)) return two_armed;
     if (element == S && degree == 4 && count_order(t, centre, TML_ORDER_SINGLE) == 2) return sulphonyl_angle(t, a, centre, c);
     if (element == S && degree == 3) return t->bonds[tml_topology_bond_between(t, a, centre)].order != TML_ORDER_SINGLE ||
                                             t->bonds[tml_topology_bond_between(t, c, centre)].order != TML_ORDER_SINGLE

@@ -63,6 +63,9 @@ double tml_topology_angle(const tml_topology *topology, int32_t a, int32_t centr
 /* Nuclear length of a bond to hydrogen; NAN for an element of which none is known. `in_ring`: on a trigonal carbon of a ring. */
 double tml_hydrogen_length(int element, bool in_ring);
 
+/* Degrees between the two arms of an oxygen, sulphur or selenium atom that is in no ring; NAN for other elements. */
+double tml_two_armed_angle(int element, int arm_1, int arm_2);
+
 /* Of a single bond between elements of such shapes. */
 double tml_single_length(int element_1, tml_shape shape_1, int element_2, tml_shape shape_2);
 

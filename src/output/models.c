@@ -104,8 +104,8 @@ bool tml_bond_links(const tml_molecule *molecule, const bool *is_peptide, int32_
 bool tml_is_disulfide(const tml_molecule *molecule, const tml_bond *bond) {
     enum { SULFUR = 16 };
     const tml_atom *a = &molecule->atoms[bond->a], *b = &molecule->atoms[bond->b];
-    return a->element == SULFUR && b->element == SULFUR && strcmp(molecule->residues[a->residue].name, "CYS") == 0 &&
-           strcmp(molecule->residues[b->residue].name, "CYS") == 0;
+    return a->element == SULFUR && b->element == SULFUR && molecule->residues[a->residue].polymer == TML_POLYMER_PROTEIN &&
+           molecule->residues[b->residue].polymer == TML_POLYMER_PROTEIN;
 }
 
 double tml_first_length(const tml_ensemble *ensemble, const tml_bond *bond) {
