@@ -96,6 +96,22 @@ tml_status tml_problem_read(const char *const *paths, size_t path_count, const t
                             tml_error *error);
 void tml_problem_free(tml_problem *problem);
 
+/* Kinds of input that can be written. */
+typedef enum tml_convert_format { TML_CONVERT_UNKNOWN, TML_CONVERT_SHEET, TML_CONVERT_NEF, TML_CONVERT_NMR_STAR } tml_convert_format;
+
+/* By suffix: .sheet, .nef, .str, each with .gz after it or not. */
+tml_convert_format tml_convert_format_of(const char *path);
+
+/* Read inputs and write what they say as one input of another kind, names as they were written. The file appears whole or not at all.
+ *
+ * path      "-" for standard output
+ * problem   what was read, with a note that begins with TML_NOT_HELD for each kind of statement that the format cannot hold
+ * Returns TML_OK, or what tml_problem_read and writing a file return.
+ */
+#define TML_NOT_HELD "not held by this format: "
+tml_status tml_convert(const char *const *paths, size_t path_count, const tml_read_options *options, tml_convert_format format,
+                       const char *path, tml_problem **problem, tml_error *error);
+
 void tml_problem_count(const tml_problem *problem, tml_counts *counts);
 const char *tml_problem_title(const tml_problem *problem); /* "" for none */
 

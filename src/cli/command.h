@@ -18,7 +18,7 @@ typedef struct tml_command {
     int (*run)(const struct tml_command *self, int argc, char **argv); /* argv[0] is the command's name; gives the exit status */
 } tml_command;
 
-extern const tml_command tml_command_assess, tml_command_build, tml_command_check, tml_command_bounds, tml_command_derive, tml_command_compare;
+extern const tml_command tml_command_convert, tml_command_assess, tml_command_build, tml_command_check, tml_command_bounds, tml_command_derive, tml_command_compare;
 
 enum { TML_EXIT_DONE = 0, TML_EXIT_FINDING = 1, TML_EXIT_USAGE = 2, TML_EXIT_MACHINE = 3 };
 

@@ -5,7 +5,7 @@
 #include "cli/command.h"
 
 static const tml_command *const COMMANDS[] = {&tml_command_check, &tml_command_build, &tml_command_assess, &tml_command_bounds,
-                                              &tml_command_derive, &tml_command_compare};
+                                              &tml_command_derive, &tml_command_compare, &tml_command_convert};
 enum { COMMAND_COUNT = sizeof COMMANDS / sizeof COMMANDS[0] };
 
 static void print_usage(FILE *out) {

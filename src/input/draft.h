@@ -11,6 +11,11 @@ typedef struct tml_draft {
     tml_rows rows;
 } tml_draft;
 
+/* Read all inputs into a draft, and its problem: molecule made, restraints matched. tml_draft_clear frees outline and rows, after a failure
+ * too; the problem stays the caller's, to be freed after a failure, too. Otherwise as tml_problem_read. */
+tml_status tml_draft_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_draft *draft, tml_error *error);
+void tml_draft_clear(tml_draft *draft);
+
 /* Readers; file indexes problem->files. A sheet is the whole text, ended by '\0'. */
 tml_status tml_read_nef(tml_draft *draft, const tml_star *star, int32_t file, tml_error *error);
 tml_status tml_read_nmrstar(tml_draft *draft, tml_star *star, int32_t file, tml_error *error);

@@ -12,33 +12,42 @@
 static tml_status read_one(tml_draft *draft, const char *path, const tml_table *table, tml_error *error);
 static tml_status rename_old(tml_draft *draft, const char *mapping, tml_error *error);
 
-tml_status tml_problem_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_problem **out,
-                            tml_error *error) {
+tml_status tml_draft_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_draft *draft, tml_error *error) {
     static const tml_read_options DEFAULTS = {0};
-    *out = NULL;
-    if (options == NULL) options = &DEFAULTS;
     tml_problem *problem = tml_alloc(1, sizeof *problem);
+    *draft = (tml_draft){.problem = problem};
+    if (options == NULL) options = &DEFAULTS;
     if (problem == NULL) return tml_no_memory(error);
-    tml_draft draft = {.problem = problem};
     problem->pool = tml_strings_new();
     problem->title = "";
     tml_status status = problem->pool == NULL ? tml_no_memory(error) : TML_OK;
-    for (size_t i = 0; status == TML_OK && i < path_count; i++) status = read_one(&draft, paths[i], NULL, error);
-    if (status == TML_OK && options->old_names != NULL) status = rename_old(&draft, options->old_names, error);
+    for (size_t i = 0; status == TML_OK && i < path_count; i++) status = read_one(draft, paths[i], NULL, error);
+    if (status == TML_OK && options->old_names != NULL) status = rename_old(draft, options->old_names, error);
     for (size_t i = 0; status == TML_OK && i < options->table_count; i++)
-        status = read_one(&draft, options->tables[i].path, &options->tables[i], error);
-    if (status == TML_OK) status = tml_make_components(&draft, error);
-    if (status == TML_OK && options->alike_chains && !tml_outline_find_alike(&draft.outline)) status = tml_no_memory(error);
-    if (status == TML_OK) status = tml_molecule_build(&draft.outline, problem->files, problem->pool, &problem->molecule, error);
-    if (status == TML_OK) status = tml_restraints_map(&draft.rows, options, problem, error);
-    tml_outline_clear(&draft.outline);
-    tml_rows_clear(&draft.rows);
-    if (status != TML_OK) {
-        tml_problem_free(problem);
-        return status;
-    }
-    *out = problem;
-    return TML_OK;
+        status = read_one(draft, options->tables[i].path, &options->tables[i], error);
+    if (status == TML_OK) status = tml_make_components(draft, error);
+    if (status == TML_OK && options->alike_chains && !tml_outline_find_alike(&draft->outline)) status = tml_no_memory(error);
+    if (status == TML_OK) status = tml_molecule_build(&draft->outline, problem->files, problem->pool, &problem->molecule, error);
+    if (status == TML_OK) status = tml_restraints_map(&draft->rows, options, problem, error);
+    return status;
+}
+
+void tml_draft_clear(tml_draft *draft) {
+    tml_outline_clear(&draft->outline);
+    tml_rows_clear(&draft->rows);
+}
+
+tml_status tml_problem_read(const char *const *paths, size_t path_count, const tml_read_options *options, tml_problem **out,
+                            tml_error *error) {
+    tml_draft draft;
+    *out = NULL;
+    tml_status status = tml_draft_read(paths, path_count, options, &draft, error);
+    tml_draft_clear(&draft);
+    if (status == TML_OK)
+        *out = draft.problem;
+    else
+        tml_problem_free(draft.problem);
+    return status;
 }
 
 void tml_problem_free(tml_problem *problem) {

@@ -4,6 +4,7 @@
  *   statements      one function each, by a table
  *   addresses       chain:residue:atom, or a bare name
  */
+#include <ctype.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -26,6 +27,7 @@ typedef struct sheet {
     word *words;
     int count;
     int limits, dihedrals; /* statements so far, for the ids of those that have none */
+    const char *list;      /* of the restraints that follow; pooled */
     tml_index *residues;   /* chain (owner -1) to its number; number within a chain to the residue in the outline */
     size_t *last;          /* of each chain: its residue that came last */
     size_t chain_count, chain_capacity;
@@ -178,7 +180,9 @@ static tml_status sequence_statement(sheet *s) {
     char *end = NULL;
     int index = 2;
     if (s->count > 2) number = strtol(s->words[2].text, &end, 10);
-    bool given = s->count > 2 && end == s->words[2].text + s->words[2].length;
+    const char *stop = s->count > 2 ? s->words[2].text + s->words[2].length : NULL;
+    bool lettered = stop != NULL && end > s->words[2].text && end + 1 == stop && isalpha((unsigned char)*end); /* 52A */
+    bool given = s->count > 2 && (end == stop || lettered);
     int32_t known = tml_index_find(s->residues, -1, chain);
     if (given)
         index++;
@@ -192,7 +196,7 @@ static tml_status sequence_statement(sheet *s) {
             return tml_no_memory(s->error);
         tml_outline_residue *residue = &outline->residues[outline->residue_count++];
         *residue = (tml_outline_residue){.chain = chain, .place = here(s, index)};
-        status = next_number(s, index, number, &residue->number);
+        status = lettered && index == 3 ? text_at(s, 2, "a residue number", &residue->number) : next_number(s, index, number, &residue->number);
         if (status == TML_OK) status = text_at(s, index, "a residue", &residue->name);
         if (status == TML_OK) status = pooled(s, "", 0, &residue->variant);
         if (status == TML_OK) status = index_residue(s, outline->residue_count - 1);
@@ -262,6 +266,23 @@ static tml_status peptide_statement(sheet *s) {
     return no_more(s, 4);
 }
 
+/* linking CHAIN NUMBER start|middle|end|single|break|cyclic, where it is not what the chain's order tells. */
+static tml_status linking_statement(sheet *s) {
+    static const struct { const char *word; tml_linking linking; } WORDS[] = {
+        {"start", TML_LINKING_START}, {"middle", TML_LINKING_MIDDLE}, {"end", TML_LINKING_END},
+        {"single", TML_LINKING_SINGLE}, {"break", TML_LINKING_BREAK}, {"cyclic", TML_LINKING_CYCLIC},
+    };
+    tml_outline_residue *residue = NULL;
+    tml_status status = residue_at(s, &residue);
+    if (status != TML_OK) return status;
+    for (size_t i = 0; i < sizeof WORDS / sizeof *WORDS; i++)
+        if (is_word(s, 3, WORDS[i].word)) {
+            residue->linking = WORDS[i].linking;
+            return no_more(s, 4);
+        }
+    return expected(s, 3, "start, middle, end, single, break or cyclic");
+}
+
 static tml_status link_statement(sheet *s) {
     tml_outline *outline = &s->draft->outline;
     tml_outline_link link = {.place = here(s, 1)};
@@ -318,14 +339,16 @@ static tml_status plane_statement(sheet *s) {
     return no_more(s, 1 + count < s->count ? 3 + count : 1 + count);
 }
 
-/* What may follow the limits: `as ID`, `weight W`, `average`; in any order. */
-typedef struct endings { const char *id; double weight; bool average, alone; } endings;
+/* What may follow the limits: `as ID`, `weight W`, `together NAME`, `average`; in any order. Limits of one id with the same NAME hold
+ * together. */
+typedef struct endings { const char *id, *together; double weight; bool average, alone; } endings;
 
 static tml_status endings_from(sheet *s, int index, bool distance, const char *number_word, int number, endings *out) {
     char own[32];
     snprintf(own, sizeof own, "%s%d", number_word, number);
     *out = (endings){.weight = 1.0, .alone = true};
     tml_status status = pooled(s, own, strlen(own), &out->id);
+    if (status == TML_OK) status = pooled(s, "", 0, &out->together);
     while (status == TML_OK && index < s->count) {
         if (is_word(s, index, "as")) {
             status = text_at(s, index + 1, "an id", &out->id);
@@ -335,11 +358,14 @@ static tml_status endings_from(sheet *s, int index, bool distance, const char *n
             status = number_at(s, index + 1, "a weight", &out->weight);
             if (status == TML_OK && !(out->weight >= 0)) status = expected(s, index + 1, "a weight of 0 or more");
             index += 2;
+        } else if (distance && is_word(s, index, "together")) {
+            status = text_at(s, index + 1, "a name for the limits that hold together", &out->together);
+            index += 2;
         } else if (distance && is_word(s, index, "average")) {
             out->average = true;
             index++;
         } else {
-            return expected(s, index, distance ? "as, weight, average or the end of the line" : "as, weight or the end of the line");
+            return expected(s, index, distance ? "as, weight, together, average or the end of the line" : "as, weight or the end of the line");
         }
     }
     return status;
@@ -358,9 +384,10 @@ static tml_status limit_statement(sheet *s) {
     if (status != TML_OK) return status;
     if (row.lower < 0 || row.upper < 0) return expected(s, row.lower < 0 ? 3 : 4, "a distance, which is never negative,");
     if (row.upper < row.lower) return expected(s, 4, "an upper limit that is not below the lower one");
-    status = pooled(s, "sheet", 5, &row.list);
-    if (status == TML_OK) status = pooled(s, "", 0, &row.combination);
+    status = s->list == NULL ? pooled(s, "sheet", 5, &s->list) : TML_OK;
+    row.list = s->list;
     if (status != TML_OK) return status;
+    row.combination = end.together;
     row.id = end.id;
     row.weight = end.weight;
     row.average = end.average;
@@ -378,7 +405,8 @@ static tml_status dihedral_statement(sheet *s) {
     if (status == TML_OK) status = number_at(s, 5, "the angle in degrees where the interval begins", &row.lower);
     if (status == TML_OK) status = number_at(s, 6, "the angle in degrees where the interval ends", &row.upper);
     if (status == TML_OK) status = endings_from(s, 7, false, "dihedral", ++s->dihedrals, &end);
-    if (status == TML_OK) status = pooled(s, "sheet", 5, &row.list);
+    if (status == TML_OK) status = s->list == NULL ? pooled(s, "sheet", 5, &s->list) : TML_OK;
+    row.list = s->list;
     if (status == TML_OK) status = pooled(s, "", 0, &row.combination);
     if (status != TML_OK) return status;
     row.id = end.id;
@@ -387,13 +415,18 @@ static tml_status dihedral_statement(sheet *s) {
     return tml_rows_add_dihedral(&s->draft->rows, &row) ? TML_OK : tml_no_memory(s->error);
 }
 
+static tml_status list_statement(sheet *s) {
+    tml_status status = text_at(s, 1, "a name for the restraints that follow", &s->list);
+    return status == TML_OK ? no_more(s, 2) : status;
+}
+
 /* ---- lines ---- */
 
 static const struct { const char *name; statement_fn *run; } STATEMENTS[] = {
     {"title", title_statement},     {"atom", atom_statement},       {"sequence", sequence_statement}, {"variant", variant_statement},
     {"ends", ends_statement},       {"peptide", peptide_statement}, {"link", link_statement},         {"limit", limit_statement},
     {"dihedral", dihedral_statement}, {"chiral", chiral_statement}, {"plane", plane_statement},
-    {"alike", alike_statement},      {"component", component_statement},
+    {"alike", alike_statement},      {"component", component_statement}, {"list", list_statement},      {"linking", linking_statement},
 };
 
 /* Words of the grammar that this version cannot carry out. */
