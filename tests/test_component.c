@@ -285,3 +285,14 @@ Test(component, d_and_l_residues_share_a_ring_and_a_disulfide) {
     cr_assert_eq(tml_molecule_hand(molecule, atom_at(problem, "A", "2", "N"), atom_at(problem, "A", "2", "CA"), atom_at(problem, "A", "2", "C")), 0);
     tml_problem_free(problem);
 }
+
+/* Two small flat rings leave an arm beside them more than a straight angle; what is built stays below it. */
+Test(component, no_angle_is_wider_than_a_straight_one) {
+    tml_problem *problem = read_both("sheet 1\nsequence L 1 QBR\n",
+                                     "data_QBR\nloop_\n_chem_comp_atom.comp_id\n_chem_comp_atom.atom_id\n_chem_comp_atom.type_symbol\nQBR C1 C\nQBR C2 C\n"
+                                     "QBR C3 C\nQBR C4 C\nQBR C5 C\nQBR C6 C\n" BONDS "QBR C1 C2 DOUB\nQBR C2 C3 SING\nQBR C3 C4 DOUB\nQBR C4 C5 SING\n"
+                                     "QBR C5 C6 DOUB\nQBR C6 C1 SING\nQBR C1 C3 SING\n");
+    cr_assert_gt(problem->molecule.angle_count, 8);
+    for (int32_t i = 0; i < problem->molecule.angle_count; i++) cr_assert_lt(problem->molecule.angles[i].angle, TML_PI);
+    tml_problem_free(problem);
+}

@@ -46,6 +46,7 @@ void tml_arms_complete(double angle[TML_ARMS_MAX][TML_ARMS_MAX], int count, bool
 
 static void complete_planar(double angle[TML_ARMS_MAX][TML_ARMS_MAX]) {
     static const int pair[3][2] = {{0, 1}, {0, 2}, {1, 2}};
+    static const double LEAST = 0.3, MOST = 3.1; /* radians */
     double sum = 0;
     int known = known_angles(angle, 3);
     for (int k = 0; k < 3; k++)
@@ -56,7 +57,7 @@ static void complete_planar(double angle[TML_ARMS_MAX][TML_ARMS_MAX]) {
             value += (2 * TML_PI - sum) / 3;
         else if (isnan(value))
             value = (2 * TML_PI - sum) / (3 - known);
-        set(angle, pair[k][0], pair[k][1], value);
+        set(angle, pair[k][0], pair[k][1], fmin(fmax(value, LEAST), MOST)); /* given angles may be any */
     }
 }
 
@@ -96,6 +97,7 @@ static void complete_from_three(double angle[TML_ARMS_MAX][TML_ARMS_MAX]) {
     tml_sub(v, direction[2], direction[0]);
     tml_cross(axis, u, v);
     double length = sqrt(tml_dot(axis, axis));
+    if (length < 1e-6) return; /* two of them fall on each other */
     double equal = acos(-fabs(tml_dot(axis, direction[0])) / length);
     for (int k = 0; k < 3; k++) set(angle, fourth, index[k], equal);
 }

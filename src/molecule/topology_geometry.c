@@ -430,6 +430,7 @@ static double flat_ring_angle(const tml_topology *t, int32_t a, int32_t centre, 
 
 /* A ring takes its angle, and the other arms share the rest. */
 static double trigonal_angle(const tml_topology *t, int32_t a, int32_t centre, int32_t c) {
+    static const double WIDEST = 165; /* beside two small rings no more is left */
     double own = flat_ring_angle(t, a, centre, c), others = 0;
     int unknown = own > 0 ? 0 : 1;
     int32_t degree = tml_topology_degree(t, centre);
@@ -442,7 +443,7 @@ static double trigonal_angle(const tml_topology *t, int32_t a, int32_t centre, i
             others += other;
             unknown += other == 0;
         }
-    return degree == 3 ? (360 - others) / unknown : 120;
+    return degree == 3 ? fmin((360 - others) / unknown, WIDEST) : 120;
 }
 
 double tml_two_armed_angle(int element, int arm_1, int arm_2) {
