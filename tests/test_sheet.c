@@ -92,7 +92,7 @@ Test(sheet, mistakes_are_told_with_their_line) {
     read_bad("sheet 1\natom P bead\natom Q bead\nlimit P Q nan 3\n", 4, "lower limit");
     read_bad("sheet 1\natom P bead\natom Q bead\nlimit P Q 1 1e999\n", 4, "upper limit");
     read_bad("sheet 1\natom P bead\natom Q bead\nlimit P Q 1 2 weight -1\n", 4, "weight");
-    read_bad("sheet 1\natom P bead\natom Q bead\nlimit P Q 1 2 wieght 1\n", 4, "as, weight, average");
+    read_bad("sheet 1\natom P bead\natom Q bead\nlimit P Q 1 2 wieght 1\n", 4, "as, weight, together, average");
     read_bad("sheet 1\natom P bead\natom P bead\n", 3, "P");
     read_bad("sheet 1\natom P Zz\n", 2, "element");
     read_bad("sheet 1\nsequence A ALA\n", 2, "first residue");
@@ -279,7 +279,7 @@ Test(sheet, errors_name_place_what_was_found_and_what_was_expected) {
     expect_refused(BEADS "limmit A B 1 2\n", 6, 1, "no statement begins with 'limmit'; the nearest: limit");
     expect_refused(BEADS "limit A B 1\n", 6, 12, "the line ends where an upper limit");
     expect_refused(BEADS "limit A B 1 2x\n", 6, 13, "found '2x' where an upper limit in Å, or -");
-    expect_refused(BEADS "limit A B 1 2 3\n", 6, 15, "as, weight, average or the end of the line");
+    expect_refused(BEADS "limit A B 1 2 3\n", 6, 15, "as, weight, together, average or the end of the line");
     expect_refused(BEADS "limit A B 5 4\n", 6, 13, "not below the lower one");
     expect_refused(BEADS "limit A B -1 4\n", 6, 11, "never negative");
     expect_refused(BEADS "limit A B 1 2 as\n", 6, 17, "an id");
