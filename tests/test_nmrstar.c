@@ -204,3 +204,16 @@ Test(refusals, what_cannot_be_read_is_shown_where_it_stands) {
 Test(refusals, a_models_mmcif_is_no_nmr_star) {
     read_bad("data_x\nloop_ _entity_poly_seq.entity_id _entity_poly_seq.num _entity_poly_seq.mon_id 1 1 GLY\n", 1, "without sequence");
 }
+
+/* The archive's file may give a row another residue than its author did, as where both number from one but mean different starts. */
+Test(distances, indices_that_are_not_the_authors_numbers_are_doubted) {
+    tml_problem *p = read_good("data_x\nsave_a\nloop_ _Entity_assembly.ID _Entity_assembly.Entity_ID _Entity_assembly.Asym_ID 1 1 A stop_\nsave_\n"
+                               "save_e\n_Entity.ID 1\nloop_ _Entity_comp_index.ID _Entity_comp_index.Comp_ID 1 GLY 2 SER 3 VAL 4 GLY stop_\nsave_\n"
+                               "save_noe\nloop_ _Gen_dist_constraint.ID _Gen_dist_constraint.Comp_index_ID_1 _Gen_dist_constraint.Atom_ID_1 "
+                               "_Gen_dist_constraint.Auth_seq_ID_1 _Gen_dist_constraint.Comp_index_ID_2 _Gen_dist_constraint.Atom_ID_2 "
+                               "_Gen_dist_constraint.Auth_seq_ID_2 _Gen_dist_constraint.Distance_upper_bound_val "
+                               "1 3 H 1 4 H 2 5 stop_\nsave_\n");
+    cr_assert_eq(p->restraints.distance_count, 1);
+    cr_assert(has_note(p, "2 atoms have another residue index than the author's number (+2"));
+    tml_problem_free(p);
+}

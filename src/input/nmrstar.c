@@ -33,6 +33,9 @@ typedef struct reader {
     tml_index *numbers, *authors; /* (member, index) and (member, author's number) to residues of the outline */
     size_t by_author;  /* addresses that only the author's numbers gave */
     tml_place author_place;
+    size_t shifted;    /* addresses whose index is not the author's number, though that is in the sequence, too … */
+    long shift;        /* … and by how much the last one differs */
+    tml_place shifted_place;
 } reader;
 
 static tml_status read_members(reader *r);
@@ -303,9 +306,28 @@ static void complete_name(const reader *r, tml_address *address) {
     }
 }
 
+/* Where the author's number is an index of the sequence, too, and not the one that the row gives, the archive has matched it elsewhere:
+ * rightly, if the sequence says so, or by mistake. */
+static void watch_numbers(reader *r, const tml_star_loop *loop, size_t row, const columns *of, const tml_address *address) {
+    const tml_star_value *author = tml_star_at(r->star, loop, row, of->at[AUTHOR_NUMBER]);
+    double by_author, by_index;
+    const tml_star_value index = {.text = address->number, .length = (int32_t)strlen(address->number)};
+    if (r->member_count == 0 || !tml_star_number(author, &by_author) || !tml_star_number(&index, &by_index) || by_author == by_index) return;
+    for (size_t m = 0; m < r->member_count; m++) {
+        if (r->members[m].chain != address->chain) continue;
+        char text[32];
+        snprintf(text, sizeof text, "%.0f", by_author);
+        bool said = tml_index_find(r->authors, (int32_t)m, text) >= 0; /* the sequence gives this author's number to a residue */
+        if (said || tml_index_find(r->numbers, (int32_t)m, text) < 0) continue;
+        if (r->shifted++ == 0) r->shifted_place = address->place;
+        r->shift = (long)(by_index - by_author);
+    }
+}
+
 static tml_status read_named(reader *r, const tml_star_loop *loop, size_t row, const columns *of, tml_address *out) {
     tml_status status = read_address(r, loop, row, of, out);
     if (status == TML_OK) complete_name(r, out);
+    if (status == TML_OK) watch_numbers(r, loop, row, of, out);
     return status;
 }
 
@@ -477,6 +499,8 @@ static tml_status note_leftovers(reader *r) {
     static const struct { const char *category, *name; } OTHER[] = {
         {"_Atom_chem_shift", "chemical shifts"}, {"_RDC_constraint", "residual dipolar couplings"}, {"_RDC", "residual dipolar couplings"},
         {"_Peak", "peaks"},                      {"_Spectral_transition", "peaks"},                 {"_Entity_deleted_atom", "deleted atoms"},
+        {"_Gen_dist_constraint_conv_err", "restraints that the archive could not match with atoms"},
+        {"_Gen_dist_constraint_parse_err", "restraints that the archive could not read"},
     };
     tml_problem *problem = r->in.draft->problem;
     tml_status status = TML_OK;
@@ -496,6 +520,11 @@ static tml_status note_leftovers(reader *r) {
             status = tml_problem_add_note(problem, tml_cell_place(&r->in, tag), r->in.error, "%zu rows of %.*s are not used",
                                           loop->row_count, shown > 60 ? 60 : shown, tag->text);
     }
+    if (status == TML_OK && r->shifted > 0)
+        status = tml_problem_add_note(problem, r->shifted_place, r->in.error,
+                                      "%zu atoms have another residue index than the author's number (%+ld at the last), and the sequence "
+                                      "does not say so: were they matched with the right residues?",
+                                      r->shifted, r->shift);
     if (status == TML_OK && r->by_author > 0)
         status = tml_problem_add_note(problem, r->author_place, r->in.error,
                                       "%zu atoms are given by the author's residue numbers alone; these are matched with the sequence",
