@@ -1,5 +1,5 @@
-/* Any bytes as an input file, all the way to the findings: read, smooth, prove, report. Only small problems are smoothed, so that
- * the fuzzer spends its time on inputs and not on arithmetic. */
+/* Any bytes as an input file, all the way to the findings: read, smooth, prove, report; and written as every kind of input. Only small
+ * problems are smoothed, so that the fuzzer spends its time on inputs and not on arithmetic. */
 #include <stdint.h>
 #include <stdio.h>
 #include <stdlib.h>
@@ -44,6 +44,16 @@ static void report(const tml_problem *problem) {
     tml_bounds_free(bounds);
 }
 
+/* What can be read can be written as every kind of input. */
+static void convert(const char *path) {
+    for (tml_convert_format format = TML_CONVERT_SHEET; format <= TML_CONVERT_NMR_STAR; format++) {
+        tml_error error = {0};
+        tml_problem *problem;
+        if (tml_convert(&path, 1, NULL, format, "/dev/null", &problem, &error) != TML_OK) abort();
+        tml_problem_free(problem);
+    }
+}
+
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     tml_error error = {0};
     tml_problem *problem = NULL;
@@ -51,6 +61,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size) {
     tml_status status = tml_problem_read(&path, 1, NULL, &problem, &error);
     if (status == TML_OK) {
         report(problem);
+        convert(path);
     } else if (error.message[0] == '\0' || (status != TML_BAD_INPUT && status != TML_TOO_LARGE)) {
         abort();
     }
