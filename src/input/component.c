@@ -1,5 +1,6 @@
-/* component.c: component dictionaries: the chem_comp categories of mmCIF, as the archive of the Protein Data Bank and monomer libraries
- * write them. Source: PDBx/mmCIF dictionary, version 5; value_dist_nucleus and plane_atom as in the CIF of monomer libraries.
+/* component.c: component dictionaries: the chem_comp categories of mmCIF, as the archive of the Protein Data Bank and monomer
+ * libraries write them. Source: PDBx/mmCIF dictionary, version 5; value_dist_nucleus and plane_atom as in the CIF of monomer
+ * libraries.
  *
  *   whole files    told by content, or named by a sheet
  *   values         names, numbers, atoms of a component
@@ -50,9 +51,12 @@ bool tml_is_component(const tml_star *star) {
 }
 
 tml_status tml_read_components(tml_draft *draft, tml_star *star, int32_t file, tml_error *error) {
-    static const struct { const char *category; category_fn *read; } CATEGORIES[] = {
-        {"_chem_comp_atom", read_atoms},       {"_chem_comp_bond", read_bonds}, {"_chem_comp_angle", read_angles},
-        {"_chem_comp_tor", read_torsions},     {"_chem_comp_chir", read_centres}, {"_chem_comp_plane_atom", read_plane_atoms},
+    static const struct {
+        const char *category;
+        category_fn *read;
+    } CATEGORIES[] = {
+        {"_chem_comp_atom", read_atoms},   {"_chem_comp_bond", read_bonds},   {"_chem_comp_angle", read_angles},
+        {"_chem_comp_tor", read_torsions}, {"_chem_comp_chir", read_centres}, {"_chem_comp_plane_atom", read_plane_atoms},
         {"_chem_comp", read_types},
     };
     reader in = {draft, star, file, draft->outline.component_count, draft->outline.component_count, error};
@@ -215,7 +219,8 @@ static tml_status atom_of(const reader *in, const tml_component *component, cons
 }
 
 /* A number between two limits, or null: NAN. */
-static tml_status number_of(const reader *in, const tml_star_value *value, double least, double most, const char *what, double *out) {
+static tml_status number_of(const reader *in, const tml_star_value *value, double least, double most, const char *what,
+                            double *out) {
     *out = NAN;
     if (tml_star_is_null(value)) return TML_OK;
     return tml_star_number(value, out) && *out >= least && *out <= most ? TML_OK : expected(in, value, what);
@@ -231,7 +236,8 @@ enum { COMP, ATOM, SYMBOL, CHARGE, LEAVING, IDEAL, MODEL = IDEAL + 3, PLAIN = MO
 
 static tml_status add_component(reader *in, const char *name, tml_place place, tml_component **out) {
     tml_outline *outline = &in->draft->outline;
-    if (!tml_grow(&outline->components, &outline->component_capacity, outline->component_count + 1, sizeof *outline->components))
+    if (!tml_grow(&outline->components, &outline->component_capacity, outline->component_count + 1,
+                  sizeof *outline->components))
         return tml_no_memory(in->error);
     *out = tml_alloc(1, sizeof **out);
     if (*out == NULL) return tml_no_memory(in->error);
@@ -248,7 +254,8 @@ static bool is_no_number(const tml_star_value *value) {
     return tml_star_is(value, "nan") || (stars > 0 && stars == value->length);
 }
 
-static tml_status place_atom(const reader *in, const tml_star_loop *loop, size_t row, const int *columns, tml_component_atom *atom) {
+static tml_status place_atom(const reader *in, const tml_star_loop *loop, size_t row, const int *columns,
+                             tml_component_atom *atom) {
     static const double FAR = 10000; /* Å */
     double *const sets[3] = {atom->xyz, atom->model_xyz, atom->model_xyz};
     for (int k = 0; k < 3; k++) atom->xyz[k] = atom->model_xyz[k] = NAN;
@@ -275,8 +282,10 @@ static tml_status read_atom(reader *in, const tml_star_loop *loop, size_t row, c
     double charge;
     char element[4] = "";
     tml_status status = name_of(in, id, "a component's name", &component_name);
-    if (status == TML_OK) status = name_of(in, name, "an atom's name of at most 32 characters, not beginning with +, - or =", &atom.name);
-    if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns[CHARGE]), -9, 9, "a formal charge", &charge);
+    if (status == TML_OK)
+        status = name_of(in, name, "an atom's name of at most 32 characters, not beginning with +, - or =", &atom.name);
+    if (status == TML_OK)
+        status = number_of(in, tml_star_at(star, loop, row, columns[CHARGE]), -9, 9, "a formal charge", &charge);
     if (status == TML_OK) status = place_atom(in, loop, row, columns, &atom);
     if (status != TML_OK) return status;
     if (symbol->length < (int)sizeof element) memcpy(element, symbol->text, (size_t)symbol->length);
@@ -298,9 +307,21 @@ static tml_status read_atom(reader *in, const tml_star_loop *loop, size_t row, c
 }
 
 static tml_status read_atoms(reader *in, const tml_star_loop *loop) {
-    static const char *const NAMES[] = {"comp_id", "atom_id", "type_symbol", "charge", "pdbx_leaving_atom_flag",
-                                        "pdbx_model_Cartn_x_ideal", "pdbx_model_Cartn_y_ideal", "pdbx_model_Cartn_z_ideal",
-                                        "model_Cartn_x", "model_Cartn_y", "model_Cartn_z", "x", "y", "z", NULL};
+    static const char *const NAMES[] = {"comp_id",
+                                        "atom_id",
+                                        "type_symbol",
+                                        "charge",
+                                        "pdbx_leaving_atom_flag",
+                                        "pdbx_model_Cartn_x_ideal",
+                                        "pdbx_model_Cartn_y_ideal",
+                                        "pdbx_model_Cartn_z_ideal",
+                                        "model_Cartn_x",
+                                        "model_Cartn_y",
+                                        "model_Cartn_z",
+                                        "x",
+                                        "y",
+                                        "z",
+                                        NULL};
     int columns[ATOM_COLUMNS];
     tml_status status = columns_of(in, loop, NAMES, 3, columns);
     for (size_t row = 0; status == TML_OK && row < loop->row_count; row++) status = read_atom(in, loop, row, columns);
@@ -325,14 +346,18 @@ static void choose_coordinates(reader *in) {
 /* ---- bonds ---- */
 
 static tml_status order_of(const reader *in, const tml_star_value *value, tml_order *out) {
-    static const struct { const char *word; tml_order order; } WORDS[] = {
-        {"sin", TML_ORDER_SINGLE},  {"dou", TML_ORDER_DOUBLE},      {"tri", TML_ORDER_TRIPLE}, {"quad", TML_ORDER_TRIPLE},
-        {"aro", TML_ORDER_AROMATIC}, {"del", TML_ORDER_DELOCALISED}, {"pi", TML_ORDER_DELOCALISED}, {"metal", TML_ORDER_SINGLE},
-        {"poly", TML_ORDER_SINGLE},  {"coval", TML_ORDER_SINGLE},     {"coord", TML_ORDER_SINGLE}, {"dative", TML_ORDER_SINGLE}};
+    static const struct {
+        const char *word;
+        tml_order order;
+    } WORDS[] = {{"sin", TML_ORDER_SINGLE},     {"dou", TML_ORDER_DOUBLE},   {"tri", TML_ORDER_TRIPLE},
+                 {"quad", TML_ORDER_TRIPLE},    {"aro", TML_ORDER_AROMATIC}, {"del", TML_ORDER_DELOCALISED},
+                 {"pi", TML_ORDER_DELOCALISED}, {"metal", TML_ORDER_SINGLE}, {"poly", TML_ORDER_SINGLE},
+                 {"coval", TML_ORDER_SINGLE},   {"coord", TML_ORDER_SINGLE}, {"dative", TML_ORDER_SINGLE}};
     *out = TML_ORDER_SINGLE;
     if (tml_star_is_null(value)) return TML_OK;
     for (size_t i = 0; i < sizeof WORDS / sizeof *WORDS; i++)
-        if ((size_t)value->length >= strlen(WORDS[i].word) && strncasecmp(value->text, WORDS[i].word, strlen(WORDS[i].word)) == 0) {
+        if ((size_t)value->length >= strlen(WORDS[i].word) &&
+            strncasecmp(value->text, WORDS[i].word, strlen(WORDS[i].word)) == 0) {
             *out = WORDS[i].order;
             return TML_OK;
         }
@@ -341,7 +366,8 @@ static tml_status order_of(const reader *in, const tml_star_value *value, tml_or
 
 static tml_status read_bonds(reader *in, const tml_star_loop *loop) {
     enum { ID, FIRST, SECOND, ORDER, TYPE, AROMATIC, FLAG, LENGTH, COLUMNS };
-    static const char *const NAMES[] = {"comp_id", "atom_id_1", "atom_id_2", "value_order", "type", "aromatic", "pdbx_aromatic_flag", "value_dist", NULL};
+    static const char *const NAMES[] = {"comp_id",  "atom_id_1",          "atom_id_2",  "value_order", "type",
+                                        "aromatic", "pdbx_aromatic_flag", "value_dist", NULL};
     const tml_star *star = in->star;
     int columns[COLUMNS];
     tml_status status = columns_of(in, loop, NAMES, 3, columns);
@@ -352,11 +378,14 @@ static tml_status read_bonds(reader *in, const tml_star_loop *loop) {
         status = component_of(in, tml_star_at(star, loop, row, columns[ID]), &component);
         if (status == TML_OK) status = atom_of(in, component, tml_star_at(star, loop, row, columns[FIRST]), &bond.a);
         if (status == TML_OK) status = atom_of(in, component, second, &bond.b);
-        if (status == TML_OK) status = order_of(in, tml_star_at(star, loop, row, columns[columns[ORDER] >= 0 ? ORDER : TYPE]), &bond.order);
-        if (status == TML_OK) status = number_of(in, tml_star_at(star, loop, row, columns[LENGTH]), 0.3, 10, "a bond length in Å", &bond.length);
+        if (status == TML_OK)
+            status = order_of(in, tml_star_at(star, loop, row, columns[columns[ORDER] >= 0 ? ORDER : TYPE]), &bond.order);
+        if (status == TML_OK)
+            status = number_of(in, tml_star_at(star, loop, row, columns[LENGTH]), 0.3, 10, "a bond length in Å", &bond.length);
         if (status != TML_OK) break;
         if (bond.a == bond.b) return expected(in, second, "another atom");
-        bool aromatic = is_yes(tml_star_at(star, loop, row, columns[AROMATIC])) || is_yes(tml_star_at(star, loop, row, columns[FLAG]));
+        bool aromatic =
+            is_yes(tml_star_at(star, loop, row, columns[AROMATIC])) || is_yes(tml_star_at(star, loop, row, columns[FLAG]));
         if (aromatic && bond.order <= TML_ORDER_DOUBLE) bond.order = TML_ORDER_AROMATIC;
         bool known = false;
         for (size_t i = 0; i < component->bond_count; i++)
@@ -374,8 +403,8 @@ static tml_status read_bonds(reader *in, const tml_star_loop *loop) {
 /* ---- angles, torsions, centres ---- */
 
 /* The atoms in columns 1 to `count` of a row, after its component in column 0. Null atoms leave *whole false. */
-static tml_status read_row(reader *in, const tml_star_loop *loop, size_t row, const int *columns, int count, tml_component **component, int32_t *atoms,
-                           bool *whole) {
+static tml_status read_row(reader *in, const tml_star_loop *loop, size_t row, const int *columns, int count,
+                           tml_component **component, int32_t *atoms, bool *whole) {
     tml_status status = component_of(in, tml_star_at(in->star, loop, row, columns[0]), component);
     *whole = true;
     for (int k = 0; status == TML_OK && k < count && *whole; k++) {
@@ -413,7 +442,8 @@ static tml_status read_angles(reader *in, const tml_star_loop *loop) {
 }
 
 static tml_status read_torsions(reader *in, const tml_star_loop *loop) {
-    static const char *const NAMES[] = {"comp_id", "atom_id_1", "atom_id_2", "atom_id_3", "atom_id_4", "value_angle", "value_angle_esd", NULL};
+    static const char *const NAMES[] = {"comp_id",   "atom_id_1",   "atom_id_2",       "atom_id_3",
+                                        "atom_id_4", "value_angle", "value_angle_esd", NULL};
     static const double USUAL_SPREAD = 20;
     int columns[7];
     tml_status status = columns_of(in, loop, NAMES, 5, columns);
@@ -425,11 +455,13 @@ static tml_status read_torsions(reader *in, const tml_star_loop *loop) {
         const tml_star_value *value = tml_star_at(in->star, loop, row, columns[5]);
         status = read_row(in, loop, row, columns, 4, &component, atoms, &whole);
         if (status == TML_OK) status = number_of(in, value, -360, 360, "an angle in degrees", &degrees);
-        if (status == TML_OK) status = number_of(in, tml_star_at(in->star, loop, row, columns[6]), 0, 1000, "an angle in degrees", &spread);
+        if (status == TML_OK)
+            status = number_of(in, tml_star_at(in->star, loop, row, columns[6]), 0, 1000, "an angle in degrees", &spread);
         if (status != TML_OK) break;
         if (!whole || isnan(degrees)) continue;
         if (component->torsion_count == MOST_TERMS) return too_many(in, value, "torsions", MOST_TERMS);
-        if (!tml_grow(&component->torsions, &component->torsion_capacity, component->torsion_count + 1, sizeof *component->torsions))
+        if (!tml_grow(&component->torsions, &component->torsion_capacity, component->torsion_count + 1,
+                      sizeof *component->torsions))
             return tml_no_memory(in->error);
         component->torsions[component->torsion_count++] =
             (tml_component_torsion){atoms[0], atoms[1], atoms[2], atoms[3], degrees, isnan(spread) ? USUAL_SPREAD : spread};
@@ -439,7 +471,8 @@ static tml_status read_torsions(reader *in, const tml_star_loop *loop) {
 
 /* Centres by the sign of their volume; "both" and words for metals mean none. A category without arms is passed over. */
 static tml_status read_centres(reader *in, const tml_star_loop *loop) {
-    static const char *const NAMES[] = {"comp_id", "atom_id_centre", "atom_id_1", "atom_id_2", "atom_id_3", "volume_sign", NULL};
+    static const char *const NAMES[] = {"comp_id",   "atom_id_centre", "atom_id_1", "atom_id_2",
+                                        "atom_id_3", "volume_sign",    NULL};
     int columns[6];
     if (tml_star_column(in->star, loop, NAMES[1]) < 0) return TML_OK;
     tml_status status = columns_of(in, loop, NAMES, 6, columns);
@@ -452,10 +485,14 @@ static tml_status read_centres(reader *in, const tml_star_loop *loop) {
         if (status != TML_OK) break;
         if (!whole) continue;
         if (component->centre_count == MOST_TERMS) return too_many(in, sign, "centres", MOST_TERMS);
-        if (!tml_grow(&component->centres, &component->centre_capacity, component->centre_count + 1, sizeof *component->centres))
+        if (!tml_grow(&component->centres, &component->centre_capacity, component->centre_count + 1,
+                      sizeof *component->centres))
             return tml_no_memory(in->error);
-        int hand = sign->length >= 3 && strncasecmp(sign->text, "pos", 3) == 0 ? 1 : sign->length >= 3 && strncasecmp(sign->text, "neg", 3) == 0 ? -1 : 0;
-        component->centres[component->centre_count++] = (tml_component_centre){atoms[0], {atoms[1], atoms[2], atoms[3]}, (int8_t)hand};
+        int hand = sign->length >= 3 && strncasecmp(sign->text, "pos", 3) == 0   ? 1
+                   : sign->length >= 3 && strncasecmp(sign->text, "neg", 3) == 0 ? -1
+                                                                                 : 0;
+        component->centres[component->centre_count++] =
+            (tml_component_centre){atoms[0], {atoms[1], atoms[2], atoms[3]}, (int8_t)hand};
     }
     return status;
 }
@@ -463,16 +500,19 @@ static tml_status read_centres(reader *in, const tml_star_loop *loop) {
 /* ---- planes, types ---- */
 
 /* After the last atom of the same plane. */
-static tml_status add_plane_atom(reader *in, tml_component *component, tml_component_plane_atom added, const tml_star_value *value) {
+static tml_status add_plane_atom(reader *in, tml_component *component, tml_component_plane_atom added,
+                                 const tml_star_value *value) {
     if (component->plane_atom_count == MOST_TERMS) return too_many(in, value, "atoms in planes", MOST_TERMS);
-    if (!tml_grow(&component->plane_atoms, &component->plane_atom_capacity, component->plane_atom_count + 1, sizeof *component->plane_atoms))
+    if (!tml_grow(&component->plane_atoms, &component->plane_atom_capacity, component->plane_atom_count + 1,
+                  sizeof *component->plane_atoms))
         return tml_no_memory(in->error);
     size_t at = component->plane_atom_count;
     while (at > 0 && component->plane_atoms[at - 1].plane != added.plane) at--;
     if (at == 0) at = component->plane_atom_count;
     for (size_t i = at; i > 0 && component->plane_atoms[i - 1].plane == added.plane; i--)
         if (component->plane_atoms[i - 1].atom == added.atom) return TML_OK;
-    memmove(&component->plane_atoms[at + 1], &component->plane_atoms[at], (component->plane_atom_count - at) * sizeof *component->plane_atoms);
+    memmove(&component->plane_atoms[at + 1], &component->plane_atoms[at],
+            (component->plane_atom_count - at) * sizeof *component->plane_atoms);
     component->plane_atoms[at] = added;
     component->plane_atom_count++;
     return TML_OK;
@@ -521,7 +561,8 @@ static tml_status refuse_twins(const tml_draft *draft, size_t index, tml_error *
         const tml_component *one = draft->outline.components[k];
         if (one->name == two->name)
             return tml_fail_at(error, TML_BAD_INPUT, files[two->place.file], two->place.line, two->place.column,
-                               "component %.32s is described already, at %s:%d", two->name, files[one->place.file], (int)one->place.line);
+                               "component %.32s is described already, at %s:%d", two->name, files[one->place.file],
+                               (int)one->place.line);
     }
     return TML_OK;
 }
@@ -532,15 +573,16 @@ tml_status tml_make_components(tml_draft *draft, tml_error *error) {
     for (size_t i = 0; status == TML_OK && i < outline->component_count; i++) {
         tml_component *component = outline->components[i];
         bool used = false;
-        for (size_t r = 0; r < outline->residue_count && !used; r++) used = strcmp(outline->residues[r].name, component->name) == 0;
+        for (size_t r = 0; r < outline->residue_count && !used; r++)
+            used = strcmp(outline->residues[r].name, component->name) == 0;
         if (!used) continue;
         status = refuse_twins(draft, i, error);
         if (status == TML_OK) status = tml_component_make(component, draft->problem->pool, error);
         for (int k = 0; status == TML_OK && k < component->note_count; k++)
             status = tml_problem_add_note(draft->problem, component->place, error, "%s", component->notes[k]);
         if (status == TML_OK && tml_find_builtin(component->name) != NULL)
-            status = tml_problem_add_note(draft->problem, component->place, error, "%s is used as described here, not as built in",
-                                          component->name);
+            status = tml_problem_add_note(draft->problem, component->place, error,
+                                          "%s is used as described here, not as built in", component->name);
     }
     return status;
 }

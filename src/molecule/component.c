@@ -6,16 +6,14 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "base/best_plane.h"
 #include "base/vector.h"
 #include "molecule/component_making.h"
 #include "molecule/elements.h"
 
-/* Contents: the steps - what the coordinates are worth - planes - atoms - bonds - angles - torsions - centres - charges - rows */
+/* Contents: the steps - what the coordinates are worth - atoms - bonds - angles - torsions - centres - charges - rows */
 
 static tml_status make_topology(tml_component_making *making);
 static tml_status judge_coordinates(tml_component_making *making);
-static tml_status make_planes(tml_component_making *making);
 static tml_status make_atoms(tml_component_making *making);
 static bool make_bonds(tml_component_making *making);
 static bool make_angles(tml_component_making *making);
@@ -25,14 +23,16 @@ static bool make_charges(tml_component_making *making);
 static tml_status end_rows(tml_component_making *making);
 
 tml_status tml_component_make(tml_component *component, tml_strings *pool, tml_error *error) {
-    tml_component_making making = {.component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1, .p = -1, .root = -1};
+    tml_component_making making = {
+        .component = component, .pool = pool, .error = error, .n = -1, .ca = -1, .c = -1, .o = -1, .p = -1, .root = -1};
     making.dropped = tml_alloc(component->atom_count, sizeof *making.dropped);
     making.flat = tml_alloc(component->atom_count, sizeof *making.flat);
     making.doubted = tml_alloc(component->atom_count, sizeof *making.doubted);
-    tml_status status = making.dropped == NULL || making.flat == NULL || making.doubted == NULL ? tml_no_memory(error) : make_topology(&making);
+    tml_status status =
+        making.dropped == NULL || making.flat == NULL || making.doubted == NULL ? tml_no_memory(error) : make_topology(&making);
     if (status == TML_OK) status = judge_coordinates(&making);
     if (status == TML_OK) status = tml_component_join_chain(&making);
-    if (status == TML_OK) status = make_planes(&making);
+    if (status == TML_OK) status = tml_component_make_planes(&making);
     if (status == TML_OK) status = make_atoms(&making);
     if (status == TML_OK && !(make_bonds(&making) && make_angles(&making))) status = tml_no_memory(error);
     if (status == TML_OK) status = make_torsions(&making);
@@ -84,7 +84,8 @@ tml_status tml_component_note(tml_component_making *making, const char *format, 
 static tml_status make_topology(tml_component_making *making) {
     const tml_component *component = making->component;
     tml_topology *topology = &making->topology;
-    if (!tml_topology_new(topology, (int32_t)component->atom_count, (int32_t)component->bond_count)) return tml_no_memory(making->error);
+    if (!tml_topology_new(topology, (int32_t)component->atom_count, (int32_t)component->bond_count))
+        return tml_no_memory(making->error);
     int32_t hydrogens = 0, carbons = 0;
     for (size_t i = 0; i < component->atom_count; i++) {
         topology->elements[i] = component->atoms[i].element;
@@ -101,17 +102,8 @@ static tml_status make_topology(tml_component_making *making) {
 
 /* ---- what the coordinates are worth ---- */
 
-static const double *place_of(const tml_component_making *making, int32_t atom) {
-    return making->component->atoms[atom].xyz;
-}
-
-static bool all_placed(const tml_component_making *making, const int32_t *atoms, int count) {
-    for (int k = 0; k < count; k++)
-        if (isnan(place_of(making, atoms[k])[0])) return false;
-    return making->placed;
-}
-
-/* Atoms whose bonds are nowhere near what elements allow have no coordinates: zeros, a drawing. Where they are many, none have. */
+/* Atoms whose bonds are nowhere near what elements allow have no coordinates: zeros, a drawing. Where they are many, none have.
+ */
 static tml_status judge_coordinates(tml_component_making *making) {
     static const double SHORTEST = 0.75, LONGEST = 1.35; /* of the usual length */
     enum { ONE_IN = 10 };
@@ -122,7 +114,7 @@ static tml_status judge_coordinates(tml_component_making *making) {
     for (int pass = 0; pass < 2 && placed > 0; pass++) /* find them; then forget them */
         for (size_t i = 0; i < component->bond_count; i++) {
             const int32_t ends[2] = {component->bonds[i].a, component->bonds[i].b};
-            double found = tml_distance(place_of(making, ends[0]), place_of(making, ends[1])),
+            double found = tml_distance(tml_placed_at(making, ends[0]), tml_placed_at(making, ends[1])),
                    usual = tml_topology_length(&making->topology, (int32_t)i);
             if (isnan(found) || (found >= SHORTEST * usual && found <= LONGEST * usual)) continue;
             if (pass == 0 && bad++ == 0) first = i;
@@ -131,243 +123,19 @@ static tml_status judge_coordinates(tml_component_making *making) {
     if (bad == 0) return TML_OK;
     making->rejected = bad * ONE_IN > component->bond_count;
     making->placed = !making->rejected;
-    return tml_component_note(making, "%s coordinates are not used: %.32s and %.32s%s are bonded, but stand far from a bond's length apart",
-                              making->rejected ? "its" : "some", component->atoms[component->bonds[first].a].name,
-                              component->atoms[component->bonds[first].b].name, bad > 1 ? ", as others," : "");
+    return tml_component_note(
+        making, "%s coordinates are not used: %.32s and %.32s%s are bonded, but stand far from a bond's length apart",
+        making->rejected ? "its" : "some", component->atoms[component->bonds[first].a].name,
+        component->atoms[component->bonds[first].b].name, bad > 1 ? ", as others," : "");
 }
 
 /* Degrees; NAN without coordinates, and where two arms fall on each other. */
 static double measured_angle(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
     static const double LEAST = 25;
     const int32_t atoms[3] = {a, b, c};
-    if (!all_placed(making, atoms, 3)) return NAN;
-    double angle = tml_angle_of(place_of(making, a), place_of(making, b), place_of(making, c)) * 180 / TML_PI;
+    if (!tml_all_placed(making, atoms, 3)) return NAN;
+    double angle = tml_angle_of(tml_placed_at(making, a), tml_placed_at(making, b), tml_placed_at(making, c)) * 180 / TML_PI;
     return angle < LEAST ? NAN : angle;
-}
-
-/* Signed volume of three unit arms; NAN without coordinates. */
-static double measured_volume(const tml_component_making *making, int32_t centre, const int32_t arms[3]) {
-    const int32_t atoms[4] = {centre, arms[0], arms[1], arms[2]};
-    if (!all_placed(making, atoms, 4)) return NAN;
-    double volume = tml_volume_of(place_of(making, centre), place_of(making, arms[0]), place_of(making, arms[1]), place_of(making, arms[2]));
-    for (int k = 0; k < 3; k++) volume /= tml_distance(place_of(making, centre), place_of(making, arms[k]));
-    return volume;
-}
-
-/* ---- planes ---- */
-
-static tml_status given_planes(tml_component_making *making);
-static tml_status planes_of_topology(tml_component_making *making);
-
-static tml_status make_planes(tml_component_making *making) {
-    return making->component->plane_atom_count > 0 ? given_planes(making) : planes_of_topology(making);
-}
-
-/* Atoms of the backbone have their plane in the rows of all amino acids. */
-static bool is_backbone(const tml_component_making *making, int32_t atom) {
-    return making->ca >= 0 && (atom == making->n || atom == making->ca || atom == making->c || atom == making->o);
-}
-
-bool tml_component_add_plane(tml_component_making *making, const char *const *names, size_t count) {
-    tml_component *component = making->component;
-    size_t length = 0;
-    for (size_t i = 0; i < count; i++) length += strlen(names[i]) + 1;
-    char *text = tml_alloc(length + 1, 1);
-    if (text == NULL) return false;
-    char *end = text;
-    for (size_t i = 0; i < count; i++) {
-        size_t size = strlen(names[i]);
-        if (i > 0) *end++ = ' ';
-        memcpy(end, names[i], size);
-        end += size;
-    }
-    const char *kept = tml_strings_add(making->pool, text);
-    free(text);
-    if (kept == NULL || !tml_grow(&component->planes, &component->plane_capacity, component->plane_count + 1, sizeof *component->planes))
-        return false;
-    component->planes[component->plane_count++] = kept;
-    return true;
-}
-
-/* A plane of these atoms, as far as they are there; those with two bonds in it are flat. */
-static bool add_plane(tml_component_making *making, const int32_t *atoms, size_t count) {
-    enum { SMALLEST = 4, ROOM = 64 };
-    const char *names[ROOM];
-    size_t kept = 0, outside = 0;
-    for (size_t i = 0; i < count; i++) {
-        if (making->dropped[atoms[i]] || kept == ROOM) continue;
-        names[kept++] = making->component->atoms[atoms[i]].name;
-        outside += !is_backbone(making, atoms[i]);
-    }
-    for (size_t i = 0; i < count; i++) {
-        int inside = 0;
-        for (size_t k = 0; k < count; k++) inside += tml_topology_bond_between(&making->topology, atoms[i], atoms[k]) >= 0;
-        if (inside >= 2 && tml_topology_degree(&making->topology, atoms[i]) <= 3) making->flat[atoms[i]] = true;
-    }
-    if (kept < SMALLEST || outside == 0) return true;
-    return tml_component_add_plane(making, names, kept);
-}
-
-static bool add_plane_about(tml_component_making *making, int32_t atom);
-static bool join(const tml_topology *topology, int32_t atom, bool with_neighbours, int32_t *set, size_t *count, size_t most);
-
-enum { PLANE_MOST = 64 };
-
-/* Do the coordinates contradict a plane? */
-static bool is_bent(const tml_component_making *making, const int32_t *atoms, size_t count) {
-    static const double OFF = 0.1; /* Å, r.m.s. */
-    int32_t index[PLANE_MOST], placed = 0;
-    double xyz[3 * PLANE_MOST];
-    for (size_t i = 0; i < count; i++) {
-        if (making->dropped[atoms[i]] || !all_placed(making, &atoms[i], 1)) continue;
-        memcpy(&xyz[3 * placed], place_of(making, atoms[i]), 3 * sizeof *xyz);
-        index[placed] = placed;
-        placed++;
-    }
-    return placed > 3 && tml_off_plane(index, placed, xyz) > OFF;
-}
-
-static bool is_trigonal(const tml_component_making *making, int32_t atom);
-static bool ring_is_flat(const tml_component_making *making, int32_t ring);
-
-/* What is flat within a plane that does not hold as a whole: its rings with what hangs on them, and its atoms with their neighbours. */
-static bool add_parts(tml_component_making *making, const tml_component_plane_atom *plane, size_t count) {
-    const tml_topology *topology = &making->topology;
-    for (int32_t r = 0; r < topology->ring_count; r++) {
-        int32_t set[PLANE_MOST];
-        size_t held = 0, size = 0;
-        for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++) {
-            for (size_t i = 0; i < count; i++) held += plane[i].atom == topology->ring_atoms[k];
-            join(topology, topology->ring_atoms[k], true, set, &size, PLANE_MOST);
-        }
-        if (held == (size_t)tml_topology_ring_size(topology, r) && ring_is_flat(making, r) && !add_plane(making, set, size)) return false;
-    }
-    for (size_t i = 0; i < count; i++)
-        if (is_trigonal(making, plane[i].atom) && !add_plane_about(making, plane[i].atom)) return false;
-    return true;
-}
-
-/* Planes as the dictionary lists them; one that is too large for the tables, or bent in the coordinates, goes by its parts. */
-static tml_status given_planes(tml_component_making *making) {
-    const tml_component *component = making->component;
-    for (size_t first = 0, next; first < component->plane_atom_count; first = next) {
-        int32_t atoms[PLANE_MOST];
-        size_t count = 0;
-        for (next = first; next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
-             next++)
-            if (count < PLANE_MOST) atoms[count++] = component->plane_atoms[next].atom;
-        bool whole = next - first <= PLANE_MOST && !is_bent(making, atoms, count);
-        if (!(whole ? add_plane(making, atoms, count) : add_parts(making, &component->plane_atoms[first], next - first)))
-            return tml_no_memory(making->error);
-    }
-    return TML_OK;
-}
-
-/* An atom and all its neighbours. */
-static bool add_plane_about(tml_component_making *making, int32_t atom) {
-    const tml_topology *topology = &making->topology;
-    int32_t atoms[4] = {atom}, degree = tml_topology_degree(topology, atom);
-    if (degree != 3) return true;
-    for (int32_t k = 0; k < 3; k++) atoms[1 + k] = topology->neighbours[topology->first[atom] + k];
-    return add_plane(making, atoms, 4);
-}
-
-/* Trigonal, and so in the coordinates too: nitrogen beside a double bond may be a pyramid. */
-static bool is_trigonal(const tml_component_making *making, int32_t atom) {
-    static const double FLAT = 0.25; /* of the volume of unit arms; a tetrahedron's is 0.77 */
-    const tml_topology *topology = &making->topology;
-    if (topology->shapes[atom] != TML_SHAPE_TRIGONAL) return false;
-    if (tml_topology_degree(topology, atom) != 3) return true;
-    double volume = measured_volume(making, atom, &topology->neighbours[topology->first[atom]]);
-    return isnan(volume) || fabs(volume) < FLAT;
-}
-
-static bool ring_is_flat(const tml_component_making *making, int32_t ring) {
-    enum { SMALLEST = 5, LARGEST = 7 };
-    static const double MOST_TURN = 15; /* degrees about its bonds */
-    const tml_topology *topology = &making->topology;
-    const int32_t *atoms = &topology->ring_atoms[topology->ring_first[ring]];
-    int32_t size = tml_topology_ring_size(topology, ring);
-    if (size < SMALLEST || size > LARGEST) return false;
-    for (int32_t i = 0; i < size; i++)
-        if (!is_trigonal(making, atoms[i])) return false;
-    for (int32_t i = 0; i < size; i++) {
-        const int32_t four[4] = {atoms[i], atoms[(i + 1) % size], atoms[(i + 2) % size], atoms[(i + 3) % size]};
-        if (!all_placed(making, four, 4)) continue;
-        double turn = tml_dihedral_of(place_of(making, four[0]), place_of(making, four[1]), place_of(making, four[2]), place_of(making, four[3]));
-        if (fabs(turn) * 180 / TML_PI > MOST_TURN) return false;
-    }
-    return true;
-}
-
-/* An atom and its neighbours into a set without repetition; false where it would grow too large. */
-static bool join(const tml_topology *topology, int32_t atom, bool with_neighbours, int32_t *set, size_t *count, size_t most) {
-    for (int32_t k = topology->first[atom] - 1; k < (with_neighbours ? topology->first[atom + 1] : topology->first[atom]); k++) {
-        int32_t next = k < topology->first[atom] ? atom : topology->neighbours[k];
-        size_t i = 0;
-        while (i < *count && set[i] != next) i++;
-        if (i < *count) continue;
-        if (*count == most) return false;
-        set[(*count)++] = next;
-    }
-    return true;
-}
-
-enum { FUSED_MOST = 48 };
-
-/* A flat ring with what hangs on it and the flat rings that share bonds with it; `taken` marks the rings. */
-static bool add_ring_system(tml_component_making *making, int32_t ring, bool *flat, bool *taken) {
-    const tml_topology *topology = &making->topology;
-    int32_t set[FUSED_MOST];
-    size_t count = 0;
-    for (int32_t k = topology->ring_first[ring]; k < topology->ring_first[ring + 1]; k++)
-        join(topology, topology->ring_atoms[k], true, set, &count, FUSED_MOST);
-    taken[ring] = true;
-    for (bool grown = true; grown;) {
-        grown = false;
-        for (int32_t r = 0; r < topology->ring_count; r++) {
-            if (taken[r] || !flat[r]) continue;
-            size_t shared = 0, before = count;
-            for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++)
-                for (size_t i = 0; i < count; i++) shared += set[i] == topology->ring_atoms[k];
-            if (shared < 3) continue; /* a shared bond and, as its neighbour, one more atom of the ring at each end of it */
-            bool fits = true;
-            for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1] && fits; k++)
-                fits = join(topology, topology->ring_atoms[k], true, set, &count, FUSED_MOST);
-            if (!fits)
-                count = before;
-            else
-                taken[r] = grown = true;
-        }
-    }
-    return add_plane(making, set, count);
-}
-
-static tml_status planes_of_topology(tml_component_making *making) {
-    const tml_topology *topology = &making->topology;
-    bool *flat = tml_alloc((size_t)topology->ring_count, sizeof *flat), *taken = tml_alloc((size_t)topology->ring_count, sizeof *taken);
-    bool room = flat != NULL && taken != NULL;
-    for (int32_t r = 0; room && r < topology->ring_count; r++) flat[r] = ring_is_flat(making, r);
-    for (int32_t r = 0; room && r < topology->ring_count; r++)
-        if (flat[r] && !taken[r]) room = add_ring_system(making, r, flat, taken);
-    for (int32_t i = 0; room && i < topology->bond_count; i++) {
-        const tml_topology_bond *bond = &topology->bonds[i];
-        if (!tml_topology_is_stiff(topology, i) || !is_trigonal(making, bond->a) || !is_trigonal(making, bond->b)) continue;
-        if (bond->ring > 0 && bond->ring <= 7) continue; /* the ring's own plane, or none */
-        int32_t set[8];
-        size_t count = 0;
-        join(topology, bond->a, true, set, &count, 8);
-        join(topology, bond->b, true, set, &count, 8);
-        room = add_plane(making, set, count);
-    }
-    for (int32_t i = 0; room && i < topology->atom_count; i++)
-        if (is_trigonal(making, i)) {
-            making->flat[i] = true;
-            room = add_plane_about(making, i);
-        }
-    free(flat);
-    free(taken);
-    return room ? TML_OK : tml_no_memory(making->error);
 }
 
 /* ---- atoms ---- */
@@ -375,13 +143,16 @@ static tml_status planes_of_topology(tml_component_making *making) {
 static double length_of(const tml_component_making *making, int32_t bond);
 
 bool tml_component_add_atom(tml_component *component, tml_atom_row row) {
-    if (!tml_grow(&component->atom_rows, &component->atom_row_capacity, component->atom_row_count + 1, sizeof *component->atom_rows))
+    if (!tml_grow(&component->atom_rows, &component->atom_row_capacity, component->atom_row_count + 1,
+                  sizeof *component->atom_rows))
         return false;
     component->atom_rows[component->atom_row_count++] = row;
     return true;
 }
 
-typedef struct walk { int32_t *parent, *queue, head, tail; } walk;
+typedef struct walk {
+    int32_t *parent, *queue, head, tail;
+} walk;
 
 /* Breadth first along bonds from what the queue holds: `parent` gets the atom that each was reached from, plus one. */
 static void walk_on(const tml_component_making *making, walk *w, bool leaving) {
@@ -395,7 +166,8 @@ static void walk_on(const tml_component_making *making, walk *w, bool leaving) {
         }
 }
 
-/* A tree over each connected part; -1 for its root. Leaving atoms are reached last, so that nothing that stays hangs on them. */
+/* A tree over each connected part; -1 for its root. Leaving atoms are reached last, so that nothing that stays hangs on them.
+ */
 static void span(const tml_component_making *making, int32_t *parent, int32_t *queue) {
     walk w = {parent, queue, 0, 0};
     if (making->root >= 0) {
@@ -417,13 +189,15 @@ static void span(const tml_component_making *making, int32_t *parent, int32_t *q
 
 static tml_status make_atoms(tml_component_making *making) {
     tml_component *component = making->component;
-    int32_t *parent = tml_alloc(component->atom_count, sizeof *parent), *queue = tml_alloc(component->atom_count, sizeof *queue);
+    int32_t *parent = tml_alloc(component->atom_count, sizeof *parent),
+            *queue = tml_alloc(component->atom_count, sizeof *queue);
     bool room = parent != NULL && queue != NULL;
     if (room) span(making, parent, queue);
     for (size_t i = 0; room && i < component->atom_count; i++) {
         const tml_component_atom *atom = &component->atoms[i];
         if (making->dropped[i]) continue;
-        tml_atom_row row = {.name = atom->name, .parent = "", .element = atom->element, .optional = atom->leaving ? TML_LEAVING : 0};
+        tml_atom_row row = {
+            .name = atom->name, .parent = "", .element = atom->element, .optional = atom->leaving ? TML_LEAVING : 0};
         if (parent[i] > 0) {
             row.parent = component->atoms[parent[i] - 1].name;
             row.length = length_of(making, tml_topology_bond_between(&making->topology, (int32_t)i, parent[i] - 1));
@@ -447,7 +221,8 @@ static double length_of(const tml_component_making *making, int32_t index) {
     double usual = tml_topology_length(topology, index);
     if (hydrogen && !isnan(tml_hydrogen_length(topology->elements[heavy], false))) return usual;
     const int32_t ends[2] = {bond->a, bond->b};
-    double measured = all_placed(making, ends, 2) ? tml_distance(place_of(making, bond->a), place_of(making, bond->b)) : NAN;
+    double measured =
+        tml_all_placed(making, ends, 2) ? tml_distance(tml_placed_at(making, bond->a), tml_placed_at(making, bond->b)) : NAN;
     bool metal = tml_element_is_metal(topology->elements[bond->a]) || tml_element_is_metal(topology->elements[bond->b]);
     if (metal && fabs(measured - bond->length) > METAL_OFF) return measured; /* its angles are the coordinates', too */
     return !isnan(bond->length) ? bond->length : !isnan(measured) ? measured : usual;
@@ -460,7 +235,8 @@ static bool is_parent(const tml_component *component, const char *child, const c
 }
 
 static bool add_bond(tml_component *component, tml_bond_row row) {
-    if (!tml_grow(&component->bond_rows, &component->bond_row_capacity, component->bond_row_count + 1, sizeof *component->bond_rows))
+    if (!tml_grow(&component->bond_rows, &component->bond_row_capacity, component->bond_row_count + 1,
+                  sizeof *component->bond_rows))
         return false;
     component->bond_rows[component->bond_row_count++] = row;
     return true;
@@ -481,7 +257,8 @@ static bool make_bonds(tml_component_making *making) {
 /* ---- angles ---- */
 
 bool tml_component_add_angle(tml_component *component, const char *a, const char *b, const char *c, double degrees) {
-    if (!tml_grow(&component->angle_rows, &component->angle_row_capacity, component->angle_row_count + 1, sizeof *component->angle_rows))
+    if (!tml_grow(&component->angle_rows, &component->angle_row_capacity, component->angle_row_count + 1,
+                  sizeof *component->angle_rows))
         return false;
     component->angle_rows[component->angle_row_count++] = (tml_angle_row){a, b, c, degrees, ""};
     return true;
@@ -497,8 +274,8 @@ static double listed_angle(const tml_component_making *making, int32_t a, int32_
     return NAN;
 }
 
-/* As listed, as in the coordinates, or as the elements have it; where what is listed cannot hold together, as in the coordinates or
- * as the elements have it. */
+/* As listed, as in the coordinates, or as the elements have it; where what is listed cannot hold together, as in the
+ * coordinates or as the elements have it. */
 static double angle_of(const tml_component_making *making, int32_t a, int32_t b, int32_t c) {
     double listed = listed_angle(making, a, b, c), measured = measured_angle(making, a, b, c);
     if (!isnan(measured) && (making->doubted[b] || isnan(listed))) return measured;
@@ -520,8 +297,8 @@ static double ring_excess(const tml_component_making *making, int32_t ring, bool
     return sum - (size - 2) * 180;
 }
 
-/* The listed angles between all arms of an atom, if none is a hydrogen (whose angles follow from the others), less the most that so many arms can come to: three arms a full turn, four those of a
- * tetrahedron. NAN where some are not listed. */
+/* The listed angles between all arms of an atom, if none is a hydrogen (whose angles follow from the others), less the most
+ * that so many arms can come to: three arms a full turn, four those of a tetrahedron. NAN where some are not listed. */
 static double arms_excess(const tml_component_making *making, int32_t atom) {
     static const double MOST[5] = {NAN, NAN, NAN, 360, 6 * 109.4712};
     const tml_topology *topology = &making->topology;
@@ -536,8 +313,9 @@ static double arms_excess(const tml_component_making *making, int32_t atom) {
     return sum - MOST[degree];
 }
 
-/* Listed angles are often of separate fragments, and those of a ring or of one atom then cannot all be met. A ring whose angles come to
- * more than a flat one has, or to less where it is flat, and an atom one of whose angles is far from the coordinates', are doubted. */
+/* Listed angles are often of separate fragments, and those of a ring or of one atom then cannot all be met. A ring whose angles
+ * come to more than a flat one has, or to less where it is flat, and an atom one of whose angles is far from the coordinates',
+ * are doubted. */
 static void doubt_angles(tml_component_making *making) {
     static const double RING_OFF = 1.0, FLAT_RING_OFF = 2.0, OFF = 5.0; /* degrees */
     const tml_topology *topology = &making->topology;
@@ -545,7 +323,8 @@ static void doubt_angles(tml_component_making *making) {
         bool flat;
         double excess = ring_excess(making, r, &flat);
         if (isnan(excess) || !(excess > RING_OFF || (flat && excess < -FLAT_RING_OFF))) continue;
-        for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++) making->doubted[topology->ring_atoms[k]] = true;
+        for (int32_t k = topology->ring_first[r]; k < topology->ring_first[r + 1]; k++)
+            making->doubted[topology->ring_atoms[k]] = true;
     }
     for (int32_t i = 0; i < topology->atom_count; i++)
         if (arms_excess(making, i) > RING_OFF) making->doubted[i] = true;
@@ -560,7 +339,8 @@ static void doubt_angles(tml_component_making *making) {
 /* Have all residues of the family an angle of these names? */
 static bool has_row(const tml_template *common, const char *a, const char *b, const char *c) {
     for (const tml_angle_row *row = common->angles; row->a != NULL; row++)
-        if (strcmp(row->b, b) == 0 && ((strcmp(row->a, a) == 0 && strcmp(row->c, c) == 0) || (strcmp(row->a, c) == 0 && strcmp(row->c, a) == 0)))
+        if (strcmp(row->b, b) == 0 &&
+            ((strcmp(row->a, a) == 0 && strcmp(row->c, c) == 0) || (strcmp(row->a, c) == 0 && strcmp(row->c, a) == 0)))
             return true;
     return false;
 }
@@ -573,8 +353,8 @@ static bool bridges_metals(const tml_component_making *making, int32_t atom) {
     return metals > 1;
 }
 
-/* Angles between heavy arms, and with hydrogen where nothing else fixes it: on two arms. The others follow from these (arms.c). About
- * metals and atoms of five and more arms, those of the coordinates. */
+/* Angles between heavy arms, and with hydrogen where nothing else fixes it: on two arms. The others follow from these (arms.c).
+ * About metals and atoms of five and more arms, those of the coordinates. */
 static bool make_angles(tml_component_making *making) {
     const tml_topology *topology = &making->topology;
     const tml_component_atom *atoms = making->component->atoms;
@@ -590,9 +370,11 @@ static bool make_angles(tml_component_making *making) {
                 bool hydrogen = topology->elements[a] == 1 || topology->elements[c] == 1;
                 if (hydrogen && degree > 2 && !open) continue;
                 bool told = !isnan(listed_angle(making, a, b, c)) || !isnan(measured_angle(making, a, b, c));
-                if (!told && !open && has_row(making->component->family.common, atoms[a].name, atoms[b].name, atoms[c].name)) continue;
+                if (!told && !open && has_row(making->component->family.common, atoms[a].name, atoms[b].name, atoms[c].name))
+                    continue;
                 double degrees = open ? measured_angle(making, a, b, c) : angle_of(making, a, b, c);
-                if (!isnan(degrees) && !tml_component_add_angle(making->component, atoms[a].name, atoms[b].name, atoms[c].name, degrees))
+                if (!isnan(degrees) &&
+                    !tml_component_add_angle(making->component, atoms[a].name, atoms[b].name, atoms[c].name, degrees))
                     return false;
             }
     }
@@ -601,7 +383,10 @@ static bool make_angles(tml_component_making *making) {
 
 /* ---- torsions ---- */
 
-typedef struct turn { int32_t a, d; double degrees; } turn;
+typedef struct turn {
+    int32_t a, d;
+    double degrees;
+} turn;
 
 static bool known_turn(const tml_component_making *making, int32_t bond, turn *found);
 
@@ -616,7 +401,7 @@ static tml_status make_torsions(tml_component_making *making) {
     for (int32_t i = 0; i < topology->bond_count; i++) {
         int32_t b = topology->bonds[i].a, c = topology->bonds[i].b;
         if (!making->flat[b] || !making->flat[c] || making->dropped[b] || making->dropped[c]) continue;
-        if (is_backbone(making, b) && is_backbone(making, c)) continue;
+        if (tml_is_backbone(making, b) && tml_is_backbone(making, c)) continue;
         if (tml_topology_degree(topology, b) < 2 || tml_topology_degree(topology, c) < 2) continue;
         bool stiff = tml_topology_is_stiff(topology, i);
         if (!stiff && !shares_plane(making, b, c)) continue;
@@ -625,17 +410,20 @@ static tml_status make_torsions(tml_component_making *making) {
             if (!tml_grow(&component->torsion_rows, &component->torsion_row_capacity, component->torsion_row_count + 1,
                           sizeof *component->torsion_rows))
                 return tml_no_memory(making->error);
-            component->torsion_rows[component->torsion_row_count++] =
-                (tml_torsion_row){component->atoms[found.a].name, component->atoms[b].name, component->atoms[c].name,
-                                  component->atoms[found.d].name, found.degrees, 0};
+            component->torsion_rows[component->torsion_row_count++] = (tml_torsion_row){component->atoms[found.a].name,
+                                                                                        component->atoms[b].name,
+                                                                                        component->atoms[c].name,
+                                                                                        component->atoms[found.d].name,
+                                                                                        found.degrees,
+                                                                                        0};
         } else if (stiff && topology->bonds[i].order == TML_ORDER_DOUBLE && unknown++ == 0) {
             example[0] = component->atoms[b].name;
             example[1] = component->atoms[c].name;
         }
     }
     if (unknown == 0) return TML_OK;
-    return tml_component_note(making, "it does not say what is cis and what trans about %.32s=%.32s%s; either may come", example[0], example[1],
-                              unknown > 1 ? " and others" : "");
+    return tml_component_note(making, "it does not say what is cis and what trans about %.32s=%.32s%s; either may come",
+                              example[0], example[1], unknown > 1 ? " and others" : "");
 }
 
 /* Does a plane that the dictionary lists hold the bond with an arm on either side? */
@@ -644,7 +432,8 @@ static bool shares_plane(const tml_component_making *making, int32_t b, int32_t 
     const tml_topology *topology = &making->topology;
     for (size_t first = 0, next; first < component->plane_atom_count; first = next) {
         bool has_b = false, has_c = false, beside_b = false, beside_c = false;
-        for (next = first; next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
+        for (next = first;
+             next < component->plane_atom_count && component->plane_atoms[next].plane == component->plane_atoms[first].plane;
              next++) {
             int32_t atom = component->plane_atoms[next].atom;
             has_b = has_b || atom == b;
@@ -670,9 +459,11 @@ static bool known_turn(const tml_component_making *making, int32_t bond, turn *f
     for (int32_t i = topology->first[b]; i < topology->first[b + 1]; i++)
         for (int32_t j = topology->first[c]; j < topology->first[c + 1]; j++) {
             const int32_t four[4] = {topology->neighbours[i], b, c, topology->neighbours[j]};
-            if (four[0] == c || four[3] == b || four[0] == four[3] || making->dropped[four[0]] || making->dropped[four[3]]) continue;
+            if (four[0] == c || four[3] == b || four[0] == four[3] || making->dropped[four[0]] || making->dropped[four[3]])
+                continue;
             int32_t ring = tml_topology_ring_of(topology, four[0], b, c);
-            if (ring >= 0 && ring == tml_topology_ring_of(topology, b, c, four[3]) && tml_topology_ring_size(topology, ring) <= 7) {
+            if (ring >= 0 && ring == tml_topology_ring_of(topology, b, c, four[3]) &&
+                tml_topology_ring_size(topology, ring) <= 7) {
                 *found = (turn){four[0], four[3], 0};
                 return true;
             }
@@ -680,8 +471,9 @@ static bool known_turn(const tml_component_making *making, int32_t bond, turn *f
                 a = four[0];
                 d = four[3];
             }
-            if (!all_placed(making, four, 4)) continue;
-            double angle = fabs(tml_dihedral_of(place_of(making, four[0]), place_of(making, b), place_of(making, c), place_of(making, four[3]))) *
+            if (!tml_all_placed(making, four, 4)) continue;
+            double angle = fabs(tml_dihedral_of(tml_placed_at(making, four[0]), tml_placed_at(making, b),
+                                                tml_placed_at(making, c), tml_placed_at(making, four[3]))) *
                            180 / TML_PI;
             if (angle > OFF && angle < 180 - OFF) continue;
             *found = (turn){four[0], four[3], angle < 90 ? 0 : 180};
@@ -696,7 +488,8 @@ static bool known_turn(const tml_component_making *making, int32_t bond, turn *f
 static bool listed_turn(const tml_component_making *making, int32_t b, int32_t c, turn *found) {
     static const double OFF = 10, WIDEST = 15;
     const tml_component *component = making->component;
-    /* Listed values may stand for one of several minima; the coordinates do not. With bad coordinates they were made from those. */
+    /* Listed values may stand for one of several minima; the coordinates do not. With bad coordinates they were made from
+     * those. */
     if (making->placed || making->rejected) return false;
     for (size_t i = 0; i < component->torsion_count; i++) {
         const tml_component_torsion *torsion = &component->torsions[i];
@@ -747,14 +540,16 @@ static tml_status make_centres(tml_component_making *making) {
         if (sign == 0 && asked && unknown++ == 0) example = component->atoms[i].name;
         if (sign == 0 && making->ca >= 0 && degree == 4 && topology->ranks[arms[0]] != topology->ranks[arms[2]])
             continue; /* the rows of all amino acids may know better */
-        if (!tml_grow(&component->centre_rows, &component->centre_row_capacity, component->centre_row_count + 1, sizeof *component->centre_rows))
+        if (!tml_grow(&component->centre_rows, &component->centre_row_capacity, component->centre_row_count + 1,
+                      sizeof *component->centre_rows))
             return tml_no_memory(making->error);
         component->centre_rows[component->centre_row_count++] =
             (tml_centre_row){component->atoms[i].name, component->atoms[arms[0]].name, component->atoms[arms[1]].name,
                              component->atoms[arms[2]].name, (int8_t)sign};
     }
     if (unknown == 0) return TML_OK;
-    return tml_component_note(making, "it gives no handedness for %.32s%s; either hand may come", example, unknown > 1 ? " and others" : "");
+    return tml_component_note(making, "it gives no handedness for %.32s%s; either hand may come", example,
+                              unknown > 1 ? " and others" : "");
 }
 
 /* Neighbours that are there, those that may leave last. */
@@ -764,7 +559,8 @@ static int arms_of(const tml_component_making *making, int32_t atom, int32_t arm
     for (int pass = 0; pass < 2; pass++)
         for (int32_t k = topology->first[atom]; k < topology->first[atom + 1]; k++) {
             int32_t next = topology->neighbours[k];
-            if (!making->dropped[next] && making->component->atoms[next].leaving == (pass == 1) && count < 4) arms[count++] = next;
+            if (!making->dropped[next] && making->component->atoms[next].leaving == (pass == 1) && count < 4)
+                arms[count++] = next;
         }
     return count;
 }
@@ -776,14 +572,15 @@ static const tml_component_centre *listed_centre(const tml_component_making *mak
         if (centre->c != atom) continue;
         bool good = true;
         for (int k = 0; k < 3; k++)
-            good = good && !making->dropped[centre->arms[k]] && tml_topology_bond_between(&making->topology, atom, centre->arms[k]) >= 0;
+            good = good && !making->dropped[centre->arms[k]] &&
+                   tml_topology_bond_between(&making->topology, atom, centre->arms[k]) >= 0;
         if (good) return centre;
     }
     return NULL;
 }
 
-/* The hand of three arms, 0 for none that is known; arms change to those that the dictionary lists. `asked`: the graph tells all
- * arms apart, so that a hand should be known. */
+/* The hand of three arms, 0 for none that is known; arms change to those that the dictionary lists. `asked`: the graph tells
+ * all arms apart, so that a hand should be known. */
 static int sign_of(const tml_component_making *making, int32_t atom, int32_t arms[4], int count, bool *asked) {
     static const double SMALLEST = 0.1; /* of the volume of unit arms */
     const tml_topology *topology = &making->topology;
@@ -795,20 +592,22 @@ static int sign_of(const tml_component_making *making, int32_t atom, int32_t arm
         most_equal = same > most_equal ? same : most_equal;
         hydrogens += topology->elements[arms[i]] == 1;
     }
-    bool turns_over = topology->elements[atom] == 7 && (count == 3 || hydrogens > 0);
-    *asked = equal == 0 && !turns_over && topology->shapes[atom] == TML_SHAPE_TETRAHEDRAL && (count == 4 || topology->elements[atom] != 6);
+    bool turns_over = topology->elements[atom] == 8 || (topology->elements[atom] == 7 && (count == 3 || hydrogens > 0));
+    *asked = equal == 0 && !turns_over && topology->shapes[atom] == TML_SHAPE_TETRAHEDRAL &&
+             (count == 4 || topology->elements[atom] != 6);
     const tml_component_centre *listed = listed_centre(making, atom);
     if (listed != NULL && listed->sign != 0) {
         for (int k = 0; k < 3; k++) arms[k] = listed->arms[k];
         return listed->sign;
     }
     if ((listed != NULL && equal == 0) || most_equal >= 3 || turns_over) return 0;
-    double volume = measured_volume(making, atom, arms);
+    double volume = tml_measured_volume(making, atom, arms);
     if (!isnan(volume) && fabs(volume) > SMALLEST) return volume > 0 ? 1 : -1;
     return 0;
 }
 
-/* An amino acid whose dictionary gives no hand for CA: L, but where its type says D. The arms become N, C and the side chain. */
+/* An amino acid whose dictionary gives no hand for CA: L, but where its type says D. The arms become N, C and the side chain.
+ */
 static int sign_by_type(const tml_component_making *making, int32_t arms[4]) {
     const tml_topology *topology = &making->topology;
     for (int32_t k = topology->first[making->ca]; k < topology->first[making->ca + 1]; k++) {
@@ -825,14 +624,15 @@ static int sign_by_type(const tml_component_making *making, int32_t arms[4]) {
 /* ---- charges ---- */
 
 static bool add_charge(tml_component *component, const char *atom, int charge) {
-    if (!tml_grow(&component->charge_rows, &component->charge_row_capacity, component->charge_row_count + 1, sizeof *component->charge_rows))
+    if (!tml_grow(&component->charge_rows, &component->charge_row_capacity, component->charge_row_count + 1,
+                  sizeof *component->charge_rows))
         return false;
     component->charge_rows[component->charge_row_count++] = (tml_charge_row){atom, (int8_t)charge, ""};
     return true;
 }
 
-/* Where the dictionary has no formal charges: a nitrogen with four arms has one more, an oxygen with one single bond one less, and of
- * two oxygens that share a double bond the last-named bears the charge. */
+/* Where the dictionary has no formal charges: a nitrogen with four arms has one more, an oxygen with one single bond one less,
+ * and of two oxygens that share a double bond the last-named bears the charge. */
 static int charge_by_valence(const tml_component_making *making, int32_t atom) {
     const tml_topology *topology = &making->topology;
     int32_t first = topology->first[atom], degree = tml_topology_degree(topology, atom);
@@ -840,7 +640,8 @@ static int charge_by_valence(const tml_component_making *making, int32_t atom) {
     if (topology->elements[atom] != 8 || degree != 1) return 0;
     int32_t centre = topology->neighbours[first];
     tml_order order = topology->bonds[topology->via[first]].order;
-    if (order == TML_ORDER_SINGLE) return topology->elements[centre] == 1 || tml_element_is_metal(topology->elements[centre]) ? 0 : -1;
+    if (order == TML_ORDER_SINGLE)
+        return topology->elements[centre] == 1 || tml_element_is_metal(topology->elements[centre]) ? 0 : -1;
     if (order != TML_ORDER_DELOCALISED) return 0;
     int others = 0;
     for (int32_t k = topology->first[centre]; k < topology->first[centre + 1]; k++) {

@@ -20,7 +20,8 @@ static tml_component_kind kind_of(const char *type) {
     for (size_t i = 0; i <= length; i++) lower[i] = (char)(type[i] >= 'A' && type[i] <= 'Z' ? type[i] - 'A' + 'a' : type[i]);
     for (size_t i = 0; i < sizeof PEPTIDES / sizeof *PEPTIDES; i++)
         if (strcmp(lower, PEPTIDES[i]) == 0) return TML_KIND_PEPTIDE;
-    if (strstr(lower, "peptide") != NULL && (strstr(lower, "linking") != NULL || strstr(lower, "terminus") != NULL)) return TML_KIND_PEPTIDE;
+    if (strstr(lower, "peptide") != NULL && (strstr(lower, "linking") != NULL || strstr(lower, "terminus") != NULL))
+        return TML_KIND_PEPTIDE;
     if (strcmp(lower, "dna") == 0 || strcmp(lower, "rna") == 0 || strcmp(lower, "dna/rna") == 0) return TML_KIND_NUCLEIC;
     if (strstr(lower, "dna linking") != NULL || strstr(lower, "rna linking") != NULL) return TML_KIND_NUCLEIC;
     return TML_KIND_SINGLE;
@@ -44,9 +45,11 @@ tml_status tml_component_join_chain(tml_component_making *making) {
     if (kind == TML_KIND_PEPTIDE) {
         int32_t n = atom_named(making, "N"), ca = atom_named(making, "CA"), c = atom_named(making, "C");
         if (!bonded(making, n, ca) || !bonded(making, ca, c))
-            return tml_component_note(making, "its type is %.40s, but N, CA and C are not bonded as in an amino acid; it stands by itself, and `link` "
-                                              "can bond it",
-                                      component->type);
+            return tml_component_note(
+                making,
+                "its type is %.40s, but N, CA and C are not bonded as in an amino acid; it stands by itself, and `link` "
+                "can bond it",
+                component->type);
         making->n = n;
         making->ca = ca;
         making->c = c;
@@ -102,8 +105,9 @@ static int32_t nitrogen_arm(const tml_component_making *making) {
     return arm;
 }
 
-/* Its hydrogens give way to those that an amino acid has by its place in the chain. A nitrogen that bears an acyl group (a lactam, a
- * formyl group) is no base and keeps one hydrogen where nothing is before it; one that is full already begins its chain. */
+/* Its hydrogens give way to those that an amino acid has by its place in the chain. A nitrogen that bears an acyl group (a
+ * lactam, a formyl group) is no base and keeps one hydrogen where nothing is before it; one that is full already begins its
+ * chain. */
 static void free_nitrogen(tml_component_making *making) {
     const tml_topology *topology = &making->topology;
     tml_component *component = making->component;
@@ -162,7 +166,8 @@ static void free_carbon(tml_component_making *making) {
 
 /* ---- caps ---- */
 
-/* The atom of a cap that may leave when the chain is bonded to it: one marked so, or the last hydrogen, where its place is taken. */
+/* The atom of a cap that may leave when the chain is bonded to it: one marked so, or the last hydrogen, where its place is
+ * taken. */
 static void mark_leaving(tml_component_making *making, int32_t atom, int32_t arms) {
     const tml_topology *topology = &making->topology;
     int32_t last = -1;
@@ -175,8 +180,8 @@ static void mark_leaving(tml_component_making *making, int32_t atom, int32_t arm
     if (last >= 0) making->component->atoms[last].leaving = true;
 }
 
-/* Small molecules that close chains: an acyl group by its C (formyl, acetyl …), an amine by its N (methylamide …). Ammonia does so under
- * the archive's name for the amide group only. */
+/* Small molecules that close chains: an acyl group by its C (formyl, acetyl …), an amine by its N (methylamide …). Ammonia does
+ * so under the archive's name for the amide group only. */
 static void join_cap(tml_component_making *making) {
     enum { MOST_HEAVY = 4, ARMS = 3 };
     const tml_topology *topology = &making->topology;
@@ -192,7 +197,9 @@ static void join_cap(tml_component_making *making) {
         hydrogens += is_hydrogen;
         heavies += !is_hydrogen;
     }
-    if (amine) amine = hydrogens > 0 && hydrogens + heavies <= ARMS && heavies <= 1 && (hydrogens < ARMS || strcmp(component->name, "NH2") == 0);
+    if (amine)
+        amine = hydrogens > 0 && hydrogens + heavies <= ARMS && heavies <= 1 &&
+                (hydrogens < ARMS || strcmp(component->name, "NH2") == 0);
     if (acyl) acyl = heavies <= 2 && (hydrogens > 0 || heavies + hydrogens < ARMS);
     if (!acyl && !amine) return;
     mark_leaving(making, end, ARMS);
@@ -218,12 +225,14 @@ static void drop_hydrogens(tml_component_making *making, int32_t atom) {
 
 static tml_status join_nucleic(tml_component_making *making) {
     tml_component *component = making->component;
-    int32_t p = atom_named(making, "P"), o5 = atom_named(making, "O5'"), c5 = atom_named(making, "C5'"), c3 = atom_named(making, "C3'"),
-            o3 = atom_named(making, "O3'");
+    int32_t p = atom_named(making, "P"), o5 = atom_named(making, "O5'"), c5 = atom_named(making, "C5'"),
+            c3 = atom_named(making, "C3'"), o3 = atom_named(making, "O3'");
     bool begins = bonded(making, p, o5) && bonded(making, o5, c5), ends = bonded(making, c3, o3);
     component->first_ends[0] = component->last_ends[0] = (tml_end_row){"", "", ""};
     if (!bonded(making, o5, c5))
-        return tml_component_note(making, "its type is %.40s, but it has no O5' on C5'; it stands by itself, and `link` can bond it", component->type);
+        return tml_component_note(making,
+                                  "its type is %.40s, but it has no O5' on C5'; it stands by itself, and `link` can bond it",
+                                  component->type);
     for (int32_t k = making->topology.first[ends ? o3 : 0]; ends && k < making->topology.first[o3 + 1]; k++)
         ends = making->topology.neighbours[k] == c3 || making->topology.elements[making->topology.neighbours[k]] == 1;
     making->root = o5;
@@ -246,7 +255,8 @@ static int32_t third_oxygen(const tml_component_making *making, int32_t phosphor
     int32_t found = -1, count = 0;
     for (int32_t k = topology->first[phosphorus]; k < topology->first[phosphorus + 1]; k++) {
         int32_t next = topology->neighbours[k], heavy = 0;
-        for (int32_t i = topology->first[next]; i < topology->first[next + 1]; i++) heavy += topology->elements[topology->neighbours[i]] != 1;
+        for (int32_t i = topology->first[next]; i < topology->first[next + 1]; i++)
+            heavy += topology->elements[topology->neighbours[i]] != 1;
         if (heavy != 1 || topology->elements[next] != 8) continue;
         const tml_component_atom *atom = &making->component->atoms[next];
         count++;
@@ -270,7 +280,8 @@ static tml_status free_phosphate(tml_component_making *making, int32_t phosphoru
         usual += bridge || strcmp(name, "OP1") == 0 || strcmp(name, "OP2") == 0;
         if (next == third) making->dropped[next] = true;
         if (topology->elements[next] == 8 && !bridge) drop_hydrogens(making, next);
-        if (next != third && !bridge && used < (int)sizeof gone - 40) used += snprintf(gone + used, sizeof gone - (size_t)used, ",-%.32s", name);
+        if (next != third && !bridge && used < (int)sizeof gone - 40)
+            used += snprintf(gone + used, sizeof gone - (size_t)used, ",-%.32s", name);
     }
     snprintf(gone + used, sizeof gone - (size_t)used, ",+HO5'");
     const char *kept = tml_strings_add(making->pool, gone);
@@ -293,7 +304,8 @@ tml_status tml_component_add_ends(tml_component_making *making) {
     if (making->ca >= 0 && *family->head != '\0') room = add_nitrogen_rows(making);
     if (room && making->ca >= 0 && *family->tail != '\0') room = add_carbon_rows(making);
     if (room && making->ca < 0 && family->polymer == TML_POLYMER_PROTEIN) room = add_cap_rows(making);
-    if (room && family->polymer == TML_POLYMER_NUCLEIC && *family->head != '\0') room = add_own(making, "DA", "HO5'") && add_own(making, "DA", "OP3");
+    if (room && family->polymer == TML_POLYMER_NUCLEIC && *family->head != '\0')
+        room = add_own(making, "DA", "HO5'") && add_own(making, "DA", "OP3");
     if (room && family->polymer == TML_POLYMER_NUCLEIC && *family->tail != '\0') room = add_own(making, "DA", "HO3'");
     return room ? TML_OK : tml_no_memory(making->error);
 }
@@ -316,7 +328,8 @@ static bool add_own(tml_component_making *making, const char *residue, const cha
 }
 
 static bool add_charge_row(tml_component *component, const char *atom, int8_t charge, const char *condition) {
-    if (!tml_grow(&component->charge_rows, &component->charge_row_capacity, component->charge_row_count + 1, sizeof *component->charge_rows))
+    if (!tml_grow(&component->charge_rows, &component->charge_row_capacity, component->charge_row_count + 1,
+                  sizeof *component->charge_rows))
         return false;
     component->charge_rows[component->charge_row_count++] = (tml_charge_row){atom, charge, condition};
     return true;
@@ -331,8 +344,10 @@ static bool add_imino_rows(tml_component_making *making, int32_t arm) {
     if (!tml_component_add_plane(making, plane, sizeof plane / sizeof *plane)) return false;
     if (!add_charge_row(component, "N", +1, "+H2+H3")) return false;
     if (ring < 0 || tml_topology_ring_size(&making->topology, ring) != 5) return true;
-    return tml_component_add_angle(component, "-C", "N", name, 125.0) && tml_component_add_angle(component, "-C", "N", "CA", 122.6) &&
-           tml_component_add_angle(component, "-CA", "-C", "N", 116.9) && tml_component_add_angle(component, "-O", "-C", "N", 122.0);
+    return tml_component_add_angle(component, "-C", "N", name, 125.0) &&
+           tml_component_add_angle(component, "-C", "N", "CA", 122.6) &&
+           tml_component_add_angle(component, "-CA", "-C", "N", 116.9) &&
+           tml_component_add_angle(component, "-O", "-C", "N", 122.0);
 }
 
 static bool add_nitrogen_rows(tml_component_making *making) {
@@ -363,7 +378,8 @@ static bool add_cap_rows(tml_component_making *making) {
     const char *plane[8];
     size_t count = 0;
     if (!acyl)
-        for (const char *const *name = (const char *const[]){"-CA", "-C", "-O", NULL}; *name != NULL; name++) plane[count++] = *name;
+        for (const char *const *name = (const char *const[]){"-CA", "-C", "-O", NULL}; *name != NULL; name++)
+            plane[count++] = *name;
     plane[count++] = component->atoms[end].name;
     for (int32_t k = topology->first[end]; k < topology->first[end + 1]; k++) {
         int32_t next = topology->neighbours[k];

@@ -1,12 +1,13 @@
-/* Lengths: F. H. Allen et al., J. Chem. Soc. Perkin Trans. 2 (1987) S1; typed from memory, rounded, means of the sorts of one row.
- * Bonds to hydrogen: usual values from neutron diffraction (C, N, O, S, as in residue_data.c) and microwave spectra of the
+/* Lengths: F. H. Allen et al., J. Chem. Soc. Perkin Trans. 2 (1987) S1; typed from memory, rounded, means of the sorts of one
+ * row. Bonds to hydrogen: usual values from neutron diffraction (C, N, O, S, as in residue_data.c) and microwave spectra of the
  * hydrides (others), from memory. Metal to donor: M. M. Harding, Acta Cryst. D62 (2006) 678, from memory. Pairs in none of
  * these: sums of the covalent radii of elements.c, times 0.87 for double and 0.78 for triple bonds, as the radii of P. Pyykkö &
  * M. Atsumi, Chem. Eur. J. 15 (2009) 12770 shrink on average (from memory).
  *
- * Angles: tetrahedral, trigonal and linear, but in small rings those of a regular or usual ring; on two-armed oxygen and sulphur
- * those of dimethyl ether, dimethyl sulphide, cystine, methanol and methanethiol; on sulphonyl groups those of dimethyl sulphone (gas-phase
- * values, from memory), in rings with sulphur or selenium those of thiophene and selenophene (microwave spectra, from memory).
+ * Angles: tetrahedral, trigonal and linear, but in small rings those of a regular or usual ring; on two-armed oxygen and
+ * sulphur those of dimethyl ether, dimethyl sulphide, cystine, methanol and methanethiol; on sulphonyl groups those of dimethyl
+ * sulphone (gas-phase values, from memory), in rings with sulphur or selenium those of thiophene and selenophene (microwave
+ * spectra, from memory).
  *
  * Contents: making - rings - shapes - ranks - lengths - angles
  */
@@ -43,8 +44,8 @@ bool tml_topology_new(tml_topology *t, int32_t atom_count, int32_t bond_count) {
     t->via = tml_alloc(2 * bonds, sizeof *t->via);
     t->ring_first = tml_alloc(bonds + 1, sizeof *t->ring_first);
     t->ring_atoms = tml_alloc(bonds, LARGEST_RING * sizeof *t->ring_atoms);
-    return t->elements != NULL && t->charges != NULL && t->shapes != NULL && t->ranks != NULL && t->bonds != NULL && t->first != NULL &&
-           t->neighbours != NULL && t->via != NULL && t->ring_first != NULL && t->ring_atoms != NULL;
+    return t->elements != NULL && t->charges != NULL && t->shapes != NULL && t->ranks != NULL && t->bonds != NULL &&
+           t->first != NULL && t->neighbours != NULL && t->via != NULL && t->ring_first != NULL && t->ring_atoms != NULL;
 }
 
 bool tml_topology_finish(tml_topology *t) {
@@ -101,7 +102,8 @@ static bool is_metal(const tml_topology *t, int32_t atom) {
 }
 
 /* A shortest way from a to b that is not their bond, breadth first, through no metal; its length in atoms, or 0. `from` holds
- * for each atom the one it was reached from, plus one; `queue` and `from` have room for all atoms, and `from` is zeroed again. */
+ * for each atom the one it was reached from, plus one; `queue` and `from` have room for all atoms, and `from` is zeroed again.
+ */
 static int32_t ring_through(const tml_topology *t, int32_t bond, int32_t *from, int32_t *queue, int32_t *ring) {
     int32_t a = t->bonds[bond].a, b = t->bonds[bond].b, head = 0, tail = 0, size = 0;
     if (is_metal(t, a) || is_metal(t, b)) return 0;
@@ -199,7 +201,9 @@ static bool beside_double(const tml_topology *t, int32_t atom) {
     for (int32_t k = t->first[atom]; k < t->first[atom + 1]; k++) {
         int32_t next = t->neighbours[k];
         if (t->shapes[next] != TML_SHAPE_TRIGONAL || (t->elements[next] != C && t->elements[next] != N)) continue;
-        if (count_order(t, next, TML_ORDER_DOUBLE) + count_order(t, next, TML_ORDER_AROMATIC) + count_order(t, next, TML_ORDER_DELOCALISED) > 0)
+        if (count_order(t, next, TML_ORDER_DOUBLE) + count_order(t, next, TML_ORDER_AROMATIC) +
+                count_order(t, next, TML_ORDER_DELOCALISED) >
+            0)
             return true;
     }
     return false;
@@ -209,7 +213,8 @@ static bool beside_double(const tml_topology *t, int32_t atom) {
 static void find_shapes(tml_topology *t) {
     for (int32_t i = 0; i < t->atom_count; i++) t->shapes[i] = shape_of(t, i);
     for (int32_t i = 0; i < t->atom_count; i++)
-        if (t->elements[i] == N && t->shapes[i] == TML_SHAPE_TETRAHEDRAL && tml_topology_degree(t, i) <= 3 && beside_double(t, i))
+        if (t->elements[i] == N && t->shapes[i] == TML_SHAPE_TETRAHEDRAL && tml_topology_degree(t, i) <= 3 &&
+            beside_double(t, i))
             t->shapes[i] = TML_SHAPE_TRIGONAL;
 }
 
@@ -292,35 +297,45 @@ static bool find_ranks(tml_topology *t) {
 enum { SP = TML_SHAPE_LINEAR, SP2 = TML_SHAPE_TRIGONAL, SP3 = TML_SHAPE_TETRAHEDRAL, ANY = 0 };
 
 /* The first row that fits counts. */
-typedef struct length_row { uint8_t element_1, shape_1, element_2, shape_2, order; double length; } length_row;
+typedef struct length_row {
+    uint8_t element_1, shape_1, element_2, shape_2, order;
+    double length;
+} length_row;
 
 static const length_row lengths[] = {
-    {C, ANY, C, ANY, TML_ORDER_AROMATIC, 1.390},  {C, SP, C, SP, TML_ORDER_TRIPLE, 1.181},    {C, SP, C, SP, TML_ORDER_SINGLE, 1.377},
-    {C, SP2, C, SP, TML_ORDER_DOUBLE, 1.307},     {C, SP, C, SP, TML_ORDER_DOUBLE, 1.280},    {C, ANY, C, ANY, TML_ORDER_DOUBLE, 1.335},
-    {C, SP3, C, SP3, TML_ORDER_SINGLE, 1.530},    {C, SP3, C, SP2, TML_ORDER_SINGLE, 1.507},  {C, SP2, C, SP2, TML_ORDER_SINGLE, 1.475},
-    {C, SP3, C, SP, TML_ORDER_SINGLE, 1.466},     {C, SP2, C, SP, TML_ORDER_SINGLE, 1.431},   {C, ANY, C, ANY, TML_ORDER_DELOCALISED, 1.400},
-    {C, ANY, N, ANY, TML_ORDER_AROMATIC, 1.345},  {C, ANY, N, ANY, TML_ORDER_TRIPLE, 1.138},  {C, ANY, N, ANY, TML_ORDER_DOUBLE, 1.279},
-    {C, ANY, N, ANY, TML_ORDER_DELOCALISED, 1.326}, {C, SP3, N, SP2, TML_ORDER_SINGLE, 1.460}, {C, SP3, N, SP3, TML_ORDER_SINGLE, 1.475},
-    {C, SP2, N, SP2, TML_ORDER_SINGLE, 1.350},    {C, SP2, N, SP3, TML_ORDER_SINGLE, 1.420},
-    {C, ANY, O, ANY, TML_ORDER_DELOCALISED, 1.254}, {C, ANY, O, ANY, TML_ORDER_DOUBLE, 1.215}, {C, ANY, O, ANY, TML_ORDER_AROMATIC, 1.365},
-    {C, SP3, O, ANY, TML_ORDER_SINGLE, 1.426},    {C, SP2, O, ANY, TML_ORDER_SINGLE, 1.345},
-    {C, ANY, S, ANY, TML_ORDER_AROMATIC, 1.715},  {C, ANY, S, ANY, TML_ORDER_DOUBLE, 1.671},  {C, SP3, S, ANY, TML_ORDER_SINGLE, 1.810},
-    {C, SP2, S, ANY, TML_ORDER_SINGLE, 1.763},    {C, ANY, S, ANY, TML_ORDER_DELOCALISED, 1.700},
-    {C, SP3, F, ANY, TML_ORDER_SINGLE, 1.370},    {C, SP2, F, ANY, TML_ORDER_SINGLE, 1.360},
-    {C, SP3, CL, ANY, TML_ORDER_SINGLE, 1.790},   {C, SP2, CL, ANY, TML_ORDER_SINGLE, 1.739},
-    {C, SP3, BR, ANY, TML_ORDER_SINGLE, 1.966},   {C, SP2, BR, ANY, TML_ORDER_SINGLE, 1.899},
-    {C, SP3, I, ANY, TML_ORDER_SINGLE, 2.162},    {C, SP2, I, ANY, TML_ORDER_SINGLE, 2.095},
-    {C, ANY, P, ANY, TML_ORDER_SINGLE, 1.813},    {C, ANY, SI, ANY, TML_ORDER_SINGLE, 1.863}, {C, ANY, B, ANY, TML_ORDER_SINGLE, 1.570},
-    {C, ANY, SE, ANY, TML_ORDER_SINGLE, 1.950},
-    {N, ANY, N, ANY, TML_ORDER_AROMATIC, 1.340},  {N, SP, N, SP, TML_ORDER_DOUBLE, 1.124},    {N, ANY, N, ANY, TML_ORDER_DOUBLE, 1.240},
-    {N, ANY, N, ANY, TML_ORDER_TRIPLE, 1.124},    {N, ANY, N, ANY, TML_ORDER_SINGLE, 1.400},
-    {N, ANY, O, ANY, TML_ORDER_DOUBLE, 1.217},    {N, ANY, O, ANY, TML_ORDER_DELOCALISED, 1.217}, {N, ANY, O, ANY, TML_ORDER_SINGLE, 1.396},
-    {N, ANY, O, ANY, TML_ORDER_AROMATIC, 1.395},
-    {N, ANY, S, ANY, TML_ORDER_SINGLE, 1.642},    {N, ANY, S, ANY, TML_ORDER_DOUBLE, 1.540},  {N, ANY, P, ANY, TML_ORDER_SINGLE, 1.650},
-    {O, ANY, O, ANY, TML_ORDER_SINGLE, 1.464},    {O, ANY, S, ANY, TML_ORDER_DOUBLE, 1.436},  {O, ANY, S, ANY, TML_ORDER_DELOCALISED, 1.455},
-    {O, ANY, S, ANY, TML_ORDER_SINGLE, 1.577},    {O, ANY, P, ANY, TML_ORDER_DOUBLE, 1.490},  {O, ANY, P, ANY, TML_ORDER_DELOCALISED, 1.513},
-    {O, ANY, P, ANY, TML_ORDER_SINGLE, 1.590},    {O, ANY, SI, ANY, TML_ORDER_SINGLE, 1.630}, {O, ANY, B, ANY, TML_ORDER_SINGLE, 1.370},
-    {S, ANY, S, ANY, TML_ORDER_SINGLE, 2.040},    {P, ANY, S, ANY, TML_ORDER_DOUBLE, 1.950},  {P, ANY, S, ANY, TML_ORDER_SINGLE, 2.080},
+    {C, ANY, C, ANY, TML_ORDER_AROMATIC, 1.390},    {C, SP, C, SP, TML_ORDER_TRIPLE, 1.181},
+    {C, SP, C, SP, TML_ORDER_SINGLE, 1.377},        {C, SP2, C, SP, TML_ORDER_DOUBLE, 1.307},
+    {C, SP, C, SP, TML_ORDER_DOUBLE, 1.280},        {C, ANY, C, ANY, TML_ORDER_DOUBLE, 1.335},
+    {C, SP3, C, SP3, TML_ORDER_SINGLE, 1.530},      {C, SP3, C, SP2, TML_ORDER_SINGLE, 1.507},
+    {C, SP2, C, SP2, TML_ORDER_SINGLE, 1.475},      {C, SP3, C, SP, TML_ORDER_SINGLE, 1.466},
+    {C, SP2, C, SP, TML_ORDER_SINGLE, 1.431},       {C, ANY, C, ANY, TML_ORDER_DELOCALISED, 1.400},
+    {C, ANY, N, ANY, TML_ORDER_AROMATIC, 1.345},    {C, ANY, N, ANY, TML_ORDER_TRIPLE, 1.138},
+    {C, ANY, N, ANY, TML_ORDER_DOUBLE, 1.279},      {C, ANY, N, ANY, TML_ORDER_DELOCALISED, 1.326},
+    {C, SP3, N, SP2, TML_ORDER_SINGLE, 1.460},      {C, SP3, N, SP3, TML_ORDER_SINGLE, 1.475},
+    {C, SP2, N, SP2, TML_ORDER_SINGLE, 1.350},      {C, SP2, N, SP3, TML_ORDER_SINGLE, 1.420},
+    {C, ANY, O, ANY, TML_ORDER_DELOCALISED, 1.254}, {C, ANY, O, ANY, TML_ORDER_DOUBLE, 1.215},
+    {C, ANY, O, ANY, TML_ORDER_AROMATIC, 1.365},    {C, SP3, O, ANY, TML_ORDER_SINGLE, 1.426},
+    {C, SP2, O, ANY, TML_ORDER_SINGLE, 1.345},      {C, ANY, S, ANY, TML_ORDER_AROMATIC, 1.715},
+    {C, ANY, S, ANY, TML_ORDER_DOUBLE, 1.671},      {C, SP3, S, ANY, TML_ORDER_SINGLE, 1.810},
+    {C, SP2, S, ANY, TML_ORDER_SINGLE, 1.763},      {C, ANY, S, ANY, TML_ORDER_DELOCALISED, 1.700},
+    {C, SP3, F, ANY, TML_ORDER_SINGLE, 1.370},      {C, SP2, F, ANY, TML_ORDER_SINGLE, 1.360},
+    {C, SP3, CL, ANY, TML_ORDER_SINGLE, 1.790},     {C, SP2, CL, ANY, TML_ORDER_SINGLE, 1.739},
+    {C, SP3, BR, ANY, TML_ORDER_SINGLE, 1.966},     {C, SP2, BR, ANY, TML_ORDER_SINGLE, 1.899},
+    {C, SP3, I, ANY, TML_ORDER_SINGLE, 2.162},      {C, SP2, I, ANY, TML_ORDER_SINGLE, 2.095},
+    {C, ANY, P, ANY, TML_ORDER_SINGLE, 1.813},      {C, ANY, SI, ANY, TML_ORDER_SINGLE, 1.863},
+    {C, ANY, B, ANY, TML_ORDER_SINGLE, 1.570},      {C, ANY, SE, ANY, TML_ORDER_SINGLE, 1.950},
+    {N, ANY, N, ANY, TML_ORDER_AROMATIC, 1.340},    {N, SP, N, SP, TML_ORDER_DOUBLE, 1.124},
+    {N, ANY, N, ANY, TML_ORDER_DOUBLE, 1.240},      {N, ANY, N, ANY, TML_ORDER_TRIPLE, 1.124},
+    {N, ANY, N, ANY, TML_ORDER_SINGLE, 1.400},      {N, ANY, O, ANY, TML_ORDER_DOUBLE, 1.217},
+    {N, ANY, O, ANY, TML_ORDER_DELOCALISED, 1.217}, {N, ANY, O, ANY, TML_ORDER_SINGLE, 1.396},
+    {N, ANY, O, ANY, TML_ORDER_AROMATIC, 1.395},    {N, ANY, S, ANY, TML_ORDER_SINGLE, 1.642},
+    {N, ANY, S, ANY, TML_ORDER_DOUBLE, 1.540},      {N, ANY, P, ANY, TML_ORDER_SINGLE, 1.650},
+    {O, ANY, O, ANY, TML_ORDER_SINGLE, 1.464},      {O, ANY, S, ANY, TML_ORDER_DOUBLE, 1.436},
+    {O, ANY, S, ANY, TML_ORDER_DELOCALISED, 1.455}, {O, ANY, S, ANY, TML_ORDER_SINGLE, 1.577},
+    {O, ANY, P, ANY, TML_ORDER_DOUBLE, 1.490},      {O, ANY, P, ANY, TML_ORDER_DELOCALISED, 1.513},
+    {O, ANY, P, ANY, TML_ORDER_SINGLE, 1.590},      {O, ANY, SI, ANY, TML_ORDER_SINGLE, 1.630},
+    {O, ANY, B, ANY, TML_ORDER_SINGLE, 1.370},      {S, ANY, S, ANY, TML_ORDER_SINGLE, 2.040},
+    {P, ANY, S, ANY, TML_ORDER_DOUBLE, 1.950},      {P, ANY, S, ANY, TML_ORDER_SINGLE, 2.080},
 };
 
 static bool fits(const length_row *row, int element_1, tml_shape shape_1, int element_2, tml_shape shape_2) {
@@ -329,8 +344,11 @@ static bool fits(const length_row *row, int element_1, tml_shape shape_1, int el
 }
 
 double tml_hydrogen_length(int element, bool in_ring) {
-    static const struct { int element; double length; } KNOWN[] = {{C, 1.09}, {N, 1.02},  {O, 0.97},  {S, 1.34},  {B, 1.19}, {SI, 1.48},
-                                                                   {P, 1.42}, {SE, 1.46}, {AS, 1.52}, {H, 0.74}, {F, 0.92}, {CL, 1.27}};
+    static const struct {
+        int element;
+        double length;
+    } KNOWN[] = {{C, 1.09}, {N, 1.02},  {O, 0.97},  {S, 1.34}, {B, 1.19}, {SI, 1.48},
+                 {P, 1.42}, {SE, 1.46}, {AS, 1.52}, {H, 0.74}, {F, 0.92}, {CL, 1.27}};
     static const double RING_CARBON = 1.08;
     if (element == C && in_ring) return RING_CARBON;
     for (size_t i = 0; i < sizeof KNOWN / sizeof *KNOWN; i++)
@@ -340,9 +358,13 @@ double tml_hydrogen_length(int element, bool in_ring) {
 
 double tml_metal_length(int element_1, int element_2) {
     enum { NA = 11, MG = 12, K = 19, CA = 20, MN = 25, FE = 26, CO = 27, NI = 28, CU = 29, ZN = 30 };
-    static const struct { int metal; double oxygen, nitrogen, sulphur; } KNOWN[] = { /* 0: not listed */
-        {NA, 2.41, 0, 0},     {MG, 2.07, 0, 0},       {K, 2.81, 0, 0},        {CA, 2.38, 0, 0},     {MN, 2.17, 2.21, 2.35},
-        {FE, 2.07, 2.16, 2.30}, {CO, 2.08, 2.14, 2.25}, {NI, 2.06, 2.08, 2.23}, {CU, 2.00, 2.02, 2.15}, {ZN, 2.04, 2.03, 2.31}};
+    static const struct {
+        int metal;
+        double oxygen, nitrogen, sulphur;
+    } KNOWN[] = {/* 0: not listed */
+                 {NA, 2.41, 0, 0},       {MG, 2.07, 0, 0},       {K, 2.81, 0, 0},        {CA, 2.38, 0, 0},
+                 {MN, 2.17, 2.21, 2.35}, {FE, 2.07, 2.16, 2.30}, {CO, 2.08, 2.14, 2.25}, {NI, 2.06, 2.08, 2.23},
+                 {CU, 2.00, 2.02, 2.15}, {ZN, 2.04, 2.03, 2.31}};
     int metal = tml_element_is_metal(element_1) ? element_1 : element_2, donor = metal == element_1 ? element_2 : element_1;
     if (!tml_element_is_metal(metal)) return NAN;
     for (size_t i = 0; i < sizeof KNOWN / sizeof *KNOWN; i++) {
@@ -377,9 +399,13 @@ static double length_between(int a, tml_shape shape_a, int b, tml_shape shape_b,
     double metal = tml_metal_length(a, b);
     if (!isnan(metal)) return order == TML_ORDER_DOUBLE ? DOUBLE * metal : metal;
     for (size_t i = 0; i < sizeof lengths / sizeof *lengths; i++)
-        if (lengths[i].order == order && (fits(&lengths[i], a, shape_a, b, shape_b) || fits(&lengths[i], b, shape_b, a, shape_a)))
+        if (lengths[i].order == order &&
+            (fits(&lengths[i], a, shape_a, b, shape_b) || fits(&lengths[i], b, shape_b, a, shape_a)))
             return lengths[i].length;
-    double scale = order == TML_ORDER_SINGLE ? 1 : order == TML_ORDER_DOUBLE ? DOUBLE : order == TML_ORDER_TRIPLE ? TRIPLE : BETWEEN;
+    double scale = order == TML_ORDER_SINGLE   ? 1
+                   : order == TML_ORDER_DOUBLE ? DOUBLE
+                   : order == TML_ORDER_TRIPLE ? TRIPLE
+                                               : BETWEEN;
     return scale * (tml_element_covalent_radius(a) + tml_element_covalent_radius(b));
 }
 
@@ -405,7 +431,10 @@ double tml_topology_angle(const tml_topology *t, int32_t a, int32_t centre, int3
 
 /* Flat rings of five with one large atom: at it, beside it, opposite to it. Thiophene, selenophene. */
 static double hetero_ring_angle(const tml_topology *t, int32_t ring, int32_t centre) {
-    static const struct { int element; double at, beside, opposite; } KNOWN[] = {{S, 92.2, 111.5, 112.4}, {SE, 87.8, 111.6, 114.5}};
+    static const struct {
+        int element;
+        double at, beside, opposite;
+    } KNOWN[] = {{S, 92.2, 111.5, 112.4}, {SE, 87.8, 111.6, 114.5}};
     const int32_t *atoms = &t->ring_atoms[t->ring_first[ring]];
     int32_t here = 0, large = -1;
     for (int32_t i = 0; i < 5; i++) {
@@ -447,8 +476,10 @@ static double trigonal_angle(const tml_topology *t, int32_t a, int32_t centre, i
 }
 
 double tml_two_armed_angle(int element, int arm_1, int arm_2) {
-    static const struct { int element; double heavy, hydrogen, disulphide; } KNOWN[] = {
-        {O, 111.7, 108.5, 111.7}, {S, 98.9, 96.5, 103.8}, {SE, 96.3, 95.5, 100}};
+    static const struct {
+        int element;
+        double heavy, hydrogen, disulphide;
+    } KNOWN[] = {{O, 111.7, 108.5, 111.7}, {S, 98.9, 96.5, 103.8}, {SE, 96.3, 95.5, 100}};
     for (size_t i = 0; i < sizeof KNOWN / sizeof *KNOWN; i++) {
         if (KNOWN[i].element != element) continue;
         bool chalcogens = arm_1 == S || arm_2 == S || arm_1 == SE || arm_2 == SE;
@@ -461,13 +492,12 @@ static double sulphonyl_angle(const tml_topology *t, int32_t a, int32_t centre, 
     static const double BY_OXYGENS[3] = {103.5, 107.9, 119.7};
     int oxygens = 0;
     const int32_t ends[2] = {a, c};
-    for (int k = 0; k < 2; k++)
-        oxygens += t->bonds[tml_topology_bond_between(t, ends[k], centre)].order != TML_ORDER_SINGLE;
+    for (int k = 0; k < 2; k++) oxygens += t->bonds[tml_topology_bond_between(t, ends[k], centre)].order != TML_ORDER_SINGLE;
     return BY_OXYGENS[oxygens];
 }
 
-/* In small rings: cyclopropane, cyclobutane, and the mean of a puckered five-ring. Two arms beside such an angle share what is left
- * as in arms.c; two arms away from it enclose more the smaller the ring. */
+/* In small rings: cyclopropane, cyclobutane, and the mean of a puckered five-ring. Two arms beside such an angle share what is
+ * left as in arms.c; two arms away from it enclose more the smaller the ring. */
 static double tetrahedral_angle(const tml_topology *t, int32_t a, int32_t centre, int32_t c) {
     static const double RING[6] = {0, 0, 0, 60, 88.5, 104.5}, OPPOSITE[6] = {0, 0, 0, 115, 111, TETRAHEDRAL};
     static const double RADIANS = 3.14159265358979323846 / 180;
@@ -478,10 +508,11 @@ static double tetrahedral_angle(const tml_topology *t, int32_t a, int32_t centre
     double two_armed = degree == 2 ? tml_two_armed_angle(element, t->elements[a], t->elements[c]) : NAN;
     if (!isnan(two_armed)) return two_armed;
     if (element == S && degree == 4 && count_order(t, centre, TML_ORDER_SINGLE) == 2) return sulphonyl_angle(t, a, centre, c);
-    if (element == S && degree == 3) return t->bonds[tml_topology_bond_between(t, a, centre)].order != TML_ORDER_SINGLE ||
-                                            t->bonds[tml_topology_bond_between(t, c, centre)].order != TML_ORDER_SINGLE
-                                                ? 106.7
-                                                : 100;
+    if (element == S && degree == 3)
+        return t->bonds[tml_topology_bond_between(t, a, centre)].order != TML_ORDER_SINGLE ||
+                       t->bonds[tml_topology_bond_between(t, c, centre)].order != TML_ORDER_SINGLE
+                   ? 106.7
+                   : 100;
     int32_t smallest = 0, p = -1, q = -1;
     for (int32_t i = t->first[centre]; degree == 4 && i < t->first[centre + 1]; i++)
         for (int32_t j = i + 1; j < t->first[centre + 1]; j++) {

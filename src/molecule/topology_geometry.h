@@ -1,7 +1,8 @@
-/* topology_geometry.h: a molecule as a graph of elements and bond orders, and the lengths and angles that it leads one to expect.
+/* topology_geometry.h: a molecule as a graph of elements and bond orders, and the lengths and angles that it leads one to
+ * expect.
  *
- * A tml_topology owns its arrays; tml_topology_clear frees them. Rings are those of eight atoms or fewer that are a smallest one
- * of some bond. Lengths in Å, angles in degrees. The sources of the numbers stand in topology_geometry.c.
+ * A tml_topology owns its arrays; tml_topology_clear frees them. Rings are those of eight atoms or fewer that are a smallest
+ * one of some bond. Lengths in Å, angles in degrees. The sources of the numbers stand in topology_geometry.c.
  */
 #ifndef TML_TOPOLOGY_GEOMETRY_H
 #define TML_TOPOLOGY_GEOMETRY_H
@@ -18,13 +19,17 @@ typedef enum tml_order {
 } tml_order;
 
 typedef enum tml_shape {
-    TML_SHAPE_OTHER,  /* metals, and what has more than four arms */
+    TML_SHAPE_OTHER, /* metals, and what has more than four arms */
     TML_SHAPE_LINEAR,
     TML_SHAPE_TRIGONAL,
     TML_SHAPE_TETRAHEDRAL
 } tml_shape;
 
-typedef struct tml_topology_bond { int32_t a, b; tml_order order; int32_t ring; } tml_topology_bond; /* ring: of the smallest; 0 for none */
+typedef struct tml_topology_bond {
+    int32_t a, b;
+    tml_order order;
+    int32_t ring;
+} tml_topology_bond; /* ring: of the smallest; 0 for none */
 
 typedef struct tml_topology {
     int32_t atom_count, bond_count, ring_count;
@@ -54,13 +59,15 @@ int32_t tml_topology_bond_between(const tml_topology *topology, int32_t a, int32
 int32_t tml_topology_ring_of(const tml_topology *topology, int32_t a, int32_t centre, int32_t c);
 int32_t tml_topology_ring_size(const tml_topology *topology, int32_t ring);
 
-/* Bond about which atoms do not turn: double, aromatic, delocalised, or from a trigonal nitrogen to what it is conjugated with. */
+/* Bond about which atoms do not turn: double, aromatic, delocalised, or from a trigonal nitrogen to what it is conjugated with.
+ */
 bool tml_topology_is_stiff(const tml_topology *topology, int32_t bond);
 
 double tml_topology_length(const tml_topology *topology, int32_t bond);
 double tml_topology_angle(const tml_topology *topology, int32_t a, int32_t centre, int32_t c);
 
-/* Nuclear length of a bond to hydrogen; NAN for an element of which none is known. `in_ring`: on a trigonal carbon of a ring. */
+/* Nuclear length of a bond to hydrogen; NAN for an element of which none is known. `in_ring`: on a trigonal carbon of a ring.
+ */
 double tml_hydrogen_length(int element, bool in_ring);
 
 /* Degrees between the two arms of an oxygen, sulphur or selenium atom that is in no ring; NAN for other elements. */
