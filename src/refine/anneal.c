@@ -39,10 +39,11 @@ typedef struct phase {
     double skin;               /* Å, of the neighbour list */
     int look_every;            /* steps between looks at whether an atom has moved by half the skin */
     bool heavy_only;           /* hydrogens do not repel: while hot they only cost time */
+    bool both;                 /* open stereo pairs count with both members: an assignment would hold the fold up */
 } phase;
 
 static const phase SCHEDULE[] = {
-    {.steps = 3000, .hot = 12, .cold = 12, .from = &SOFT, .to = &SOFT_END, .skin = 1.5, .look_every = 8, .heavy_only = true},
+    {.steps = 3000, .hot = 12, .cold = 12, .from = &SOFT, .to = &SOFT_END, .skin = 1.5, .look_every = 8, .heavy_only = true, .both = true},
     {.steps = 6000, .hot = 12, .cold = 0.02, .from = &SOFT_END, .to = &FIRM, .skin = 1.2, .look_every = 8},
 };
 
@@ -52,7 +53,7 @@ static const double STEP_AT_1000 = 0.012;
 static const double LONGEST = 0.4;
 /* Share of the way to the wanted kinetic energy that one step's rescaling goes. */
 static const double COUPLING = 0.2;
-enum { SETTLE_STEPS = 60, ASSIGN_EVERY = 50 };
+enum { SETTLE_STEPS = 60, ASSIGN_EVERY = 10 };
 
 /* Every weight in `from` and `to` is a double; a table of their places keeps the interpolation in one loop. */
 static tml_weights between(const tml_weights *from, const tml_weights *to, double share) {
@@ -68,7 +69,7 @@ static tml_weights between(const tml_weights *from, const tml_weights *to, doubl
 static const double USUAL_CROWD = 0.8;
 
 static double crowd_share(const tml_refiner *refiner) {
-    double crowd = (double)refiner->sum_count / refiner->atom_count;
+    double crowd = (double)refiner->problem->restraints.distance_count / refiner->atom_count;
     return crowd > USUAL_CROWD ? USUAL_CROWD / crowd : 1.0;
 }
 
@@ -105,6 +106,7 @@ static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, 
     const double crowd = crowd_share(scene->refiner);
     tml_weights weights = *plan->from;
     tml_scene_repel_hydrogens(scene, !plan->heavy_only);
+    scene->both = plan->both;
     for (int step = 0; step < steps; step++) {
         if (stop != NULL && *stop) return TML_INTERRUPTED;
         double share = (double)step / steps;
@@ -112,7 +114,7 @@ static tml_status run_phase(tml_scene *scene, const phase *plan, double effort, 
             weights = between(plan->from, plan->to, share);
             weights.restraint *= crowd;
         }
-        if (step % ASSIGN_EVERY == 0) tml_scene_assign(scene, &weights);
+        if (step % ASSIGN_EVERY == 0 && !plan->both) tml_scene_assign(scene, &weights);
         tml_status status = TML_OK;
         if (step % plan->look_every == 0) status = tml_scene_relist(scene, plan->skin);
         if (status != TML_OK) return status;

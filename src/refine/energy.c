@@ -224,10 +224,11 @@ INLINE void sum_push(const tml_sum_term *sum, const tml_pair *pairs, double effe
     }
 }
 
-INLINE double sums(const tml_refiner *refiner, const tml_pair *pairs, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
+INLINE double sums(const tml_refiner *refiner, const tml_pair *pairs, bool both, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
     double energy = 0, effective, slope;
     for (int32_t i = 0; i < refiner->single_count; i++) {
         const tml_sum_term *sum = &refiner->sums[i];
+        if (both && sum->both >= 0) sum = &refiner->both_sums[sum->both];
         double total = sum_of(sum, pairs, x);
         if (total >= sum->least && total <= sum->most) continue;
         double e = sum_energy(sum, total, weights, &effective, &slope);
@@ -422,7 +423,7 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     energy += volumes(refiner->volumes, refiner->volume_count, weights->volume, x, f);
     energy += volumes(refiner->flats, refiner->flat_count, weights->flat, x, f);
     if (weights->plane > 0) energy += planes(&refiner->problem->molecule, weights->plane, x, f);
-    energy += sums(refiner, scene->sum_pairs, weights, x, f);
+    energy += sums(refiner, scene->sum_pairs, scene->both, weights, x, f);
     if (refiner->choice_count > 0) energy += choices(refiner, scene->sum_pairs, weights, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
     if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);

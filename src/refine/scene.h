@@ -20,6 +20,7 @@ typedef struct tml_scene {
     bool heavy_only;         /* hydrogens are left out of the list */
     tml_pair *sum_pairs;     /* the refiner's, with the swapped stereo pairs' members exchanged */
     bool *swapped;           /* per stereo pair of the restraints */
+    bool both;               /* both members of open stereo pairs count, summed, whatever is assigned */
     double *copies;          /* work space of alike.c: two copies of a chain */
     struct tml_cells *cells; /* work space of neighbour.c */
 } tml_scene;

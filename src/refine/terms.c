@@ -64,6 +64,7 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->sum_pairs);
     free(refiner->choices);
     free(refiner->open_pairs);
+    free(refiner->both_sums);
     free(refiner->open_uses);
     free(refiner->torsions);
     free(refiner->arcs);
@@ -181,7 +182,7 @@ static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, 
 
 /* ---- restraints ---- */
 
-typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices, open, uses; } sum_builder; /* capacities */
+typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices, open, uses, both; } sum_builder; /* capacities */
 
 static bool sum_begin(sum_builder *builder, const tml_distance_restraint *restraint, int32_t combination) {
     tml_refiner *refiner = builder->refiner;
@@ -192,6 +193,7 @@ static bool sum_begin(sum_builder *builder, const tml_distance_restraint *restra
                                                          .weight = restraint->weight,
                                                          .share = 1.0,
                                                          .combination = combination,
+                                                         .both = -1,
                                                          .first_open = refiner->open_pair_count};
     return true;
 }
@@ -280,6 +282,16 @@ static bool add_sum(sum_builder *builder, const tml_distance_restraint *restrain
     return sum_end(builder, restraint->average);
 }
 
+/* The last sum once more, with both members of its open pairs, in the array beside. */
+static bool add_both(sum_builder *builder, const tml_distance_restraint *restraint, const tml_alternative *alternatives) {
+    tml_refiner *refiner = builder->refiner;
+    if (!tml_grow(&refiner->both_sums, &builder->both, (size_t)refiner->both_count + 1, sizeof *refiner->both_sums)) return false;
+    if (!add_sum(builder, restraint, alternatives, NULL)) return false;
+    refiner->both_sums[refiner->both_count] = refiner->sums[--refiner->sum_count];
+    refiner->sums[refiner->sum_count - 1].both = refiner->both_count++;
+    return true;
+}
+
 /* One sum over all alternatives of a plain restraint; a second one for a lower limit that both members of open pairs keep. */
 static bool add_single(sum_builder *builder, const tml_distance_restraint *restraint, const bool *none_swapped) {
     const tml_alternative *alternatives = &builder->refiner->problem->restraints.alternatives[restraint->first_alternative];
@@ -289,8 +301,8 @@ static bool add_single(sum_builder *builder, const tml_distance_restraint *restr
         below.upper = INFINITY;
         if (!add_sum(builder, &below, alternatives, NULL)) return false;
     }
-    return add_sum(builder, &above, alternatives, none_swapped) &&
-           note_uses(builder, restraint, builder->refiner->sum_count - 1, -1);
+    if (!add_sum(builder, &above, alternatives, none_swapped) || !note_uses(builder, restraint, builder->refiner->sum_count - 1, -1)) return false;
+    return builder->refiner->sums[builder->refiner->sum_count - 1].open_count == 0 || add_both(builder, &above, alternatives);
 }
 
 /* One sum for each alternative of a combined restraint; an alternative outside combinations is one by itself. */

@@ -24,6 +24,7 @@ typedef struct tml_sum_term {
     double least, most;             /* Σ r⁻⁶ between these: within both limits */
     int32_t combination;            /* within its choice */
     int32_t first_open, open_count; /* its open pairs */
+    int32_t both;                   /* into both_sums: the same with both members of open stereo pairs; -1 where none is open */
 } tml_sum_term;
 
 /* A pair of a sum whose ends depend on which member of a stereo pair (index, otherwise -1) is x: its place among the pairs, and
@@ -57,6 +58,7 @@ struct tml_refiner {
     tml_volume_term *flats;    int32_t flat_count;   /* three arms, volume 0 */
     tml_sum_term *sums;        int32_t sum_count;    /* single restraints first, then those of choices */
     int32_t single_count;
+    tml_sum_term *both_sums;   int32_t both_count; /* for the hot phase, which leaves stereo pairs untold */
     tml_pair *sum_pairs;       int32_t sum_pair_count; /* with no stereo pair swapped */
     tml_choice_term *choices;   int32_t choice_count;
     tml_open_pair *open_pairs;  int32_t open_pair_count;
