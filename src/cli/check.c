@@ -13,6 +13,8 @@ static const char HELP[] =
     "input is standard input.\n"
     "\n"
     "      --json FILE     write the findings as JSON to FILE, too; '-' writes them to standard output, without the report\n"
+    "      --against FILE  tell, restraint by restraint, where the inputs and FILE differ in atoms and limits; the exit status\n"
+    "                      stays what it is\n"
     "  -t, --threads T     use T threads (default: all)\n"
     "      --strict        a restraint that names unknown atoms is an error\n"
     "      --progress      tell the progress on standard error even if that is no terminal\n"
@@ -21,15 +23,16 @@ static const char HELP[] =
     "\n"
     "Exit status: 0 consistent, 1 contradictions, 2 bad input or usage, 3 the machine failed.\n";
 
-typedef struct settings { const char *json; int threads; bool strict, progress; tml_read_options read; } settings;
+typedef struct settings { const char *json, *against; int threads; bool strict, progress; tml_read_options read; } settings;
 
 static int run_check(const tml_command *self, int argc, char **argv);
 const tml_command tml_command_check = {"check", "are the limits consistent, and if not, which ones fight", HELP, run_check};
 
 /* Returns -1 to go on, or the exit status. */
 static int parse(const tml_command *self, int argc, char **argv, settings *set) {
-    enum { JSON = TML_OPTION_OWN, STRICT, PROGRESS };
+    enum { JSON = TML_OPTION_OWN, AGAINST, STRICT, PROGRESS };
     static const struct option OPTIONS[] = {{"json", required_argument, NULL, JSON},
+                                            {"against", required_argument, NULL, AGAINST},
                                             {"threads", required_argument, NULL, 't'},
                                             {"strict", no_argument, NULL, STRICT},
                                             {"progress", no_argument, NULL, PROGRESS},
@@ -47,6 +50,7 @@ static int parse(const tml_command *self, int argc, char **argv, settings *set) 
         }
         switch (got) {
         case JSON: set->json = optarg; break;
+        case AGAINST: set->against = optarg; break;
         case 't':
             if (!tml_cli_integer(self, "--threads", optarg, 1, TML_CLI_THREADS_MOST, &number)) return TML_EXIT_USAGE;
             set->threads = (int)number;
@@ -64,13 +68,24 @@ static int smooth_and_report(const settings *set, const tml_problem *problem, co
     tml_bounds *bounds = NULL;
     tml_contradictions found = {0};
     tml_use *uses = NULL;
+    tml_problem *other = NULL;
+    tml_difference difference = {0};
+    tml_read_options alone = set->read; /* tables belong to the inputs, not to what these are held against */
+    alone.tables = NULL;
+    alone.table_count = 0;
     bool to_stdout = set->json != NULL && set->json[0] == '-' && set->json[1] == '\0';
     tml_status status = tml_bounds_prepare(problem, set->threads, watch, &bounds, &found, &error);
     tml_bounds_free(bounds);
     if (status == TML_OK || status == TML_CONTRADICTED) status = TML_OK;
     if (status == TML_OK) status = tml_restraints_judge(problem, set->threads, watch, &uses, &error);
+    if (status == TML_OK && set->against != NULL) status = tml_problem_read(&set->against, 1, &alone, &other, &error);
+    if (status == TML_OK && set->against != NULL) status = tml_difference_find(problem, other, &difference, &error);
     if (status == TML_OK && !to_stdout) status = tml_print_check(stdout, problem, &found, uses, &error);
-    if (status == TML_OK && set->json != NULL) status = tml_write_check_json(problem, &found, uses, set->json, &error);
+    if (status == TML_OK && !to_stdout && set->against != NULL) status = tml_print_difference(stdout, &difference, &error);
+    if (status == TML_OK && set->json != NULL)
+        status = tml_write_check_json(problem, &found, uses, set->against == NULL ? NULL : &difference, set->json, &error);
+    tml_difference_clear(&difference);
+    tml_problem_free(other);
     free(uses);
     int exit_status = found.count > 0 ? TML_EXIT_FINDING : TML_EXIT_DONE;
     if (status != TML_OK) exit_status = tml_cli_failed(&error);

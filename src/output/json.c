@@ -209,7 +209,7 @@ static json_t *of_use(const tml_problem *problem, const tml_use *uses, tml_use w
 }
 
 tml_status tml_write_check_json(const tml_problem *problem, const tml_contradictions *found, const tml_use *uses,
-                                const char *path, tml_error *error) {
+                                const tml_difference *difference, const char *path, tml_error *error) {
     int32_t ranges[TML_RANGE_COUNT];
     tml_count_ranges(problem, ranges);
     json_t *counts = json_pack("{s:i, s:i, s:i, s:i}", "atoms", problem->molecule.atom_count, "distance",
@@ -221,6 +221,7 @@ tml_status tml_write_check_json(const tml_problem *problem, const tml_contradict
                              found->count == 0, "counts", counts, "contradictions", findings(problem, found), "repair",
                              repairs(problem, found), "redundant", of_use(problem, uses, TML_USE_REDUNDANT), "out_of_range",
                              of_use(problem, uses, TML_USE_OUT_OF_RANGE), "unmapped", unmapped(problem), "notes", notes(problem));
+    if (difference != NULL) tml_json_put(&root, "against", tml_difference_json(difference));
     return tml_json_write(root, path, error);
 }
 

@@ -10,6 +10,7 @@
 
 #include "bounds/redundant.h"
 #include "ensemble/ensemble.h"
+#include "restraint/difference.h"
 
 typedef enum tml_format { TML_FORMAT_UNKNOWN, TML_FORMAT_PDB, TML_FORMAT_CIF } tml_format;
 
@@ -30,9 +31,11 @@ tml_status tml_write_build_json(const tml_ensemble *ensemble, const tml_contradi
 /* The summary of a build for people. */
 tml_status tml_print_build(FILE *out, const tml_ensemble *ensemble, const tml_contradictions *found, tml_error *error);
 
-/* The report of a check: for programs (JSON) and for people. uses: from tml_restraints_judge, or NULL. */
+/* The report of a check: for programs (JSON) and for people. uses: from tml_restraints_judge, or NULL. difference: from another
+ * input, or NULL; for people it stands by itself. */
 tml_status tml_write_check_json(const tml_problem *problem, const tml_contradictions *found, const tml_use *uses,
-                                const char *path, tml_error *error);
+                                const tml_difference *difference, const char *path, tml_error *error);
+tml_status tml_print_difference(FILE *out, const tml_difference *difference, tml_error *error);
 tml_status tml_print_check(FILE *out, const tml_problem *problem, const tml_contradictions *found, const tml_use *uses,
                            tml_error *error);
 

@@ -15,6 +15,10 @@ json_t *tml_json_number(double value);    /* null for infinities and NaN, which 
 json_t *tml_json_rounded(double value);   /* figures in Å, degrees and seconds: what lies beyond six decimals is noise */
 json_t *tml_json_text(const char *text);  /* of any input; what is no UTF-8 is told byte by byte; null for NULL */
 
+/* Where two problems differ, as an object of a report. */
+struct tml_difference;
+json_t *tml_difference_json(const struct tml_difference *difference);
+
 /* Write and free; a root that lacks memory is NULL. */
 tml_status tml_json_write(json_t *root, const char *path, tml_error *error);
 

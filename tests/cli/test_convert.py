@@ -1,5 +1,6 @@
 """`trammel convert` from outside: formats by name and by option, statuses, refusals."""
 import gzip
+import json
 
 import harness
 
@@ -30,6 +31,17 @@ class Convert(harness.CommandTest):
         self.trammel('convert', self.sheet, '-o', self.path('one.nef'))
         self.trammel('convert', self.sheet, '-o', self.path('two.nef'))
         self.assertEqual(self.read('one.nef'), self.read('two.nef'))
+
+    def test_what_was_converted_can_be_held_against_its_source(self):
+        self.trammel('convert', self.sheet, '-o', self.path('out.str'))
+        out, _ = self.trammel('check', self.sheet, '--against', self.path('out.str'), '--json', self.path('report.json'))
+        self.assertIn('1 distances: the same in both', out)
+        against = json.loads(self.read('report.json'))['against']
+        self.assertEqual((against['distances']['counts']['same'], against['distances']['differences']), (1, []))
+        other = self.write('other.sheet', SHEET.replace('1.8 5', '1.8 6'))
+        out, _ = self.trammel('check', self.sheet, '--against', other)
+        self.assertIn('the same atoms, other limits', out)
+        self.trammel('check', self.sheet, '--against', self.path('none'), status=2)
 
     def test_refusals(self):
         self.trammel('convert', status=2)

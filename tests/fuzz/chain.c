@@ -36,7 +36,7 @@ static void report(const tml_problem *problem) {
         if (nowhere == NULL) abort();
         if (tml_print_check(nowhere, problem, &found, NULL, &error) != TML_OK) abort();
         fclose(nowhere);
-        if (tml_write_check_json(problem, &found, NULL, "/dev/null", &error) != TML_OK) abort();
+        if (tml_write_check_json(problem, &found, NULL, NULL, "/dev/null", &error) != TML_OK) abort();
     } else if (error.message[0] == '\0') {
         abort(); /* a failure without a reason */
     }

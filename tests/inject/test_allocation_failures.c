@@ -116,7 +116,7 @@ static tml_status check_way(const char *const *paths, size_t count) {
     if (status == TML_CONTRADICTED) status = TML_OK;
     if (status == TML_OK) status = tml_restraints_judge(problem, 1, NULL, &uses, &error);
     if (status == TML_OK) status = tml_print_check(nowhere, problem, &found, uses, &error);
-    if (status == TML_OK) status = tml_write_check_json(problem, &found, uses, in_folder("check.json"), &error);
+    if (status == TML_OK) status = tml_write_check_json(problem, &found, uses, NULL, in_folder("check.json"), &error);
     if (status == TML_OK) status = tml_write_bounds(problem, bounds, in_folder("bounds.gz"), &error);
     fclose(nowhere);
     free(uses);

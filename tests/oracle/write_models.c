@@ -131,7 +131,7 @@ int main(int argc, char **argv) {
     if (status == TML_OK) status = tml_write_models(&ensemble, &found, in_folder(argv[1], "models.pdb.gz"), TML_FORMAT_PDB, true, &error);
     if (status == TML_OK) status = tml_write_models(&ensemble, &found, in_folder(argv[1], "models.cif.gz"), TML_FORMAT_CIF, true, &error);
     if (status == TML_OK) status = tml_write_build_json(&ensemble, &found, in_folder(argv[1], "summary.json"), &error);
-    if (status == TML_OK) status = tml_write_check_json(&problem, &found, NULL, in_folder(argv[1], "check.json"), &error);
+    if (status == TML_OK) status = tml_write_check_json(&problem, &found, NULL, NULL, in_folder(argv[1], "check.json"), &error);
     FILE *report = fopen(in_folder(argv[1], "report.txt"), "w");
     if (report == NULL) return 3;
     if (status == TML_OK) status = tml_print_build(report, &ensemble, &found, &error);
