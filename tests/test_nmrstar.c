@@ -161,6 +161,25 @@ Test(trees, and_over_leaves_holds_together_and_and_over_or_is_left_out) {
 Test(trees, nodes_in_a_circle_end) {
     tml_problem *p = read_good(ASSEMBLY TREE("1 1 2 . OR 1 2 1 2 OR", "1 2 1 1 1 HA2", "1 1 1.8 5"));
     cr_assert_eq(p->restraints.distance_count, 0);
+    cr_assert(has_note(p, "trees of restraints: 2 nodes"));
+    tml_problem_free(p);
+}
+
+Test(trees, may_stand_in_any_order_and_what_hangs_loose_is_told) {
+    tml_problem *p = read_good(ASSEMBLY TREE("1 3 . . . 1 2 . 3 . 1 1 2 . OR 1 4 . . .",
+                                             "1 2 1 1 1 HA2 1 2 2 1 3 H 1 3 1 1 1 HA3 1 3 2 1 3 H 1 9 1 1 1 HA2", "1 1 1.8 5 1 2 1.8 6"));
+    cr_assert_eq(p->restraints.distance_count, 1);
+    cr_assert(distance_by_id(p, "1")->alternative_count == 2 && distance_by_id(p, "1")->upper == 5);
+    cr_assert(has_note(p, "1 nodes hang on no other"));
+    cr_assert(has_note(p, "1 rows of members or values"));
+    cr_assert(has_note(p, "1 nodes have limits other"));
+    tml_problem_free(p);
+}
+
+Test(trees, a_leaf_of_three_members_is_left_out) {
+    tml_problem *p = read_good(ASSEMBLY TREE("1 1 . . .", "1 1 1 1 1 HA2 1 1 2 1 3 H 1 1 3 1 2 H", "1 1 1.8 4.2"));
+    cr_assert_eq(p->restraints.distance_count, 0);
+    cr_assert(has_note(p, "1 leaves have not two members"));
     tml_problem_free(p);
 }
 

@@ -21,10 +21,10 @@ typedef struct model {
     tml_plane plane;
     int32_t plane_atoms[4], neighbour_first[ATOMS + 1], neighbours[16];
     double plane_xy[8];
-    tml_distance_restraint distances[4];
+    tml_distance_restraint distances[5];
     tml_alike alike;
     int32_t alike_atoms[9];
-    tml_alternative alternatives[6];
+    tml_alternative alternatives[7];
     int32_t group_atoms[10];
     tml_dihedral_restraint dihedrals[2];
     tml_dihedral_interval intervals[3];
@@ -77,12 +77,15 @@ static void make_model(model *m) {
 
     const int32_t groups[10] = {1, 2, 3, 9, 10, 4, 11, 6, 7, 8};
     memcpy(m->group_atoms, groups, sizeof groups);
-    m->alternatives[0] = (tml_alternative){0, 3, 3, 2, 6, -1, -1, -1, false, false}; /* {1,2,3} with {9,10} */
-    m->alternatives[1] = (tml_alternative){5, 1, 6, 1, 1, -1, -1, -1, false, false}; /* 4 with 11 */
-    m->alternatives[2] = (tml_alternative){7, 1, 3, 1, 1, 0, -1, -1, false, false};  /* 6 with 9 */
-    m->alternatives[3] = (tml_alternative){8, 1, 4, 1, 1, 0, -1, -1, false, false};  /* and 7 with 10 */
-    m->alternatives[4] = (tml_alternative){9, 1, 6, 1, 1, 1, -1, -1, false, false};  /* or 8 with 11 */
-    m->alternatives[5] = (tml_alternative){5, 1, 7, 2, 2, -1, -1, 0, false, true}; /* 4 with 7, or with 6 where the stereo pair is swapped; averaged */
+    m->alternatives[0] = (tml_alternative){0, 3, 3, 2, 6, -1, -1, -1, false, false, false, false}; /* {1,2,3} with {9,10} */
+    m->alternatives[1] = (tml_alternative){5, 1, 6, 1, 1, -1, -1, -1, false, false, false, false}; /* 4 with 11 */
+    m->alternatives[2] = (tml_alternative){7, 1, 3, 1, 1, 0, -1, -1, false, false, false, false};  /* 6 with 9 */
+    m->alternatives[3] = (tml_alternative){8, 1, 4, 1, 1, 0, -1, -1, false, false, false, false};  /* and 7 with 10 */
+    m->alternatives[4] = (tml_alternative){9, 1, 6, 1, 1, 1, -1, -1, false, false, false, false};  /* or 8 with 11 */
+    m->alternatives[5] = (tml_alternative){5, 1, 7, 2, 2, -1, -1, 0, false, true, false, false}; /* 4 with 7, or with 6 where the stereo pair is swapped; averaged */
+    m->alternatives[6] = (tml_alternative){0, 3, 3, 2, 6, -1, -1, -1, false, false, true, true}; /* the centres of {1,2,3} and {9,10} */
+    m->distances[4] = (tml_distance_restraint){.lower = 0, .upper = 0.5, .weight = 1, .first_alternative = 6, .alternative_count = 1,
+                                               .pair_count = 6};
     m->distances[0] = (tml_distance_restraint){.lower = 0, .upper = 1.8, .weight = 1, .first_alternative = 0, .alternative_count = 2,
                                                .pair_count = 7};
     m->distances[1] = (tml_distance_restraint){.lower = 9, .upper = INFINITY, .weight = 0.5, .first_alternative = 1,
@@ -96,8 +99,8 @@ static void make_model(model *m) {
     m->intervals[0] = (tml_dihedral_interval){{1, 0, 5, 6}, 3.0, 3.1};
     m->intervals[1] = (tml_dihedral_interval){{2, 3, 7, 9}, 1.0, 1.1};
     m->intervals[2] = (tml_dihedral_interval){{2, 3, 7, 9}, 5.0, 5.1};
-    m->problem.restraints = (tml_restraints){.distances = m->distances, .distance_count = 4, .alternatives = m->alternatives,
-                                             .alternative_count = 6, .group_atoms = m->group_atoms, .group_atom_count = 10,
+    m->problem.restraints = (tml_restraints){.distances = m->distances, .distance_count = 5, .alternatives = m->alternatives,
+                                             .alternative_count = 7, .group_atoms = m->group_atoms, .group_atom_count = 10,
                                              .dihedrals = m->dihedrals, .dihedral_count = 2, .intervals = m->intervals,
                                              .interval_count = 3, .stereo_count = 1};
 }

@@ -76,10 +76,18 @@ typedef struct tml_table {
     const char *old_names; /* the mapping from old atom names to present ones, built in or a file; NULL for none */
 } tml_table;
 
+/* How pseudo-atoms (QB, MD1, QQG …) in distance restraints count. */
+typedef enum tml_pseudo {
+    TML_PSEUDO_SUM,      /* (Σ r⁻⁶)^(-1/6) over the atoms of the group */
+    TML_PSEUDO_CENTRE,   /* from the centre of the group; limits as they are */
+    TML_PSEUDO_CORRECTED /* from the centre of the group; upper limits widened by the published corrections */
+} tml_pseudo;
+
 /* What else there is to read, and how names in restraints are taken that leave something open. All zero is the default. */
 typedef struct tml_read_options {
     bool sum_stereo_pairs; /* names with x and y mean both members of the pair, summed; otherwise every model takes the
                               assignment of x and y that it violates least */
+    tml_pseudo pseudo;
     const tml_table *tables; /* read after the other inputs, whose sequence they need */
     size_t table_count;
     const char *old_names;   /* the same as in a table, for the restraints of the other inputs */

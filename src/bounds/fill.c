@@ -193,7 +193,11 @@ static bool fill_alternative(filler *f, tml_graph *covalent, int32_t index, cons
         pairs = (double)(alternative->count_a / (alternative->stereo_a >= 0 ? 2 : 1)) * (alternative->count_b / (alternative->stereo_b >= 0 ? 2 : 1));
     double most = restraint->upper * (restraint->average ? 1 : pow(pairs, 1.0 / 6.0));
     if (upper && alternative->pair_count > 1) most += diameter(covalent, a, alternative->count_a) + diameter(covalent, b, alternative->count_b);
+    /* From a group's centre: no atom of the group is farther from it than the group's diameter. */
+    double off_centre = (alternative->centre_a ? diameter(covalent, a, alternative->count_a) : 0) +
+                        (alternative->centre_b ? diameter(covalent, b, alternative->count_b) : 0);
     double least = restraint->average && pairs > 1 ? restraint->lower * pow(pairs, -1.0 / 6.0) : restraint->lower;
+    least -= off_centre;
     for (int32_t i = 0; i < alternative->count_a; i++)
         for (int32_t j = 0; j < alternative->count_b; j++) {
             if (upper && !add(f, a[i], b[j], most, true, TML_REASON_RESTRAINT, false, index)) return false;

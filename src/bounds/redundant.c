@@ -39,7 +39,8 @@ static reach reach_of(const tml_restraints *restraints, const tml_distance_restr
                 near = fmin(near, upper);
                 far = fmax(far, upper);
             }
-        nearest = fmin(nearest, tml_alternative_open(alternative) ? far : near);
+        if (tml_alternative_centred(alternative)) sum = INFINITY; /* a centre may be nearer than every atom about it */
+        nearest = fmin(nearest, tml_alternative_open(alternative) || tml_alternative_centred(alternative) ? far : near);
         farthest = fmax(farthest, far);
     }
     if (restraint->average && !any_open && restraint->pair_count > 0) sum /= restraint->pair_count;

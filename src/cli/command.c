@@ -242,6 +242,16 @@ static int take_stereo(const tml_command *command, const char *value, tml_read_o
     return tml_cli_usage(command, "--stereo takes open or sum, not '%s'.", value);
 }
 
+static int take_pseudo(const tml_command *command, const char *value, tml_read_options *options) {
+    static const char *const WORDS[] = {"sum", "centre", "corrected"}; /* in the order of tml_pseudo */
+    for (size_t i = 0; i < sizeof WORDS / sizeof *WORDS; i++)
+        if (strcmp(value, WORDS[i]) == 0) {
+            options->pseudo = (tml_pseudo)i;
+            return -1;
+        }
+    return tml_cli_usage(command, "--pseudo takes sum, centre or corrected, not '%s'.", value);
+}
+
 static int take_table(const tml_command *command, const char *path, tml_read_options *options) {
     if (options->table_count == TABLES_MOST) return tml_cli_usage(command, "No more than %d tables can be read.", TABLES_MOST);
     tables[options->table_count++] = (tml_table){.path = path};
@@ -261,6 +271,7 @@ bool tml_cli_read_option(const tml_command *command, int got, const char *value,
     const char **old_names = options->table_count > 0 ? &tables[options->table_count - 1].old_names : &options->old_names;
     switch (got) {
     case TML_OPTION_STEREO: *status = take_stereo(command, value, options); return true;
+    case TML_OPTION_PSEUDO: *status = take_pseudo(command, value, options); return true;
     case TML_OPTION_ALIKE:
         options->alike_chains = true;
         *status = -1;

@@ -27,6 +27,7 @@ enum {
     TML_OPTION_HELP = 1000,
     TML_OPTION_STEREO,
     TML_OPTION_ALIKE,
+    TML_OPTION_PSEUDO,
     TML_OPTION_TABLE,
     TML_OPTION_COLUMNS,
     TML_OPTION_TABLE_FORM,
@@ -39,6 +40,7 @@ enum {
  * are kept in command.c, once for the one command of a run. */
 #define TML_READ_OPTIONS                                                                                                \
     {"stereo", required_argument, NULL, TML_OPTION_STEREO}, {"alike", no_argument, NULL, TML_OPTION_ALIKE},             \
+        {"pseudo", required_argument, NULL, TML_OPTION_PSEUDO},                                                         \
         {"table", required_argument, NULL, TML_OPTION_TABLE},                                                           \
         {"columns", required_argument, NULL, TML_OPTION_COLUMNS},                                                       \
         {"table-form", required_argument, NULL, TML_OPTION_TABLE_FORM},                                                 \
@@ -47,6 +49,8 @@ enum {
     "      --stereo open|sum    names with x and y, as HBx: every model takes the assignment of x and y that it violates\n"  \
     "                           least (default), or both members of the pair count, summed\n"                            \
     "      --alike              chains of the same residues take the same shape, as with the sheet's statement\n"       \
+    "      --pseudo sum|centre|corrected  pseudo-atoms (QB, MD1) count as the sum over their group (default), or from its\n" \
+    "                           centre, with upper limits as they are or widened by the published corrections\n"           \
     "      --table FILE         read restraints from the table FILE, too; it needs --columns\n"                            \
     "      --columns WORDS      what the columns of the table before it hold, in their order, such as \"chain_1\n"         \
     "                           residue_1 atom_1 chain_2 residue_2 atom_2 lower upper id\"; '-' passes over one,\n"        \

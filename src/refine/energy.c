@@ -4,6 +4,7 @@
  *   volumes      signed volumes of centres, flat centres
  *   planes       distance from the best plane
  *   sums         restraints as (Σ r⁻⁶)^(-1/6), choices between combinations
+ *   centres      restraints from centres of groups
  *   torsions     dihedral intervals
  *   backbones    preference for the usual regions of phi and psi
  *   repulsion    over the neighbour list
@@ -287,6 +288,49 @@ double tml_energy_of_use(const tml_scene *scene, const tml_open_use *use, const 
     return best < 0 ? 0 : energy;
 }
 
+/* ---- centres ---- */
+
+/* Add `scale` times the mean of a point's atoms to *out. */
+INLINE void add_centre(const tml_refiner *refiner, const tml_centre_point *point, double scale, const tml_v4 *x, tml_v4 *out) {
+    for (int32_t i = 0; i < point->count; i++) *out += (scale / point->count) * x[refiner->centre_atoms[point->first + i]];
+}
+
+INLINE void push_centre(const tml_refiner *refiner, const tml_centre_point *point, double scale, const tml_v4 *push, tml_v4 *f) {
+    for (int32_t i = 0; i < point->count; i++) f[refiner->centre_atoms[point->first + i]] += (scale / point->count) * *push;
+}
+
+/* Restraints from centres of groups, as sums over pairs of points; a force on a centre is shared out among its atoms. */
+INLINE double centres(const tml_refiner *refiner, const tml_weights *weights, const tml_v4 *x, tml_v4 *f) {
+    double energy = 0;
+    for (int32_t t = 0; t < refiner->centre_count; t++) {
+        const tml_centre_term *term = &refiner->centres[t];
+        const tml_centre_point *points = &refiner->points_of_centres[term->first_point];
+        const tml_sum_term sum = {.pair_count = term->pair_count, .lower = term->lower, .upper = term->upper, .weight = term->weight, .share = term->share};
+        double total = 0, effective, slope;
+        for (int32_t p = 0; p < term->pair_count; p++) {
+            tml_v4 d = TML_V4(0);
+            add_centre(refiner, &points[2 * p], 1, x, &d);
+            add_centre(refiner, &points[2 * p + 1], -1, x, &d);
+            double inverse = 1.0 / (DOT(d, d) + 1e-6);
+            total += inverse * inverse * inverse;
+        }
+        double e = sum_energy(&sum, total, weights, &effective, &slope);
+        if (slope == 0) continue;
+        energy += e;
+        double r2 = effective * effective, scale = -slope * term->share * r2 * r2 * r2 * effective;
+        for (int32_t p = 0; p < term->pair_count; p++) {
+            tml_v4 d = TML_V4(0);
+            add_centre(refiner, &points[2 * p], 1, x, &d);
+            add_centre(refiner, &points[2 * p + 1], -1, x, &d);
+            double inverse = 1.0 / (DOT(d, d) + 1e-6), inverse2 = inverse * inverse;
+            d *= scale * inverse2 * inverse2;
+            push_centre(refiner, &points[2 * p], 1, &d, f);
+            push_centre(refiner, &points[2 * p + 1], -1, &d, f);
+        }
+    }
+    return energy;
+}
+
 /* ---- torsions ---- */
 
 typedef struct torsion_state { double cosine, sine; tml_v4 n1, n2, b1; double n1_square, n2_square, length; tml_v4 b0, b2; } torsion_state;
@@ -425,6 +469,7 @@ TML_WIDE double tml_energy(tml_scene *scene, const tml_weights *weights) {
     if (weights->plane > 0) energy += planes(&refiner->problem->molecule, weights->plane, x, f);
     energy += sums(refiner, scene->sum_pairs, scene->both, weights, x, f);
     if (refiner->choice_count > 0) energy += choices(refiner, scene->sum_pairs, weights, x, f);
+    if (refiner->centre_count > 0) energy += centres(refiner, weights, x, f);
     energy += torsions(refiner, weights->dihedral, weights->dihedral_bend, x, f);
     if (weights->backbone > 0) energy += backbones(refiner, weights->backbone, x, f);
     if (refiner->problem->molecule.alike_count > 0) energy += tml_alike_energy(scene, weights);

@@ -63,6 +63,9 @@ void tml_refiner_free(tml_refiner *refiner) {
     free(refiner->sums);
     free(refiner->sum_pairs);
     free(refiner->choices);
+    free(refiner->centres);
+    free(refiner->points_of_centres);
+    free(refiner->centre_atoms);
     free(refiner->open_pairs);
     free(refiner->both_sums);
     free(refiner->open_uses);
@@ -182,7 +185,7 @@ static tml_status make_volumes(tml_refiner *refiner, const tml_geometry *table, 
 
 /* ---- restraints ---- */
 
-typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices, open, uses, both; } sum_builder; /* capacities */
+typedef struct sum_builder { tml_refiner *refiner; size_t sums, pairs, choices, open, uses, both, centres, points, atoms; } sum_builder; /* capacities */
 
 static bool sum_begin(sum_builder *builder, const tml_distance_restraint *restraint, int32_t combination) {
     tml_refiner *refiner = builder->refiner;
@@ -322,6 +325,47 @@ static bool add_choice(sum_builder *builder, const tml_distance_restraint *restr
     return note_uses(builder, restraint, -1, refiner->choice_count - 1);
 }
 
+static bool add_point(sum_builder *builder, const int32_t *atoms, int32_t count) {
+    tml_refiner *refiner = builder->refiner;
+    if (!tml_grow(&refiner->points_of_centres, &builder->points, (size_t)refiner->centre_point_count + 1, sizeof *refiner->points_of_centres) ||
+        !tml_grow(&refiner->centre_atoms, &builder->atoms, (size_t)refiner->centre_atom_count + (size_t)count, sizeof *refiner->centre_atoms))
+        return false;
+    refiner->points_of_centres[refiner->centre_point_count++] = (tml_centre_point){refiner->centre_atom_count, count};
+    for (int32_t i = 0; i < count; i++) refiner->centre_atoms[refiner->centre_atom_count++] = atoms[i];
+    return true;
+}
+
+static bool is_centred(const tml_restraints *restraints, const tml_distance_restraint *restraint) {
+    for (int32_t k = 0; k < restraint->alternative_count; k++)
+        if (tml_alternative_centred(&restraints->alternatives[restraint->first_alternative + k])) return true;
+    return false;
+}
+
+/* A restraint of which some side is the centre of a group: all its pairs of points. */
+static bool add_centred(sum_builder *builder, const tml_distance_restraint *restraint) {
+    tml_refiner *refiner = builder->refiner;
+    const tml_restraints *restraints = &refiner->problem->restraints;
+    if (!tml_grow(&refiner->centres, &builder->centres, (size_t)refiner->centre_count + 1, sizeof *refiner->centres)) return false;
+    tml_centre_term *term = &refiner->centres[refiner->centre_count++];
+    *term = (tml_centre_term){.first_point = refiner->centre_point_count, .lower = restraint->lower, .upper = restraint->upper,
+                              .weight = restraint->weight, .share = 1.0};
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++) {
+        const tml_alternative *alternative = &restraints->alternatives[k];
+        tml_group a, b;
+        tml_alternative_sides(restraints, alternative, NULL, &a, &b);
+        for (int32_t i = 0; i < (alternative->centre_a ? 1 : a.count); i++)
+            for (int32_t j = 0; j < (alternative->centre_b ? 1 : b.count); j++) {
+                if (!tml_alternative_centred(alternative) && a.atoms[i] == b.atoms[j]) continue;
+                if (!add_point(builder, &a.atoms[i], alternative->centre_a ? a.count : 1) ||
+                    !add_point(builder, &b.atoms[j], alternative->centre_b ? b.count : 1))
+                    return false;
+                term->pair_count++;
+            }
+    }
+    if (restraint->average && term->pair_count > 0) term->share = 1.0 / term->pair_count;
+    return true;
+}
+
 static int by_stereo(const void *left, const void *right) {
     const tml_open_use *l = left, *r = right;
     if (l->stereo != r->stereo) return l->stereo < r->stereo ? -1 : 1;
@@ -345,7 +389,9 @@ static tml_status make_sums(tml_refiner *refiner, tml_error *error) {
     sum_builder builder = {.refiner = refiner};
     bool *none_swapped = tml_alloc((size_t)restraints->stereo_count, sizeof *none_swapped), room = none_swapped != NULL;
     for (int32_t i = 0; room && i < restraints->distance_count; i++)
-        room = restraints->distances[i].combined || add_single(&builder, &restraints->distances[i], none_swapped);
+        room = restraints->distances[i].combined
+                   || (is_centred(restraints, &restraints->distances[i]) ? add_centred(&builder, &restraints->distances[i])
+                                                                          : add_single(&builder, &restraints->distances[i], none_swapped));
     refiner->single_count = refiner->sum_count;
     for (int32_t i = 0; room && i < restraints->distance_count; i++)
         room = !restraints->distances[i].combined || add_choice(&builder, &restraints->distances[i], none_swapped);

@@ -31,6 +31,10 @@ typedef struct tml_sum_term {
  * its ends where that stereo pair is not swapped and where it is. */
 typedef struct tml_open_pair { int32_t at, stereo_a, stereo_b, a[2], b[2]; } tml_open_pair;
 
+/* A restraint from centres of groups: Σ r⁻⁶ over the distances between its points, two by two. Points are means of atoms. */
+typedef struct tml_centre_point { int32_t first, count; } tml_centre_point; /* into centre_atoms */
+typedef struct tml_centre_term { int32_t first_point, pair_count; double lower, upper, weight, share; } tml_centre_term;
+
 /* That a single sum, or otherwise a choice, hangs on a stereo pair; the other index is -1. */
 typedef struct tml_open_use { int32_t stereo, sum, choice; } tml_open_use;
 
@@ -61,6 +65,9 @@ struct tml_refiner {
     tml_sum_term *both_sums;   int32_t both_count; /* for the hot phase, which leaves stereo pairs untold */
     tml_pair *sum_pairs;       int32_t sum_pair_count; /* with no stereo pair swapped */
     tml_choice_term *choices;   int32_t choice_count;
+    tml_centre_term *centres;   int32_t centre_count;
+    tml_centre_point *points_of_centres; int32_t centre_point_count;
+    int32_t *centre_atoms;      int32_t centre_atom_count;
     tml_open_pair *open_pairs;  int32_t open_pair_count;
     tml_open_use *open_uses;    int32_t open_use_count; /* by stereo pair */
     tml_torsion_term *torsions; int32_t torsion_count;

@@ -29,9 +29,13 @@ typedef struct map {
     tml_error *error;
     size_t distances, alternatives, groups, dihedrals, intervals, unmapped; /* capacities */
     int64_t pairs;          /* so far */
-    struct side { int32_t *atoms, count, *members, half; bool open, second; } a, b; /* room for the largest residue each */
+    struct side { int32_t *atoms, count, *members, half; bool open, second, pseudo; } a, b; /* room for the largest residue each */
     tml_stereo_book book;
     bool keep_open; /* x and y are left open */
+    tml_pseudo pseudo;
+    int32_t centred; /* restraints that run from the centre of a pseudo-atom's group */
+    double widened;  /* the most that an upper limit was widened, Å */
+    tml_place centred_place;
     bool pseudo_noted, amide_noted;
     char why[512];    /* why the latest row names nothing */
     char reason[512]; /* the same of the restraint's first such row, "" for none */
@@ -46,7 +50,7 @@ static tml_status map_dihedrals(map *m);
 static tml_status note_open(map *m);
 
 tml_status tml_restraints_map(const tml_rows *rows, const tml_read_options *options, tml_problem *problem, tml_error *error) {
-    map m = {.rows = rows, .problem = problem, .out = &problem->restraints, .error = error, .keep_open = !options->sum_stereo_pairs};
+    map m = {.rows = rows, .problem = problem, .out = &problem->restraints, .error = error, .keep_open = !options->sum_stereo_pairs, .pseudo = options->pseudo};
     if (rows->distance_count > INT32_MAX / 2 || rows->dihedral_count > INT32_MAX / 2)
         return tml_fail(error, TML_TOO_LARGE, "too many restraint rows");
     tml_status status = make_room(&m) ? TML_OK : tml_no_memory(error);
@@ -166,7 +170,7 @@ static tml_status resolve(map *m, const tml_address *address, struct side *side)
     int32_t residue = tml_molecule_locate_residue(molecule, address->chain, address->number, m->why, sizeof m->why);
     int32_t *atoms = side->atoms, *count = &side->count;
     *count = 0;
-    side->open = false;
+    side->open = side->pseudo = false;
     if (residue < 0) return TML_OK;
     if (*address->residue != '\0' && strcmp(address->residue, molecule->residues[residue].name) != 0) {
         snprintf(m->why, sizeof m->why, "%.32s:%.32s is %.32s in the sequence, %.32s in the restraint", address->chain, address->number,
@@ -179,7 +183,8 @@ static tml_status resolve(map *m, const tml_address *address, struct side *side)
                  tml_names_stereo(molecule, residue, address->atom, side->members, &side->half, &side->second) &&
                  *count == 2 * side->half;
     if (*count == 0) tml_molecule_suggest(molecule, residue, address->atom, m->why, sizeof m->why);
-    if (*count > 0 && kind == TML_NAME_PSEUDO && !m->pseudo_noted) {
+    side->pseudo = *count > 1 && kind == TML_NAME_PSEUDO;
+    if (side->pseudo && m->pseudo == TML_PSEUDO_SUM && !m->pseudo_noted) {
         m->pseudo_noted = true;
         return tml_problem_add_note(m->problem, address->place, m->error,
                                     "pseudo-atoms (%s …) count as the sum over their group; limits are not corrected", address->atom);
@@ -265,6 +270,9 @@ static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t c
     int32_t same = shared_atoms(a.atoms, a.count, b.atoms, b.count);
     int64_t pairs = (int64_t)a.count * b.count - same;
     settle_open(&a, &b, same);
+    /* A centre has no partner that could be exchanged, and takes part in no combination. */
+    bool centre = m->pseudo != TML_PSEUDO_SUM && combination < 0;
+    if (centre && (a.pseudo || b.pseudo)) a.open = b.open = false;
     if (pairs == 0) {
         char address[128];
         tml_molecule_address(&m->problem->molecule, a.atoms[0], address, sizeof address);
@@ -279,6 +287,8 @@ static tml_status add_alternative(map *m, const tml_distance_row *row, int32_t c
     tml_alternative made = {.count_a = a.count, .count_b = b.count, .pair_count = (int32_t)pairs, .combination = combination};
     if (!add_side(m, &a, &made.first_a, &made.stereo_a, &made.second_a) || !add_side(m, &b, &made.first_b, &made.stereo_b, &made.second_b))
         return tml_no_memory(m->error);
+    made.centre_a = centre && a.pseudo;
+    made.centre_b = centre && b.pseudo;
     m->out->alternatives[m->out->alternative_count++] = made;
     return TML_OK;
 }
@@ -348,6 +358,49 @@ static bool same_terms(const tml_distance_row *a, const tml_distance_row *b) {
     return same_limit(a->lower, b->lower) && same_limit(a->upper, b->upper) && same_limit(a->weight, b->weight) && a->average == b->average;
 }
 
+/* Corrections of upper limits for the way from a group's centre to its atoms, Å, by the number of heavy atoms that carry hydrogens of
+ * the group and of hydrogens on each: K. Wüthrich, M. Billeter & W. Braun, J. Mol. Biol. 169 (1983) 949, from memory. */
+static const struct { int carriers, hydrogens; double correction; } CORRECTIONS[] = {
+    {1, 2, 1.0}, /* CH2, NH2 */
+    {1, 3, 1.0}, /* CH3, NH3 */
+    {2, 3, 2.4}, /* the methyl groups of Val and Leu */
+    {2, 1, 2.0}, /* one kind of proton of a phenyl ring */
+    {2, 2, 2.2}, /* the amino groups of Arg */
+    {5, 1, 2.4}, {4, 1, 2.4}, /* all of a ring of Phe, Tyr */
+};
+
+static double correction_of(const tml_molecule *molecule, const int32_t *atoms, int32_t count) {
+    int32_t carriers[8], found = 0;
+    for (int32_t i = 0; i < count; i++) {
+        int32_t first = molecule->neighbour_first[atoms[i]], k = 0;
+        if (first == molecule->neighbour_first[atoms[i] + 1]) return 0;
+        while (k < found && carriers[k] != molecule->neighbours[first]) k++;
+        if (k == found && found < (int32_t)(sizeof carriers / sizeof *carriers)) carriers[found++] = molecule->neighbours[first];
+    }
+    for (size_t c = 0; c < sizeof CORRECTIONS / sizeof *CORRECTIONS; c++)
+        if (CORRECTIONS[c].carriers == found && CORRECTIONS[c].hydrogens * found == count) return CORRECTIONS[c].correction;
+    return 0;
+}
+
+/* Count what runs from centres, and widen its upper limit where that is asked: by the most that one of its alternatives needs. */
+static void centre_pseudo_atoms(map *m, tml_distance_restraint *restraint) {
+    const tml_molecule *molecule = &m->problem->molecule;
+    double most = 0;
+    bool any = false;
+    for (int32_t k = restraint->first_alternative; k < restraint->first_alternative + restraint->alternative_count; k++) {
+        const tml_alternative *alternative = &m->out->alternatives[k];
+        double a = alternative->centre_a ? correction_of(molecule, &m->out->group_atoms[alternative->first_a], alternative->count_a) : 0;
+        double b = alternative->centre_b ? correction_of(molecule, &m->out->group_atoms[alternative->first_b], alternative->count_b) : 0;
+        any = any || tml_alternative_centred(alternative);
+        most = fmax(most, a + b);
+    }
+    if (!any) return;
+    if (m->centred++ == 0) m->centred_place = restraint->place;
+    if (m->pseudo != TML_PSEUDO_CORRECTED || isinf(restraint->upper)) return;
+    restraint->upper += most;
+    m->widened = fmax(m->widened, most);
+}
+
 static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, numbering *combinations, bool *broken) {
     const tml_distance_row *first = &m->rows->distances[order[0]];
     tml_restraints *out = m->out;
@@ -389,6 +442,7 @@ static tml_status map_distance(map *m, const int32_t *order, int32_t row_count, 
         restraint->combined = restraint->combined || out->alternatives[k].combination >= 0;
     }
     restraint->range = range_of(m, restraint);
+    centre_pseudo_atoms(m, restraint);
     tml_status status = TML_OK;
     if (lost > 0)
         status = tml_problem_add_note(m->problem, first->place, m->error, "restraint %s: %d of its %d rows name what is not there and are left out%s: %s",
@@ -491,6 +545,16 @@ static tml_status map_dihedrals(map *m) {
 /* ---- open stereo pairs ---- */
 
 static tml_status note_open(map *m) {
+    tml_status status = TML_OK;
+    if (m->centred > 0 && m->pseudo == TML_PSEUDO_CORRECTED)
+        status = tml_problem_add_note(m->problem, m->centred_place, m->error,
+                                      "%d restraints with pseudo-atoms run from the centres of their groups, and their upper limits are widened by "
+                                      "the published corrections, up to %.1f Å",
+                                      m->centred, m->widened);
+    else if (m->centred > 0)
+        status = tml_problem_add_note(m->problem, m->centred_place, m->error,
+                                      "%d restraints with pseudo-atoms run from the centres of their groups; limits are not corrected", m->centred);
+    if (status != TML_OK) return status;
     if (m->out->stereo_count == 0) return TML_OK;
     return tml_problem_add_note(m->problem, (tml_place){-1, 0, 0}, m->error,
                                 "%d stereo pair%s named with x and y; each model takes the assignment that it violates least",

@@ -31,18 +31,27 @@ void tml_alternative_sides(const tml_restraints *restraints, const tml_alternati
     *b = side(restraints, alternative->first_b, alternative->count_b, alternative->stereo_b, alternative->second_b, swapped);
 }
 
+/* Point k of a side: an atom, or the centre of all. NAN where one of them is missing. */
+static void point_of(const tml_group *side, bool centre, int32_t k, const double *xyz, double out[3]) {
+    for (int l = 0; l < 3; l++) {
+        out[l] = centre ? 0 : xyz[3 * side->atoms[k] + l];
+        for (int32_t i = 0; centre && i < side->count; i++) out[l] += xyz[3 * side->atoms[i] + l] / side->count;
+    }
+}
+
 /* Σ r⁻⁶ over one alternative's pairs, whose number is added to *pairs. */
 static double sum_over(const tml_restraints *restraints, const tml_alternative *alternative, const bool *swapped, const double *xyz,
                        int64_t *pairs) {
     double sum = 0;
     tml_group one, other;
     tml_alternative_sides(restraints, alternative, swapped, &one, &other);
-    for (int32_t i = 0; i < one.count; i++)
-        for (int32_t j = 0; j < other.count; j++) {
-            int32_t a = one.atoms[i], b = other.atoms[j];
-            double d[3];
-            if (a == b) continue;
-            tml_sub(d, &xyz[3 * a], &xyz[3 * b]);
+    for (int32_t i = 0; i < (alternative->centre_a ? 1 : one.count); i++)
+        for (int32_t j = 0; j < (alternative->centre_b ? 1 : other.count); j++) {
+            double a[3], b[3], d[3];
+            if (!tml_alternative_centred(alternative) && one.atoms[i] == other.atoms[j]) continue;
+            point_of(&one, alternative->centre_a, i, xyz, a);
+            point_of(&other, alternative->centre_b, j, xyz, b);
+            tml_sub(d, a, b);
             double square = tml_dot(d, d);
             if (isnan(square)) continue;
             ++*pairs;

@@ -30,6 +30,7 @@ typedef struct tml_alternative {
     int32_t combination;                        /* within its restraint; one's alternatives stand together. -1: alone */
     int32_t stereo_a, stereo_b;
     bool second_a, second_b;
+    bool centre_a, centre_b;                    /* that side is one point, the centre of its atoms */
 } tml_alternative;
 
 typedef struct tml_distance_restraint {
@@ -78,6 +79,11 @@ void tml_alternative_sides(const tml_restraints *restraints, const tml_alternati
 /* Whether a stereo pair of one of its sides is open. */
 static inline bool tml_alternative_open(const tml_alternative *alternative) {
     return alternative->stereo_a >= 0 || alternative->stereo_b >= 0;
+}
+
+/* Whether a side of it is the centre of a group. */
+static inline bool tml_alternative_centred(const tml_alternative *alternative) {
+    return alternative->centre_a || alternative->centre_b;
 }
 
 /* (Σ r⁻⁶)^(-1/6) of one alternative or of a whole restraint without combinations; xyz holds atom_count*3 Å. */
