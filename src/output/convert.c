@@ -51,7 +51,7 @@ tml_status tml_convert(const char *const *paths, size_t path_count, const tml_re
             tml_file_discard(c.file);
     }
     static const char *const WORDS[TML_LOSS_COUNT] = {
-        "single atoms and beads", "statements on handedness and planes", "statements that chains are alike", "statements on chain ends",
+        "single atoms and beads", "links of single atoms", "statements on handedness and planes", "statements that chains are alike", "statements on chain ends",
         "restraints' averages (they count as sums)", "names that stand for several atoms (each atom has a row of its own)",
         "names with x and y (both members are written)", "residue numbers with letters (residues are numbered anew)",
         "component dictionaries (the residues' names remain; the files have to go along)", "weights"};

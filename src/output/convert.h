@@ -12,6 +12,7 @@
 /* What may be lost. */
 typedef enum tml_loss {
     TML_LOSS_ATOMS,    /* single atoms and beads, with their `chiral` and `plane` statements */
+    TML_LOSS_LINKS,    /* links of single atoms */
     TML_LOSS_SHAPES,   /* statements on handedness and planes */
     TML_LOSS_ALIKE,    /* chains that are to be alike */
     TML_LOSS_ENDS,     /* chain ends */

@@ -90,9 +90,16 @@ static void put_variant(tml_conversion *c, size_t i) {
     tml_put_star(c->file, text);
 }
 
+static bool in_sequence(const tml_outline *outline, const tml_address *at) {
+    for (size_t i = 0; i < outline->residue_count; i++)
+        if (outline->residues[i].chain == at->chain && outline->residues[i].number == at->number) return true;
+    return false;
+}
+
 static void write_molecule(tml_conversion *c) {
     const tml_outline *outline = &c->draft->outline;
     tml_file *file = c->file;
+    size_t links = 0;
     tml_file_print(file, "save_nef_molecular_system\n"
                          "   _nef_molecular_system.sf_category   nef_molecular_system\n"
                          "   _nef_molecular_system.sf_framecode  nef_molecular_system\n");
@@ -111,11 +118,15 @@ static void write_molecule(tml_conversion *c) {
         }
         end_loop(file);
     }
-    if (outline->link_count > 0) {
+    for (size_t i = 0; i < outline->link_count; i++)
+        links += in_sequence(outline, &outline->links[i].a) && in_sequence(outline, &outline->links[i].b);
+    c->lost[TML_LOSS_LINKS] += (int32_t)(outline->link_count - links);
+    if (links > 0) {
         loop(file, "nef_covalent_links",
              (const char *const[]){"chain_code_1", "sequence_code_1", "residue_name_1", "atom_name_1", "chain_code_2", "sequence_code_2",
                                    "residue_name_2", "atom_name_2", NULL});
         for (size_t i = 0; i < outline->link_count; i++) {
+            if (!in_sequence(outline, &outline->links[i].a) || !in_sequence(outline, &outline->links[i].b)) continue;
             tml_address a = with_residue(c, &outline->links[i].a), b = with_residue(c, &outline->links[i].b);
             tml_file_print(file, "      ");
             put_atom(file, &a);

@@ -146,7 +146,10 @@ static void write_assembly(writer *w) {
             const tml_address *ends[2] = {&w->outline->links[i].a, &w->outline->links[i].b};
             int32_t chains[2], residues[2];
             for (int k = 0; k < 2; k++) chains[k] = chain_of(w, ends[k], &residues[k]);
-            if (chains[0] < 0 || chains[1] < 0) continue; /* of a single atom, which is lost with it */
+            if (chains[0] < 0 || chains[1] < 0) {
+                w->c->lost[TML_LOSS_LINKS]++;
+                continue;
+            }
             tml_file_print(file, "      %d covalent SING ", ++id);
             for (int k = 0; k < 2; k++) {
                 tml_file_print(file, "%d ", chains[k] + 1);

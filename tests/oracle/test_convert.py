@@ -118,6 +118,16 @@ class RoundTrips(unittest.TestCase):
         _, said = self.convert(os.path.join(SETS, 'veilin.nef'), 'veilin.str')
         self.assertIn('names with x and y', said)
 
+    def test_a_single_atom_takes_its_links_with_it(self):
+        source = os.path.join(SETS, 'quill.sheet')
+        for name in ('quill.nef', 'quill.str'):
+            path, said = self.convert(source, name)
+            self.assertIn('4 links of single atoms', said)
+            done = subprocess.run([os.path.join(BUILD, 'trammel'), 'check', path, os.path.join(SETS, 'quill.cif')], capture_output=True,
+                                  text=True, timeout=120, check=False)
+            self.assertEqual(done.returncode, 0, done.stderr)
+            self.assertIn('6 distance', done.stdout)
+
     def test_nef_has_its_tags_and_quotes(self):
         path = os.path.join(self.folder, 'odd.sheet')
         with open(path, 'w', encoding='utf-8') as file:
