@@ -189,8 +189,11 @@ static bool fill_alternative(filler *f, tml_graph *covalent, int32_t index, cons
     const tml_distance_restraint *restraint = &restraints->distances[index];
     const int32_t *a = &restraints->group_atoms[alternative->first_a], *b = &restraints->group_atoms[alternative->first_b];
     double pairs = restraint->combined ? alternative->pair_count : restraint->pair_count;
-    if (tml_alternative_open(alternative))
-        pairs = (double)(alternative->count_a / (alternative->stereo_a >= 0 ? 2 : 1)) * (alternative->count_b / (alternative->stereo_b >= 0 ? 2 : 1));
+    if (tml_alternative_open(alternative)) {
+        int32_t half_a = alternative->stereo_a >= 0 ? alternative->count_a / 2 : alternative->count_a;
+        int32_t half_b = alternative->stereo_b >= 0 ? alternative->count_b / 2 : alternative->count_b;
+        pairs = (double)half_a * half_b;
+    }
     double most = restraint->upper * (restraint->average ? 1 : pow(pairs, 1.0 / 6.0));
     if (upper && alternative->pair_count > 1) most += diameter(covalent, a, alternative->count_a) + diameter(covalent, b, alternative->count_b);
     /* From a group's centre: no atom of the group is farther from it than the group's diameter. */

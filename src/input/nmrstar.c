@@ -418,7 +418,7 @@ static tml_status read_terms(reader *r, const tml_star_frame *frame, const tml_s
 static tml_status read_logic(reader *r, const tml_star_value *code, terms *row) {
     if (tml_star_is_null(code) || tml_star_is(code, "OR")) return TML_OK;
     if (!tml_star_is(code, "AND")) return tml_cell_expected(&r->in, code, "OR or AND");
-    if (*row->combination != '\0') return TML_OK;
+    if (row->combination != NULL && *row->combination != '\0') return TML_OK;
     row->combination = tml_strings_add(r->in.draft->problem->pool, "all");
     return row->combination == NULL ? tml_no_memory(r->in.error) : TML_OK;
 }

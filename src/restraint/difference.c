@@ -156,6 +156,7 @@ static bool hash_residues(side *s, meaning *made) {
         s->words[s->word_count++] = pair_word(residue_of(s, restraints->group_atoms[alternative->first_a]),
                                               residue_of(s, restraints->group_atoms[alternative->first_b]));
     }
+    if (s->words == NULL) return true; /* a restraint without alternatives */
     int32_t count = sort_words(&s->words[first], (int32_t)(s->word_count - first));
     for (int32_t i = 0; i < count; i++) made->residues = mix(made->residues + 5, s->words[first + (size_t)i]);
     s->word_count = first;
@@ -184,6 +185,7 @@ static bool add_meaning(side *s, int32_t index) {
             }
         if (alternative->combination >= 0) together += mix((uint64_t)alternative->combination + 7, of_alternative);
     }
+    if (s->words == NULL) return true; /* a restraint without alternatives */
     made->count = sort_words(&s->words[made->first], (int32_t)(s->word_count - (size_t)made->first));
     s->word_count = (size_t)made->first + (size_t)made->count;
     made->pairs = mix(3, together) + (restraint->average ? 11 : 0);
