@@ -155,7 +155,26 @@ static tml_status find_limits(tml_cells *in, const tml_star_loop *loop, limit_co
     return out->id < 0 ? tml_cell_missing(in, loop, "restraint_id") : TML_OK;
 }
 
-typedef struct limits { const char *list, *id, *combination; double lower, upper, weight; tml_place place; bool from_target; } limits;
+typedef struct limits { const char *list, *id, *combination; double lower, upper, weight; tml_row_beside beside; tml_place place; bool from_target; } limits;
+
+/* An item or a cell as text; NULL for none. */
+static tml_status maybe_text(tml_cells *in, const tml_star_value *value, const char **out) {
+    *out = NULL;
+    return value == NULL || tml_star_is_null(value) ? TML_OK : tml_cell_text(in, value, "", out);
+}
+
+/* What the list says of itself, and a torsion's name. */
+static tml_status read_beside(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, tml_row_beside *out) {
+    bool dihedral = tml_loop_is(in->star, loop, "_nef_dihedral_restraint");
+    const char *category = dihedral ? "_nef_dihedral_restraint_list" : "_nef_distance_restraint_list";
+    char tag[80];
+    snprintf(tag, sizeof tag, "%s.restraint_origin", category);
+    tml_status status = maybe_text(in, tml_star_find_item(in->star, frame, tag), &out->origin);
+    snprintf(tag, sizeof tag, "%s.potential_type", category);
+    if (status == TML_OK) status = maybe_text(in, tml_star_find_item(in->star, frame, tag), &out->potential);
+    int name = dihedral ? tml_star_column(in->star, loop, "name") : -1;
+    return status == TML_OK ? maybe_text(in, tml_star_at(in->star, loop, row, name), &out->angle) : status;
+}
 
 /* Both limits missing: the linear ones, or the target value and its uncertainty. */
 static tml_status read_limits(tml_cells *in, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, const limit_columns *columns,
@@ -177,6 +196,9 @@ static tml_status read_limits(tml_cells *in, const tml_star_frame *frame, const 
     if (status == TML_OK) status = tml_cell_number(in, tml_star_at(star, loop, row, columns->uncertainty), &uncertainty);
     if (status != TML_OK) return status;
     if (isnan(out->weight)) out->weight = 1.0;
+    out->beside = (tml_row_beside){.values = true, .target = target, .uncertainty = uncertainty, .lower_linear = lower_linear, .upper_linear = upper_linear};
+    status = read_beside(in, frame, loop, row, &out->beside);
+    if (status != TML_OK) return status;
     if (isnan(out->lower) && isnan(out->upper)) {
         out->lower = lower_linear;
         out->upper = upper_linear;
@@ -213,7 +235,7 @@ static tml_status read_distances(tml_cells *in, const tml_star_frame *frame, con
         from_targets += row_limits.from_target;
         if (row_limits.from_target && row_limits.lower < 0) row_limits.lower = 0; /* an uncertainty wider than the distance */
         tml_distance_row made = {.list = row_limits.list, .id = row_limits.id, .combination = row_limits.combination, .count_a = 1,
-                                 .count_b = 1, .lower = row_limits.lower, .upper = row_limits.upper, .weight = row_limits.weight,
+                                 .count_b = 1, .lower = row_limits.lower, .upper = row_limits.upper, .weight = row_limits.weight, .beside = row_limits.beside,
                                  .place = row_limits.place};
         if (!tml_rows_add_distance(rows, &made, addresses)) return tml_no_memory(in->error);
     }
@@ -240,6 +262,7 @@ static tml_status read_dihedrals(tml_cells *in, const tml_star_frame *frame, con
         made.lower = row_limits.lower;
         made.upper = row_limits.upper;
         made.weight = row_limits.weight;
+        made.beside = row_limits.beside;
         made.place = row_limits.place;
         if (!tml_rows_add_dihedral(rows, &made)) return tml_no_memory(in->error);
     }

@@ -390,7 +390,22 @@ static tml_status read_restraints(reader *r) {
 }
 
 /* What a row says beside its atoms. */
-typedef struct terms { const char *list, *id, *combination; double lower, upper, weight; tml_place place; } terms;
+typedef struct terms { const char *list, *id, *combination; double lower, upper, weight; tml_row_beside beside; tml_place place; } terms;
+
+static tml_status maybe_text(reader *r, const tml_star_value *value, const char **out) {
+    *out = NULL;
+    return value == NULL || tml_star_is_null(value) ? TML_OK : tml_cell_text(&r->in, value, "", out);
+}
+
+static tml_status read_beside(reader *r, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, tml_row_beside *out) {
+    tml_status status = maybe_text(r, tml_star_find_item(r->star, frame, "_Gen_dist_constraint_list.Constraint_type"), &out->origin);
+    if (status == TML_OK) status = maybe_text(r, tml_star_find_item(r->star, frame, "_Gen_dist_constraint_list.Potential_type"), &out->potential);
+    if (status == TML_OK && out->origin == NULL)
+        status = maybe_text(r, tml_star_find_item(r->star, frame, "_Torsion_angle_constraint_list.Constraint_type"), &out->origin);
+    if (status == TML_OK && out->potential == NULL)
+        status = maybe_text(r, tml_star_find_item(r->star, frame, "_Torsion_angle_constraint_list.Potential_type"), &out->potential);
+    return status == TML_OK ? maybe_text(r, cell(r, loop, row, "Torsion_angle_name"), &out->angle) : status;
+}
 
 static tml_status read_terms(reader *r, const tml_star_frame *frame, const tml_star_loop *loop, size_t row, const char *const limits[4],
                              terms *out) {
@@ -407,6 +422,8 @@ static tml_status read_terms(reader *r, const tml_star_frame *frame, const tml_s
     if (status == TML_OK) status = tml_cell_number(&r->in, cell(r, loop, row, limits[3]), &error);
     if (status == TML_OK) status = tml_cell_number(&r->in, cell(r, loop, row, "Weight"), &out->weight);
     if (isnan(out->weight)) out->weight = 1.0;
+    out->beside = (tml_row_beside){.values = !isnan(target), .target = target, .uncertainty = error, .lower_linear = NAN, .upper_linear = NAN};
+    if (status == TML_OK) status = read_beside(r, frame, loop, row, &out->beside);
     if (isnan(out->lower) && isnan(out->upper) && !isnan(target) && error >= 0) {
         out->lower = target - error;
         out->upper = target + error;
@@ -436,7 +453,7 @@ static tml_status read_distances(reader *r, const tml_star_frame *frame, const t
         for (int k = 0; status == TML_OK && k < 2; k++) status = read_named(r, loop, row, &of[k], &addresses[k]);
         if (status != TML_OK) break;
         tml_distance_row made = {.list = given.list, .id = given.id, .combination = given.combination, .count_a = 1, .count_b = 1,
-                                 .lower = given.lower < 0 ? 0 : given.lower, .upper = given.upper, .weight = given.weight, .place = given.place};
+                                 .lower = given.lower < 0 ? 0 : given.lower, .upper = given.upper, .weight = given.weight, .beside = given.beside, .place = given.place};
         if (!tml_rows_add_distance(&r->in.draft->rows, &made, addresses)) status = tml_no_memory(r->in.error);
     }
     return status;
@@ -460,6 +477,7 @@ static tml_status read_torsions(reader *r, const tml_star_frame *frame, const tm
         made.lower = given.lower;
         made.upper = given.upper;
         made.weight = given.weight;
+        made.beside = given.beside;
         made.place = given.place;
         if (!tml_rows_add_dihedral(&r->in.draft->rows, &made)) status = tml_no_memory(r->in.error);
     }

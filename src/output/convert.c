@@ -54,7 +54,8 @@ tml_status tml_convert(const char *const *paths, size_t path_count, const tml_re
         "single atoms and beads", "links of single atoms", "statements on handedness and planes", "statements that chains are alike", "statements on chain ends",
         "restraints' averages (they count as sums)", "names that stand for several atoms (each atom has a row of its own)",
         "names with x and y (both members are written)", "residue numbers with letters (residues are numbered anew)",
-        "component dictionaries (the residues' names remain; the files have to go along)", "weights"};
+        "component dictionaries (the residues' names remain; the files have to go along)",
+        "rows' target values and linear limits, or origins and potentials of their lists"};
     for (int k = 0; status == TML_OK && k < TML_LOSS_COUNT; k++)
         if (c.lost[k] > 0)
             status = tml_problem_add_note(draft.problem, (tml_place){-1, 0, 0}, error, TML_NOT_HELD "%d %s", c.lost[k], WORDS[k]);
@@ -190,6 +191,16 @@ void tml_put_star(tml_file *file, const char *text) {
         tml_file_print(file, "\"%s\" ", text);
     else
         tml_file_print(file, "\n;%s\n;\n", text);
+}
+
+bool tml_says_more(const tml_row_beside *beside) {
+    bool values = beside->values && !(isnan(beside->target) && isnan(beside->uncertainty) && isnan(beside->lower_linear) && isnan(beside->upper_linear));
+    return values || beside->origin != NULL || beside->angle != NULL || (beside->potential != NULL && strcmp(beside->potential, "undefined") != 0);
+}
+
+void tml_put_beside(tml_file *file, const tml_row_beside *beside) {
+    const double values[] = {beside->target, beside->uncertainty, beside->lower_linear, beside->upper_linear};
+    for (int k = 0; k < 4; k++) tml_put_star_number(file, beside->values ? values[k] : NAN);
 }
 
 void tml_put_star_number(tml_file *file, double value) {

@@ -21,7 +21,7 @@ typedef enum tml_loss {
     TML_LOSS_STEREO,   /* names with x and y: that the pair is open */
     TML_LOSS_NUMBERS,  /* residue numbers that are no plain numbers */
     TML_LOSS_COMPONENTS, /* component dictionaries: the residues' names remain, the files have to go along */
-    TML_LOSS_WEIGHTS,
+    TML_LOSS_BESIDE,   /* target values, linear limits, origins and potentials of lists, names of torsions */
     TML_LOSS_COUNT
 } tml_loss;
 
@@ -39,6 +39,10 @@ tml_status tml_write_nmrstar(tml_conversion *c, tml_error *error);
 /* A value of a STAR loop, with a blank after it: quoted where it has to be, `.` for none. */
 void tml_put_star(tml_file *file, const char *text);
 void tml_put_star_number(tml_file *file, double value); /* `.` for NAN */
+
+/* Whether a row says more than its limits; and its targets and linear limits as values of a STAR loop. */
+bool tml_says_more(const tml_row_beside *beside);
+void tml_put_beside(tml_file *file, const tml_row_beside *beside);
 
 /* Id of a row of a restraint: rows without one of their own get one that no other row has. At most `size` bytes. */
 const char *tml_row_id(const char *id, bool alone, size_t index, char *text, size_t size);

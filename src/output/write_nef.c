@@ -141,15 +141,21 @@ static void write_molecule(tml_conversion *c) {
 /* ---- restraints ---- */
 
 /* A frame's name begins with its category; what is not made of plain signs becomes an underscore. */
-static void open_frame(tml_file *file, const char *category, const char *list) {
+static void open_frame(tml_file *file, const char *category, const char *list, const tml_row_beside *beside) {
     char name[600];
     size_t length = strlen(category);
     bool has = strncmp(list, category, length) == 0;
     snprintf(name, sizeof name, "%s%s%.500s", has ? "" : category, has ? "" : "_", list);
     for (char *p = name; *p != '\0'; p++)
         if ((unsigned char)*p <= ' ' || *p == '\'' || *p == '"' || *p == '#' || *p == '$') *p = '_';
-    tml_file_print(file, "\nsave_%s\n   _%s.sf_category     %s\n   _%s.sf_framecode    %s\n   _%s.potential_type  undefined\n", name, category,
+    tml_file_print(file, "\nsave_%s\n   _%s.sf_category     %s\n   _%s.sf_framecode    %s\n   _%s.potential_type  ", name, category,
                    category, category, name, category);
+    tml_put_star(file, beside->potential == NULL ? "undefined" : beside->potential);
+    tml_file_print(file, "\n");
+    if (beside->origin == NULL) return;
+    tml_file_print(file, "   _%s.restraint_origin ", category);
+    tml_put_star(file, beside->origin);
+    tml_file_print(file, "\n");
 }
 
 static void write_distances(tml_conversion *c) {
@@ -157,11 +163,11 @@ static void write_distances(tml_conversion *c) {
     for (size_t first = 0, count; first < rows->distance_count; first += count) {
         size_t index = 0;
         count = tml_rows_in_list(c->lists, first, rows->distance_count);
-        open_frame(c->file, "nef_distance_restraint_list", c->lists[first]);
+        open_frame(c->file, "nef_distance_restraint_list", c->lists[first], &rows->distances[first].beside);
         loop(c->file, "nef_distance_restraint",
              (const char *const[]){"index", "restraint_id", "restraint_combination_id", "chain_code_1", "sequence_code_1", "residue_name_1",
-                                   "atom_name_1", "chain_code_2", "sequence_code_2", "residue_name_2", "atom_name_2", "weight", "lower_limit",
-                                   "upper_limit", NULL});
+                                   "atom_name_1", "chain_code_2", "sequence_code_2", "residue_name_2", "atom_name_2", "weight", "target_value",
+                                   "target_value_uncertainty", "lower_linear_limit", "upper_linear_limit", "lower_limit", "upper_limit", NULL});
         for (size_t i = first; i < first + count; i++) {
             const tml_distance_row *row = &rows->distances[i];
             char text[64];
@@ -175,6 +181,7 @@ static void write_distances(tml_conversion *c) {
                     put_atom(c->file, &a);
                     put_atom(c->file, &b);
                     tml_put_star_number(c->file, row->weight);
+                    tml_put_beside(c->file, &row->beside);
                     tml_put_star_number(c->file, row->lower);
                     tml_put_star_number(c->file, row->upper);
                     tml_file_print(c->file, "\n");
@@ -190,12 +197,13 @@ static void write_dihedrals(tml_conversion *c) {
     const char *const *lists = c->lists + rows->distance_count;
     for (size_t first = 0, count; first < rows->dihedral_count; first += count) {
         count = tml_rows_in_list(lists, first, rows->dihedral_count);
-        open_frame(c->file, "nef_dihedral_restraint_list", lists[first]);
+        open_frame(c->file, "nef_dihedral_restraint_list", lists[first], &rows->dihedrals[first].beside);
         loop(c->file, "nef_dihedral_restraint",
              (const char *const[]){"index", "restraint_id", "restraint_combination_id", "chain_code_1", "sequence_code_1", "residue_name_1",
                                    "atom_name_1", "chain_code_2", "sequence_code_2", "residue_name_2", "atom_name_2", "chain_code_3",
                                    "sequence_code_3", "residue_name_3", "atom_name_3", "chain_code_4", "sequence_code_4", "residue_name_4",
-                                   "atom_name_4", "weight", "lower_limit", "upper_limit", NULL});
+                                   "atom_name_4", "weight", "target_value", "target_value_uncertainty", "lower_linear_limit", "upper_linear_limit",
+                                   "lower_limit", "upper_limit", "name", NULL});
         for (size_t i = first; i < first + count; i++) {
             const tml_dihedral_row *row = &rows->dihedrals[i];
             char text[64];
@@ -207,8 +215,10 @@ static void write_dihedrals(tml_conversion *c) {
                 put_atom(c->file, &at);
             }
             tml_put_star_number(c->file, row->weight);
+            tml_put_beside(c->file, &row->beside);
             tml_put_star_number(c->file, row->lower);
             tml_put_star_number(c->file, row->upper);
+            tml_put_star(c->file, row->beside.angle == NULL ? "" : row->beside.angle);
             tml_file_print(c->file, "\n");
         }
         end_loop(c->file);

@@ -215,13 +215,20 @@ static void put_atom(writer *w, const tml_address *at, int side, int32_t k) {
 
 /* ---- restraints ---- */
 
-static void open_frame(tml_file *file, const char *category, const char *type, const char *list, int number) {
+static void open_frame(tml_file *file, const char *category, const char *type, const char *list, int number, const tml_row_beside *beside) {
     char name[512];
     snprintf(name, sizeof name, "%.500s", list);
     for (char *p = name; *p != '\0'; p++)
         if ((unsigned char)*p <= ' ' || *p == '\'' || *p == '"' || *p == '#' || *p == '$') *p = '_';
     tml_file_print(file, "\nsave_%s\n   _%s.Sf_category      %s\n   _%s.Sf_framecode     %s\n   _%s.ID               %d\n", name, category, type,
                    category, name, category, number);
+    const char *const said[][2] = {{"Constraint_type", beside->origin}, {"Potential_type", beside->potential}};
+    for (int k = 0; k < 2; k++) {
+        if (said[k][1] == NULL) continue;
+        tml_file_print(file, "   _%s.%s ", category, said[k][0]);
+        tml_put_star(file, said[k][1]);
+        tml_file_print(file, "\n");
+    }
 }
 
 /* How many rows one row of a restraint makes: pairs of single atoms, but for an atom with itself. */
@@ -253,6 +260,7 @@ static void write_row(writer *w, const tml_distance_row *row, const char *id, bo
                     tml_file_print(w->file, "%d %s ", ++*member, several ? "OR" : ".");
                     put_atom(w, a, 0, i);
                     put_atom(w, b, 1, j);
+                    tml_put_star_number(w->file, row->beside.values ? row->beside.target : NAN);
                     tml_put_star_number(w->file, row->lower);
                     tml_put_star_number(w->file, row->upper);
                     tml_put_star_number(w->file, row->weight);
@@ -261,18 +269,23 @@ static void write_row(writer *w, const tml_distance_row *row, const char *id, bo
         }
 }
 
+/* Targets have a column; their uncertainty and linear limits have none. */
+static bool loses(const tml_row_beside *beside) {
+    return beside->values && !(isnan(beside->uncertainty) && isnan(beside->lower_linear) && isnan(beside->upper_linear));
+}
+
 static void write_distances(writer *w) {
     const tml_rows *rows = &w->c->draft->rows;
     int32_t lost[TML_LOSS_COUNT];
     int number = 0;
     for (size_t first = 0, count; first < rows->distance_count; first += count) {
         count = tml_rows_in_list(w->c->lists, first, rows->distance_count);
-        open_frame(w->file, "Gen_dist_constraint_list", "general_distance_constraints", w->c->lists[first], ++number);
+        open_frame(w->file, "Gen_dist_constraint_list", "general_distance_constraints", w->c->lists[first], ++number, &rows->distances[first].beside);
         loop(w->file, "Gen_dist_constraint",
              (const char *const[]){"ID", "Combination_ID", "Member_ID", "Member_logic_code", "Entity_assembly_ID_1", "Comp_index_ID_1",
                                    "Comp_ID_1", "Atom_ID_1", "Auth_asym_ID_1", "Auth_seq_ID_1", "Auth_atom_ID_1", "Entity_assembly_ID_2",
                                    "Comp_index_ID_2", "Comp_ID_2", "Atom_ID_2", "Auth_asym_ID_2", "Auth_seq_ID_2", "Auth_atom_ID_2",
-                                   "Distance_lower_bound_val", "Distance_upper_bound_val", "Weight", "Gen_dist_constraint_list_ID", NULL});
+                                   "Distance_val", "Distance_lower_bound_val", "Distance_upper_bound_val", "Weight", "Gen_dist_constraint_list_ID", NULL});
         int member = 0;
         for (size_t i = first; i < first + count; i++) {
             const tml_distance_row *row = &rows->distances[i];
@@ -283,6 +296,7 @@ static void write_distances(writer *w) {
             memcpy(w->c->lost, lost, sizeof lost); /* counted once, when written */
             if (!after) member = 0;
             w->c->lost[TML_LOSS_AVERAGE] += row->average;
+            w->c->lost[TML_LOSS_BESIDE] += loses(&row->beside);
             write_row(w, row, tml_row_id(row->id, row->alone, i, text, sizeof text), several, number, &member);
         }
         tml_file_print(w->file, "   stop_\nsave_\n");
@@ -295,13 +309,13 @@ static void write_dihedrals(writer *w) {
     int number = 0;
     for (size_t first = 0, count; first < rows->dihedral_count; first += count) {
         count = tml_rows_in_list(lists, first, rows->dihedral_count);
-        open_frame(w->file, "Torsion_angle_constraint_list", "torsion_angle_constraints", lists[first], ++number);
-        tml_file_print(w->file, "\n   loop_\n      _Torsion_angle_constraint.ID\n      _Torsion_angle_constraint.Combination_ID\n");
+        open_frame(w->file, "Torsion_angle_constraint_list", "torsion_angle_constraints", lists[first], ++number, &rows->dihedrals[first].beside);
+        tml_file_print(w->file, "\n   loop_\n      _Torsion_angle_constraint.ID\n      _Torsion_angle_constraint.Combination_ID\n      _Torsion_angle_constraint.Torsion_angle_name\n");
         for (int k = 1; k <= 4; k++) {
             static const char *const TAGS[] = {"Entity_assembly_ID", "Comp_index_ID", "Comp_ID", "Atom_ID", "Auth_asym_ID", "Auth_seq_ID", "Auth_atom_ID"};
             for (size_t t = 0; t < sizeof TAGS / sizeof *TAGS; t++) tml_file_print(w->file, "      _Torsion_angle_constraint.%s_%d\n", TAGS[t], k);
         }
-        tml_file_print(w->file, "      _Torsion_angle_constraint.Angle_lower_bound_val\n      _Torsion_angle_constraint.Angle_upper_bound_val\n"
+        tml_file_print(w->file, "      _Torsion_angle_constraint.Angle_target_val\n      _Torsion_angle_constraint.Angle_lower_bound_val\n      _Torsion_angle_constraint.Angle_upper_bound_val\n"
                                 "      _Torsion_angle_constraint.Weight\n      _Torsion_angle_constraint.Torsion_angle_constraint_list_ID\n\n");
         for (size_t i = first; i < first + count; i++) {
             const tml_dihedral_row *row = &rows->dihedrals[i];
@@ -309,7 +323,10 @@ static void write_dihedrals(writer *w) {
             tml_file_print(w->file, "      ");
             tml_put_star(w->file, tml_row_id(row->id, row->alone, i, text, sizeof text));
             tml_put_star(w->file, row->combination);
+            tml_put_star(w->file, row->beside.angle == NULL ? "" : row->beside.angle);
             for (int k = 0; k < 4; k++) put_atom(w, &row->atoms[k], -1, 0);
+            w->c->lost[TML_LOSS_BESIDE] += loses(&row->beside);
+            tml_put_star_number(w->file, row->beside.values ? row->beside.target : NAN);
             tml_put_star_number(w->file, row->lower);
             tml_put_star_number(w->file, row->upper);
             tml_put_star_number(w->file, row->weight);

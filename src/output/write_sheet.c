@@ -211,6 +211,7 @@ static void write_distances(tml_conversion *c) {
     for (size_t i = 0; i < rows->distance_count; i++) {
         const tml_distance_row *row = &rows->distances[i];
         say_list(c->file, &list, c->lists[i]);
+        c->lost[TML_LOSS_BESIDE] += tml_says_more(&row->beside);
         tml_file_print(c->file, "limit");
         put_addresses(c->file, &rows->addresses[row->first_a], row->count_a);
         put_addresses(c->file, &rows->addresses[row->first_b], row->count_b);
@@ -232,6 +233,7 @@ static void write_dihedrals(tml_conversion *c) {
         const tml_dihedral_row *row = &rows->dihedrals[i];
         if (isnan(row->lower) || isnan(row->upper)) continue; /* restrains nothing */
         say_list(c->file, &list, c->lists[rows->distance_count + i]);
+        c->lost[TML_LOSS_BESIDE] += tml_says_more(&row->beside);
         tml_file_print(c->file, "dihedral");
         for (int k = 0; k < 4; k++) put_addresses(c->file, &row->atoms[k], 1);
         tml_file_print(c->file, " %.10g %.10g", row->lower, row->upper);

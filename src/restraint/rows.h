@@ -8,6 +8,13 @@
 
 #include "molecule/outline.h"
 
+/* What a file says of a row beside its limits: kept for writing it again, and no part of the restraint. All zero for nothing. */
+typedef struct tml_row_beside {
+    bool values;                                          /* the four below are given; NAN where one is open */
+    double target, uncertainty, lower_linear, upper_linear;
+    const char *origin, *potential, *angle;               /* of its list: where it comes from, its potential; a torsion's name. NULL for none */
+} tml_row_beside;
+
 /* One row of a distance restraint. Rows of one file with the same list and id are alternatives (OR), but for those that are
  * `alone`, whose ids are not the user's; rows that share, within an id, a combination other than "" hold together (AND).
  * Several addresses on one side are alternatives that multiply out. */
@@ -16,6 +23,7 @@ typedef struct tml_distance_row {
     int32_t first_a, count_a, first_b, count_b; /* into tml_rows.addresses */
     double lower, upper;                        /* Å; NAN where the input leaves a limit open */
     double weight;
+    tml_row_beside beside;
     bool average;                               /* divide the sum of r^-6 by the number of pairs */
     bool alone;
     tml_place place;
@@ -27,6 +35,7 @@ typedef struct tml_dihedral_row {
     tml_address atoms[4];
     double lower, upper;
     double weight;
+    tml_row_beside beside;
     bool alone;
     tml_place place;
 } tml_dihedral_row;

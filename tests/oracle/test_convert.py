@@ -118,6 +118,54 @@ class RoundTrips(unittest.TestCase):
         _, said = self.convert(os.path.join(SETS, 'veilin.nef'), 'veilin.str')
         self.assertIn('names with x and y', said)
 
+    def test_targets_origins_and_names_of_torsions_stay(self):
+        text = """data_t
+save_nef_molecular_system
+loop_ _nef_sequence.index _nef_sequence.chain_code _nef_sequence.sequence_code _nef_sequence.residue_name 1 A 1 GLY 2 A 2 SER 3 A 3 GLY stop_
+save_
+save_nef_distance_restraint_list_h
+_nef_distance_restraint_list.sf_category nef_distance_restraint_list
+_nef_distance_restraint_list.restraint_origin hbond
+_nef_distance_restraint_list.potential_type log-harmonic
+loop_ _nef_distance_restraint.index _nef_distance_restraint.restraint_id _nef_distance_restraint.chain_code_1
+_nef_distance_restraint.sequence_code_1 _nef_distance_restraint.atom_name_1 _nef_distance_restraint.chain_code_2
+_nef_distance_restraint.sequence_code_2 _nef_distance_restraint.atom_name_2 _nef_distance_restraint.target_value
+_nef_distance_restraint.target_value_uncertainty _nef_distance_restraint.lower_linear_limit _nef_distance_restraint.upper_linear_limit
+_nef_distance_restraint.lower_limit _nef_distance_restraint.upper_limit
+1 7 A 1 O A 3 H 2.0 0.25 1.5 2.75 1.75 2.25 stop_
+save_
+save_nef_dihedral_restraint_list_d
+_nef_dihedral_restraint_list.sf_category nef_dihedral_restraint_list
+loop_ _nef_dihedral_restraint.index _nef_dihedral_restraint.restraint_id _nef_dihedral_restraint.chain_code_1
+_nef_dihedral_restraint.sequence_code_1 _nef_dihedral_restraint.atom_name_1 _nef_dihedral_restraint.chain_code_2
+_nef_dihedral_restraint.sequence_code_2 _nef_dihedral_restraint.atom_name_2 _nef_dihedral_restraint.chain_code_3
+_nef_dihedral_restraint.sequence_code_3 _nef_dihedral_restraint.atom_name_3 _nef_dihedral_restraint.chain_code_4
+_nef_dihedral_restraint.sequence_code_4 _nef_dihedral_restraint.atom_name_4 _nef_dihedral_restraint.target_value
+_nef_dihedral_restraint.lower_limit _nef_dihedral_restraint.upper_limit _nef_dihedral_restraint.name
+1 1 A 1 C A 2 N A 2 CA A 2 C -60 -80 -40 PHI stop_
+save_
+"""
+        source = os.path.join(self.folder, 'targets.nef')
+        with open(source, 'w', encoding='utf-8') as file:
+            file.write(text)
+        nef, said = self.convert(source, 'again.nef')
+        self.assertEqual(said, '')
+        star, said = self.convert(source, 'again.str')
+        self.assertIn('target values and linear limits', said)  # the uncertainty and the linear limits
+        back, _ = self.convert(star, 'back.nef')
+        for path, whole in ((nef, True), (back, False)):
+            frames = {i.frame.name: i.frame for i in gemmi.cif.read(path).sole_block() if i.frame is not None}
+            distances, dihedrals = frames['nef_distance_restraint_list_h'], frames['nef_dihedral_restraint_list_d']
+            row = distances.find('_nef_distance_restraint.', ['target_value', 'target_value_uncertainty', 'lower_linear_limit',
+                                                              'upper_linear_limit', 'lower_limit', 'upper_limit'])[0]
+            self.assertEqual(list(row), ['2', '0.25', '1.5', '2.75', '1.75', '2.25'] if whole else ['2', '.', '.', '.', '1.75', '2.25'])
+            self.assertEqual(distances.find_value('_nef_distance_restraint_list.restraint_origin'), 'hbond')
+            self.assertEqual(distances.find_value('_nef_distance_restraint_list.potential_type'), 'log-harmonic')
+            row = dihedrals.find('_nef_dihedral_restraint.', ['target_value', 'lower_limit', 'upper_limit', 'name'])[0]
+            self.assertEqual(list(row), ['-60', '-80', '-40', 'PHI'])
+        _, said = self.convert(source, 'targets.sheet')
+        self.assertIn('2 rows\' target values', said)
+
     def test_a_single_atom_takes_its_links_with_it(self):
         source = os.path.join(SETS, 'quill.sheet')
         for name in ('quill.nef', 'quill.str'):
